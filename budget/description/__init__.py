@@ -1,0 +1,58 @@
+"""The file: its text and spans, the run that it describes, what is wrong with it, and edits to it."""
+
+from budget.description.codes import CODES, Code
+from budget.description.finding import Finding, Level, Path, dotted, error, note, warning
+from budget.description.model import (
+    Description,
+    Design,
+    Device,
+    FittingCount,
+    Fluid,
+    Geometry,
+    Item,
+    Limits,
+    Line,
+    OwnFitting,
+    Run,
+    Section,
+    Source,
+    Terminal,
+)
+from budget.description.reader import describe
+from budget.description.source import Source as SourceText
+from budget.description.source import read_bytes, read_text
+from budget.description.values import nearest
+from budget.units import Basis, Quantity
+
+__all__ = [
+    "CODES",
+    "Basis",
+    "Code",
+    "Description",
+    "Design",
+    "Device",
+    "Finding",
+    "FittingCount",
+    "Fluid",
+    "Geometry",
+    "Item",
+    "Level",
+    "Limits",
+    "Line",
+    "OwnFitting",
+    "Path",
+    "Quantity",
+    "Run",
+    "Section",
+    "Source",
+    "SourceText",
+    "Terminal",
+    "describe",
+    "dotted",
+    "error",
+    "nearest",
+    "note",
+    "read_bytes",
+    "read_text",
+    "warning",
+]

@@ -1,0 +1,265 @@
+"""Sources, sections, terminals and what stands in line on them, from their tables."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from budget.description.codes import CODES
+from budget.description.finding import Path, error, warning
+from budget.description.model import FittingCount, Geometry, Item, Line, Run, Section, Source, Terminal
+from budget.description.schema import RUN, Measure
+from budget.description.scope import Scope
+from budget.description.sizes import read_duct_size, read_pipe_size
+from budget.description.values import Reading, nearest
+from budget.physics.fittings import CV_PER_KV
+from budget.units import Dimension
+
+
+_ITEM_FORMS = ("k", "kv", "cv", "drop", "equivalent_length", "clean")
+_TEXTS = ("title", "note", "location")
+_RUN_OUT_KEYS = (*(key for key in RUN if key not in ("takeoff", "junction", "angle", "class")),)
+
+
+def read_source(reading: Reading, id_: str, values: dict[str, Any], path: Path, scope: Scope) -> Source:
+    """Read a pump or a fan."""
+    items = _items(scope, values, path)
+    for item in items:
+        for key in ("k", "equivalent_length"):
+            if getattr(item, key) is not None:
+                reading.wrong(
+                    "no-reference", f"{key} has no velocity to refer to on a source; state kv or drop", (*item.path, key)
+                )
+    outlet = read_duct_size(reading, values["outlet"], (*path, "outlet"), remark=False) if "outlet" in values else None
+    if outlet is not None and not reading.gas:
+        reading.wrong("contradiction", "an outlet belongs to a fan; remove it", (*path, "outlet"))
+    if values.get("open") and reading.gas:
+        reading.wrong("contradiction", "a gas has no open circuit; remove open", (*path, "open"))
+    if values.get("controls") == "differential" and "set_point" not in values:
+        reading.wrong("missing", "it controls a differential; state its set_point", (*path, "set_point"))
+    known = Source.__dataclass_fields__
+    kept = {key: value for key, value in values.items() if key in known and key not in ("item", "outlet")}
+    return Source(id=id_, path=path, items=items, outlet=outlet, **kept)
+
+
+def read_section(reading: Reading, id_: str, values: dict[str, Any], path: Path, scope: Scope) -> Section:
+    """Read a section."""
+    if "from" in values and "to" in values:
+        reading.wrong("contradiction", "from and to are both stated; a section has one of them", (*path, "to"))
+        values.pop("to")
+    if "from" not in values and "to" not in values:
+        reading.wrong("missing", "neither from nor to is stated; name what it hangs on", (*path, "from"))
+    run = _run(scope, values, path)
+    return Section(
+        id=id_,
+        path=path,
+        from_=values.get("from"),
+        to=values.get("to"),
+        run=run,
+        items=_items(scope, values, path),
+        balance=scope.check_device(values, path, terminal=False),
+        setting=values.get("setting"),
+        rise=values.get("rise", 0.0),
+        accept=_accept(scope, values, path),
+        **{key: values[key] for key in _TEXTS if key in values},
+    )
+
+
+def read_terminal(reading: Reading, id_: str, values: dict[str, Any], path: Path, scope: Scope) -> Terminal:
+    """Read a terminal, with its run-out where it has a size or bore."""
+    _one_of(reading, values, ("flow", "load"), path)
+    _one_of(reading, values, ("drop", "static_drop"), path)
+    if "from" not in values and "to" not in values:
+        reading.wrong("missing", "neither from nor to is stated; name what it hangs on", (*path, "from"))
+    for key in ("at", "exponent"):
+        if key in values and "drop" not in values and "static_drop" not in values:
+            reading.wrong("contradiction", f"{key} without a drop; state drop, or remove it", (*path, key))
+    neck = read_duct_size(reading, values["neck"], (*path, "neck"), remark=False) if "neck" in values else None
+    if "static_drop" in values and "neck" not in values:
+        reading.wrong("missing", "static_drop needs the neck at which it was stated", (*path, "static_drop"))
+    if "static_drop" in values and not reading.gas:
+        reading.wrong("contradiction", "static_drop belongs to air terminals; state drop", (*path, "static_drop"))
+    run = None
+    if "size" in values or "bore" in values:
+        run = _run(scope, values, path)
+    else:
+        for key in values:
+            if key in _RUN_OUT_KEYS:
+                reading.wrong("missing", f"{key} describes a run-out, which needs a size; state size", (*path, key))
+        _check_junction_keys(scope, values, path)
+    items = _items(scope, values, path)
+    if not items and not {"drop", "static_drop", "outlet_pressure"} & values.keys():
+        reading.findings.append(
+            warning("no-drop", "the terminal has no drop; its own pressure drop counts as nothing", path)
+        )
+    kept = ("flow", "load", "return_temperature", "drop", "at", "exponent", "static_drop", "rise", "outlet_pressure")
+    return Terminal(
+        id=id_,
+        path=path,
+        from_=values.get("from"),
+        to=values.get("to"),
+        neck=neck,
+        run=run,
+        items=items,
+        balance=scope.check_device(values, path, terminal=True),
+        setting=values.get("setting"),
+        takeoff=values.get("takeoff", scope.defaults.get("takeoff")),
+        accept=_accept(scope, values, path),
+        **{key: values[key] for key in (*_TEXTS, *kept) if key in values},
+    )
+
+
+def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
+    reading, defaults = scope.reading, scope.defaults
+    line = scope.line_of(values, path)
+    if "length" not in values and not _found_at(reading, (*path, "length")):
+        reading.wrong("missing", 'the length is not stated; write length = "12 m"', (*path, "length"))
+    if "compression" in values and not (line and line.flexible):
+        reading.wrong("contradiction", "compression belongs to flexible duct; remove it", (*path, "compression"))
+    _check_junction_keys(scope, values, path)
+    fittings = _fittings(scope, values, path)
+    method = values.get("fitting_method", defaults.get("fitting_method", "by size"))
+    return Run(
+        line=line,
+        geometry=_geometry(scope, values, line, path),
+        length=values.get("length"),
+        paired=values.get("paired", defaults.get("paired", False)),
+        paired_stated="paired" in values,
+        compression=values.get("compression", line.compression if line else 0.0),
+        fittings=fittings,
+        fitting_method=method,
+        takeoff=values.get("takeoff", defaults.get("takeoff")),
+        takeoff_stated="takeoff" in values,
+        limit_velocity=values.get("limit_velocity"),
+        limit_gradient=values.get("limit_gradient"),
+        class_=values.get("class", defaults.get("class")),
+        diversity=values.get("diversity"),
+    )
+
+
+def _found_at(reading: Reading, path: Path) -> bool:
+    return any(finding.path == path for finding in reading.findings)
+
+
+def _geometry(scope: Scope, values: Mapping[str, Any], line: Line | None, path: Path) -> Geometry | None:
+    reading = scope.reading
+    if "size" in values and "bore" in values:
+        reading.wrong("contradiction", "size and bore are both stated; keep one", (*path, "bore"))
+    if "bore" in values:
+        if line is not None and line.kind == "duct":
+            reading.wrong("contradiction", "bore belongs to a pipe; write size for a duct", (*path, "bore"))
+            return None
+        bore = values["bore"]
+        return Geometry("round", bore, bore, bore, f"{bore * 1000:g} mm bore")
+    if "size" not in values:
+        if not _found_at(reading, (*path, "bore")):
+            reading.wrong("missing", "the size is not stated; write size (or bore, for a pipe)", (*path, "size"))
+        return None
+    if line is None:
+        return None
+    if line.kind == "pipe":
+        return read_pipe_size(reading, values["size"], line, (*path, "size"))
+    return read_duct_size(reading, values["size"], (*path, "size"))
+
+
+def _fittings(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[FittingCount, ...]:
+    found = []
+    for name, count in values.get("fittings", {}).items():
+        place: Path = (*path, "fittings", name)
+        if scope.known_fitting(name):
+            found.append(FittingCount(name, count, place))
+        else:
+            scope.reading.wrong(
+                "unknown-fitting", f"{name!r} is not a fitting known here; {scope.nearest_fitting(name)}", place
+            )
+    for place_, use in enumerate(values.get("fitting", ())):
+        where: Path = (*path, "fitting", place_, "kind")
+        if "kind" not in use:
+            scope.reading.wrong("missing", "the fitting has no kind; state kind", where[:-1])
+        scope.reading.findings.append(
+            error("later", "a fitting with parameters can't be computed yet; its loss is not counted", where)
+        )
+    return tuple(found)
+
+
+def _check_junction_keys(scope: Scope, values: Mapping[str, Any], path: Path) -> None:
+    """Junction and transition losses are not computed yet: say so at the key, and find what contradicts them."""
+    later: list[tuple[Path, str]] = []
+    takeoff = values.get("takeoff", scope.defaults.get("takeoff"))
+    if takeoff in ("straight", "branch"):
+        tees = [name for name in values.get("fittings", {}) if name.startswith("tee")]
+        where: Path = (*path, "takeoff") if "takeoff" in values else ("defaults", "takeoff")
+        if tees:
+            scope.reading.wrong(
+                "contradiction",
+                f"takeoff {takeoff!r} and the fitting {tees[0]!r} would count the junction twice; keep one",
+                (*path, "fittings", tees[0]),
+            )
+        later.append((where, "the loss of a junction"))
+    if "transition" in values:
+        value = values["transition"]
+        if value != "abrupt":
+            angle = Measure(Dimension.ANGLE, 0.0, 180.0, above=True)
+            scope.reading.value(value, angle, (*path, "transition"))
+        later.append(((*path, "transition"), "the loss of a transition"))
+    if "leakage" in values:
+        later.append(((*path, "leakage"), "leakage"))
+    for where, what in later:
+        if not any(f.code == "later" and f.path == where for f in scope.reading.findings):
+            scope.reading.findings.append(error("later", f"{what} can't be computed yet; it is not counted", where))
+
+
+def _items(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Item, ...]:
+    items = []
+    for place, entry in enumerate(values.get("item", ())):
+        items.append(_item(scope.reading, entry, (*path, "item", place)))
+    controls = [item for item in items if item.control]
+    for extra in controls[1:]:
+        scope.reading.wrong(
+            "contradiction", "a section or terminal has one control item; remove control here", (*extra.path, "control")
+        )
+    return tuple(items)
+
+
+def _item(reading: Reading, entry: Mapping[str, Any], path: Path) -> Item:
+    forms = [key for key in _ITEM_FORMS if key in entry]
+    if not forms and not any(f.path[: len(path)] == path for f in reading.findings):
+        reading.wrong("missing", "the item has no drop; state k, kv, cv, drop, clean and final, or equivalent_length", path)
+    if len(forms) > 1:
+        reading.wrong("contradiction", f"{' and '.join(forms)} are both stated; keep one", (*path, forms[1]))
+        forms = forms[:1]
+    if ("clean" in entry) != ("final" in entry):
+        missing = "final" if "clean" in entry else "clean"
+        reading.wrong("missing", f"a filter needs clean and final; state {missing}", (*path, missing))
+    for key, owners in (("at", ("drop", "clean")), ("exponent", ("drop", "clean")), ("tested_density", ("drop", "clean")), ("state", ("clean",))):
+        if key in entry and not set(forms) & set(owners):
+            reading.wrong("contradiction", f"{key} without {owners[0]}; remove it", (*path, key))
+    for key in ("characteristic", "rangeability"):
+        if key in entry and "control" not in entry:
+            reading.wrong("contradiction", f"{key} belongs to a control item; state control", (*path, key))
+    kept = {key: value for key, value in entry.items() if key in Item.__dataclass_fields__}
+    for key in _ITEM_FORMS:
+        if key not in forms:
+            kept.pop(key, None)
+    kept.setdefault("name", "item")
+    if "cv" in forms:
+        kept["kv"] = entry["cv"] / CV_PER_KV
+    return Item(path=path, **kept)
+
+
+def _one_of(reading: Reading, values: dict[str, Any], keys: tuple[str, str], path: Path) -> None:
+    if all(key in values for key in keys):
+        reading.wrong("contradiction", f"{keys[0]} and {keys[1]} are both stated; keep one", (*path, keys[1]))
+        values.pop(keys[1])
+
+
+def _accept(scope: Scope, values: Mapping[str, Any], path: Path) -> dict[str, str]:
+    accepted: dict[str, str] = values.get("accept", {})
+    for code in accepted:
+        if code not in CODES:
+            scope.reading.wrong("unknown-code", f"{code!r} is not a finding code; {nearest(code, CODES, 3)}", (*path, "accept", code))
+        elif CODES[code].level == "error":
+            scope.reading.wrong("unknown-code", f"{code!r} is an error, which can't be accepted", (*path, "accept", code))
+    return accepted
+
+

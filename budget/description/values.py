@@ -1,0 +1,218 @@
+"""One value of the file at a time: from TOML to SI, or a finding that says what would be right."""
+
+from __future__ import annotations
+
+import difflib
+import math
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+from budget.description.finding import Finding, Path, error
+from budget.description.schema import (
+    Array,
+    Choice,
+    Flag,
+    Inline,
+    Measure,
+    Names,
+    Number,
+    Pairs,
+    Size,
+    Spec,
+    Table,
+    Text,
+)
+from budget.units import Dimension, Quantity, UnitError, bare, bare_unit, parse, spell
+
+KEEPS_BASIS = frozenset({Dimension.FLOW, Dimension.PRESSURE, Dimension.VISCOSITY})
+"""Dimensions that can be stated on another basis (mass, head, kinematic) and stay quantities until it is known."""
+
+_KINDS: dict[type, str] = {str: "a text", bool: "true or false", int: "a whole number", float: "a number", list: "a list", dict: "a table"}
+
+
+@dataclass(slots=True)
+class Reading:
+    """What reading one file needs to know, and what it has found wrong so far."""
+
+    units: Any = "SI"
+    gas: bool = False
+    findings: list[Finding] = field(default_factory=list)
+
+    def table(self, data: Any, keys: Mapping[str, Spec], path: Path, kind: str = "") -> dict[str, Any]:
+        """Read a table with known keys; a key that could not be read is left out."""
+        if not isinstance(data, dict):
+            self.wrong("type", f"{_what(data)} where a table was due; write [{'.'.join(map(str, path))}]", path)
+            return {}
+        values: dict[str, Any] = {}
+        for key, value in data.items():
+            spec = keys.get(key)
+            if spec is None:
+                self.unknown_key(key, keys, path, kind)
+                continue
+            found = self.value(value, spec, (*path, key))
+            if found is not None:
+                values[key] = found
+        return values
+
+    def value(self, value: Any, spec: Spec, path: Path) -> Any:
+        """Read one value: SI numbers as float, words as text; None with a finding where it can't be read."""
+        match spec:
+            case Text():
+                return self._typed(value, str, path)
+            case Flag():
+                return self._typed(value, bool, path)
+            case Choice(words):
+                return self._choice(value, words, path)
+            case Number():
+                return self._number(value, spec, path)
+            case Measure():
+                return self._measure(value, spec, path)
+            case Pairs():
+                return self._pairs(value, spec, path)
+            case Names():
+                return self._names(value, path)
+            case Inline(inner):
+                return self._inline(value, inner, path)
+            case Table(keys):
+                return self.table(value, keys, path)
+            case Array(keys):
+                return self._array(value, keys, path)
+            case Size():
+                return value
+
+    def wrong(self, code: str, message: str, path: Path) -> None:
+        """Keep an error."""
+        self.findings.append(error(code, message, path))
+
+    def unknown_key(self, key: str, known: Iterable[str], path: Path, kind: str = "") -> None:
+        """Say that a key is not known here, and which known one is nearest."""
+        where = kind or (str(path[0]) if path else "the file")
+        self.wrong("unknown-key", f"{key!r} is not a key of {where}; {nearest(key, known)}", (*path, key))
+
+    def _typed(self, value: Any, kind: type, path: Path) -> Any:
+        if type(value) is kind:
+            return value
+        self.wrong("type", f"{_what(value)} where {_KINDS[kind]} was due; write {_example(kind)}", path)
+        return None
+
+    def _choice(self, value: Any, words: tuple[str, ...], path: Path) -> str | None:
+        text = self._typed(value, str, path)
+        if text is None or text in words:
+            return text if text is None else str(text)
+        self.wrong("choice", f"{text!r} is not one of the choices; {nearest(text, words)}", path)
+        return None
+
+    def _number(self, value: Any, spec: Number, path: Path) -> float | int | None:
+        if isinstance(value, bool) or not isinstance(value, int | float):
+            kind = "a whole number" if spec.whole else "a plain number"
+            self.wrong("type", f"{_what(value)} where {kind} was due; write it without quotes", path)
+            return None
+        if not math.isfinite(value):
+            self.wrong("not-finite", f"{value} is not a finite number; write the number itself", path)
+            return None
+        if spec.whole and value != int(value):
+            self.wrong("type", f"{value} where a whole number was due; write {round(value)}", path)
+            return None
+        if self._outside(float(value), spec):
+            self.wrong("range", f"{value:g} is out of range; {_bounds(spec, lambda bound: f'{bound:g}')}", path)
+            return None
+        return int(value) if spec.whole else float(value)
+
+    def _measure(self, value: Any, spec: Measure, path: Path) -> Quantity | float | None:
+        unit = bare_unit(spec.dimension, self.units, gas=self.gas, small=spec.small)
+        try:
+            if isinstance(value, str):
+                quantity = parse(value, spec.dimension, default_unit=unit)
+            elif isinstance(value, int | float):
+                quantity = bare(value, spec.dimension, unit)
+            else:
+                self.wrong("type", f"{_what(value)} where a quantity was due; write a text such as \"1 {unit}\"", path)
+                return None
+        except UnitError as refused:
+            self.wrong(getattr(refused, "code", "not-a-quantity"), str(refused), path)
+            return None
+        if self._outside(quantity.value, spec):
+            bounds = _bounds(spec, lambda bound: spell(bound, unit, spec.dimension, 6))
+            self.wrong("range", f"{value} is out of range; {bounds}", path)
+            return None
+        return quantity if spec.dimension in KEEPS_BASIS else quantity.value
+
+    def _pairs(self, value: Any, spec: Pairs, path: Path) -> tuple[tuple[Any, Any], ...] | None:
+        if not isinstance(value, list) or not value:
+            self.wrong("type", f"{_what(value)} where a list of pairs was due; write [[1, 2], [3, 4]]", path)
+            return None
+        pairs = []
+        for place, pair in enumerate(value):
+            if not isinstance(pair, list) or len(pair) != 2:
+                self.wrong("type", f"{_what(pair)} where a pair was due; write [1, 2]", (*path, place))
+                return None
+            first = self.value(pair[0], spec.first, (*path, place, 0))
+            second = self.value(pair[1], spec.second, (*path, place, 1))
+            if first is None or second is None:
+                return None
+            pairs.append((first, second))
+        keys = [getattr(first, "value", first) for first, _ in pairs]
+        if any(later <= earlier for earlier, later in zip(keys, keys[1:], strict=False)):
+            self.wrong("order", "the first of each pair must grow from pair to pair; sort the pairs", path)
+            return None
+        return tuple(pairs)
+
+    def _names(self, value: Any, path: Path) -> tuple[str, ...] | None:
+        if not isinstance(value, list) or not all(isinstance(name, str) for name in value):
+            self.wrong("type", f'{_what(value)} where a list of IDs was due; write ["A", "B"]', path)
+            return None
+        return tuple(value)
+
+    def _inline(self, value: Any, spec: Spec, path: Path) -> dict[str, Any] | None:
+        if not isinstance(value, dict):
+            self.wrong("type", f"{_what(value)} where a table was due; write {{ name = value }}", path)
+            return None
+        found = {key: self.value(inner, spec, (*path, key)) for key, inner in value.items()}
+        return {key: inner for key, inner in found.items() if inner is not None}
+
+    def _array(self, value: Any, keys: Mapping[str, Spec], path: Path) -> tuple[dict[str, Any], ...] | None:
+        if not isinstance(value, list):
+            self.wrong("type", f"{_what(value)} where tables were due; write [[{'.'.join(map(str, path))}]]", path)
+            return None
+        return tuple(self.table(entry, keys, (*path, place), str(path[-1])) for place, entry in enumerate(value))
+
+    @staticmethod
+    def _outside(value: float, spec: Number | Measure) -> bool:
+        low = value <= spec.low if spec.above else value < spec.low
+        return low or value > spec.high
+
+
+def nearest(word: str, known: Iterable[str], count: int = 1) -> str:
+    """Return "did you mean ...?" with the nearest known words, or the list of them where none is near."""
+    words = list(known)
+    close = difflib.get_close_matches(word, words, n=count, cutoff=0.5)
+    if close:
+        return "did you mean " + " or ".join(map(repr, close)) + "?"
+    if not words:
+        return "none is known yet"
+    shown = ", ".join(words[:12]) + (", ..." if len(words) > 12 else "")
+    return f"known are {shown}"
+
+
+def _bounds(spec: Number | Measure, spelled: Any) -> str:
+    parts = []
+    if math.isfinite(spec.low):
+        parts.append(("above " if spec.above else "at least ") + spelled(spec.low))
+    if math.isfinite(spec.high):
+        parts.append("at most " + spelled(spec.high))
+    return "it must be " + " and ".join(parts)
+
+
+def _what(value: Any) -> str:
+    if isinstance(value, str):
+        return f"the text {value[:40]!r}" + ("..." if len(value) > 40 else "")
+    if isinstance(value, bool):
+        return str(value).lower()
+    if isinstance(value, int | float):
+        return f"the number {value}"
+    return _KINDS.get(type(value), "a date or time")
+
+
+def _example(kind: type) -> str:
+    return "true or false without quotes" if kind is bool else 'it in quotes: "..."'

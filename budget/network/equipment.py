@@ -1,0 +1,191 @@
+"""Items and balancing devices in their places, as rows for computing."""
+
+from __future__ import annotations
+
+import math
+from collections import defaultdict
+
+import numpy as np
+
+from budget.description import Description, Device, Finding, Item, Path, Quantity, Section, Terminal, error
+from budget.network import results
+from budget.network.arrays import DeviceUse, Items, Terminals
+from budget.network.media import Media, pascals, volume
+from budget.network.topology import Topology
+
+K, KV, DROP, LENGTH = range(4)
+"""Forms in which the drop of an item is stated."""
+
+
+class EquipmentRows:
+    """Collects the items and devices of sections, terminals and sources."""
+
+    def __init__(
+        self,
+        description: Description,
+        topology: Topology,
+        media: list[Media],
+        terminals: Terminals,
+        broken: dict[Path, set[str]],
+        findings: list[Finding],
+    ) -> None:
+        """Keep what the rows need to know of their surroundings."""
+        self.description = description
+        self.topology = topology
+        self.media = media
+        self.terminals = terminals
+        self.broken = broken
+        self.findings = findings
+        self._first_terminal = len(topology.legs)
+        self._first_source = self._first_terminal + len(terminals)
+        self._numbers: dict[str, list[float]] = defaultdict(list)
+        self._items: list[Item] = []
+
+    def items(self) -> Items:
+        """Return every item of the run."""
+        for id_, legs in self.topology.section_legs.items():
+            section = self.description.sections[id_]
+            density = self._leg_density(legs[0])
+            for item in section.items:
+                self._add(item, legs[0], density, legs[0], math.nan)
+        for number, id_ in enumerate(self.terminals.ids):
+            terminal = self.description.terminals[id_]
+            reference, neck = self._terminal_reference(terminal, number)
+            for item in terminal.items:
+                self._need_reference(item, reference, neck)
+                density = float(self.terminals.density[number])
+                self._add(item, self._first_terminal + number, density, reference, neck)
+        for number, source in enumerate(self.description.sources.values()):
+            for item in source.items:
+                self._add(item, self._first_source + number, self.media[number].supply.density, -1, math.nan)
+        rows = self._numbers
+        return Items(
+            items=tuple(self._items),
+            **{key: np.array(rows[key], dtype=np.int64) for key in ("carrier", "form", "reference", "heading")},
+            **{
+                key: np.array(rows[key], dtype=np.float64)
+                for key in ("value", "at", "exponent", "parallel", "density", "neck")
+            },
+            inside=np.array([item.inside for item in self._items], dtype=np.bool_),
+        )
+
+    def devices(self) -> tuple[DeviceUse, ...]:
+        """Return every balancing device of the run: on sections in file order, then on terminals."""
+        uses = []
+        for id_ in self.description.sections:
+            section = self.description.sections[id_]
+            legs = self.topology.section_legs.get(id_)
+            if legs and section.balance:
+                device = self.description.devices[section.balance]
+                uses.append(self._use(device, section, legs[0], legs[0], False, legs[0], math.nan))
+        for number, id_ in enumerate(self.terminals.ids):
+            terminal = self.description.terminals[id_]
+            if terminal.balance:
+                device = self.description.devices[terminal.balance]
+                reference, neck = self._terminal_reference(terminal, number)
+                carrier = self._first_terminal + number
+                uses.append(self._use(device, terminal, carrier, number, True, reference, neck))
+        return tuple(uses)
+
+    def _use(
+        self,
+        device: Device,
+        owner: Section | Terminal,
+        carrier: int,
+        number: int,
+        terminal: bool,
+        reference: int,
+        neck: float,
+    ) -> DeviceUse:
+        density = float(self.terminals.density[number]) if terminal else self._leg_density(number)
+        if device.k and reference < 0 and math.isnan(neck):
+            text = "its damper has no duct whose velocity it refers to; state neck, or a run-out's size"
+            self.findings.append(error("no-reference", text, (*owner.path, "balance")))
+
+        def pa(quantity: Quantity | None, otherwise: float) -> float:
+            return otherwise if quantity is None else pascals(quantity, density)
+
+        bad = self.broken.get(("device", device.name), set())
+        return DeviceUse(
+            device=device,
+            carrier=carrier,
+            terminal=terminal,
+            number=number,
+            density=density,
+            reference=reference,
+            neck=neck,
+            least_drop=math.nan if bad else pa(device.least_drop, 0.0),
+            greatest_drop=pa(device.greatest_drop, math.inf),
+            least_signal=pa(device.least_signal, 0.0),
+            open_kv=max((kv for _, kv in device.kv), default=math.nan),
+            open_k=min((k for _, k in device.k), default=math.nan),
+            zone=-1,
+        )
+
+    def _leg_density(self, leg: int) -> float:
+        found = self.topology.legs[leg]
+        media = self.media[found.source]
+        return (media.supply if found.outward else media.back).density
+
+    def _terminal_reference(self, terminal: Terminal, number: int) -> tuple[int, float]:
+        """Return what a coefficient on a terminal refers to: its neck, else its run-out, else what it hangs on."""
+        neck = float(self.terminals.neck[number])
+        if not math.isnan(neck):
+            return -1, neck
+        run_out = self.topology.run_out_legs.get(terminal.id)
+        if run_out:
+            return run_out[0], math.nan
+        out = self.topology.outward.get(terminal.id)
+        return (out if out is not None else self.topology.back.get(terminal.id, -1)), math.nan
+
+    def _need_reference(self, item: Item, reference: int, neck: float) -> None:
+        lost = item.k is not None and reference < 0 and math.isnan(neck)
+        if lost or (item.equivalent_length is not None and reference < 0):
+            key = "k" if item.k is not None else "equivalent_length"
+            text = f"{key} has no pipe or duct that it refers to; state kv or drop, or give the terminal a size"
+            self.findings.append(error("no-reference", text, (*item.path, key)))
+
+    def _add(self, item: Item, carrier: int, density: float, reference: int, neck: float) -> None:
+        form, value = self._form(item, density)
+        if self._is_broken(item):
+            value = math.nan
+        rows = self._numbers
+        rows["carrier"].append(carrier)
+        rows["form"].append(form)
+        rows["value"].append(value)
+        rows["at"].append(math.nan if item.at is None else volume(item.at, density))
+        rows["exponent"].append(item.exponent)
+        rows["parallel"].append(item.parallel)
+        rows["density"].append(density)
+        rows["reference"].append(reference)
+        rows["neck"].append(neck)
+        rows["heading"].append(results.HEADINGS.index(self._heading(item, carrier)))
+        self._items.append(item)
+
+    def _is_broken(self, item: Item) -> bool:
+        return "item" in self.broken.get(item.path[:2], set()) and any(
+            finding.path[: len(item.path)] == item.path and finding.level == "error"
+            for finding in self.description.findings
+        )
+
+    def _form(self, item: Item, density: float) -> tuple[int, float]:
+        if item.k is not None:
+            return K, item.k
+        if item.kv is not None:
+            return KV, item.kv
+        if item.equivalent_length is not None:
+            return LENGTH, item.equivalent_length
+        tested = 1.0 if item.tested_density is None else density / item.tested_density
+        if item.clean is not None and item.final is not None:
+            clean, final = pascals(item.clean, density), pascals(item.final, density)
+            stated = {"clean": clean, "final": final, "mean": 0.5 * (clean + final)}[item.state]
+            return DROP, stated * tested
+        return DROP, math.nan if item.drop is None else pascals(item.drop, density) * tested
+
+    def _heading(self, item: Item, carrier: int) -> str:
+        if item.heading is not None:
+            return item.heading
+        if carrier >= self._first_source:
+            return "plant"
+        return "control" if item.control else "distribution"
+

@@ -1,0 +1,262 @@
+"""Flows and pressure drops of every leg, item and terminal, on whole arrays."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from budget.network.arrays import Bools, Floats, Ints, Items, Layout, Legs
+from budget.network.equipment import DROP, KV, K
+from budget.network.equipment import LENGTH as EQUIVALENT
+from budget.network.media import GRAVITY
+from budget.physics.fittings import valve_drop
+from budget.physics.friction import friction_factor, pressure_gradient, regime, reynolds
+from budget.physics.power import velocity_pressure
+
+
+@dataclass(frozen=True, slots=True)
+class Hydraulics:
+    """What flows and what it costs: kg/s, m/s, Pa, Pa/m; one element a leg, terminal, item or device."""
+
+    terminal_mass: Floats
+    leg_mass: Floats
+    source_mass: Floats
+    too_diverse: Bools
+    """Legs whose diversity makes their flow less than that of their largest branch."""
+    velocity: Floats
+    velocity_pressure: Floats
+    reynolds: Floats
+    regime: NDArray[np.int8]
+    factor: Floats
+    gradient: Floats
+    friction: Floats
+    fittings: Floats
+    item_drop: Floats
+    leg_items: Floats
+    leg_static: Floats
+    leg_base: Floats
+    """Base drop of the device that stands on the leg."""
+    leg_total: Floats
+    """Friction, fittings, items, device at base drop and static of a leg."""
+    device_base: Floats
+    device_open: Floats
+    terminal_drop: Floats
+    terminal_items: Floats
+    terminal_static: Floats
+    terminal_base: Floats
+    terminal_total: Floats
+    source_items: Floats
+
+
+def flow_and_drops(layout: Layout) -> Hydraulics:
+    """Compute design flows and every drop of a run that was laid out."""
+    legs, terminals, items = layout.legs, layout.terminals, layout.items
+    mass, leg_mass, source_mass, too_diverse = _flows(layout)
+    velocity = leg_mass / (legs.density * legs.area)
+    re = reynolds(legs.density, velocity, legs.diameter, legs.viscosity)
+    factor = friction_factor(re, legs.roughness / legs.diameter, legs.laminar)
+    gradient = legs.stretch * pressure_gradient(factor, legs.density, velocity, legs.diameter)
+    pv = velocity_pressure(legs.density, velocity)
+    friction = gradient * legs.length
+    fittings = _coefficients(legs, re) * pv
+    static = legs.density * GRAVITY * legs.rise
+
+    carried = np.concatenate([leg_mass, mass, source_mass])
+    item_drop = _item_drops(items, carried, pv, gradient)
+    owners = np.bincount(items.carrier, weights=item_drop, minlength=len(carried))
+    leg_count, terminal_count = len(legs), len(terminals)
+    device_open, device_base = _device_drops(layout, carried, pv)
+    base = np.zeros(len(carried))
+    for use, drop in zip(layout.devices, device_base.tolist(), strict=True):
+        base[use.carrier] = drop
+    leg_items, leg_base = owners[:leg_count], base[:leg_count]
+    terminal_items = owners[leg_count : leg_count + terminal_count]
+    terminal_base = base[leg_count : leg_count + terminal_count]
+    terminal_drop = _terminal_drops(layout, mass)
+    terminal_static = terminals.density * GRAVITY * terminals.rise + terminals.outlet
+    return Hydraulics(
+        terminal_mass=mass,
+        leg_mass=leg_mass,
+        source_mass=source_mass,
+        too_diverse=too_diverse,
+        velocity=velocity,
+        velocity_pressure=pv,
+        reynolds=re,
+        regime=regime(re),
+        factor=factor,
+        gradient=gradient,
+        friction=friction,
+        fittings=fittings,
+        item_drop=item_drop,
+        leg_items=leg_items,
+        leg_static=static,
+        leg_base=leg_base,
+        leg_total=friction + fittings + leg_items + leg_base + static,
+        device_base=device_base,
+        device_open=device_open,
+        terminal_drop=terminal_drop,
+        terminal_items=terminal_items,
+        terminal_static=terminal_static,
+        terminal_base=terminal_base,
+        terminal_total=terminal_drop + terminal_items + terminal_static + terminal_base,
+        source_items=owners[leg_count + terminal_count :],
+    )
+
+
+def _coefficients(legs: Legs, re: Floats) -> Floats:
+    """Return the loss coefficient of all fittings of each leg at its Reynolds number; 0 where nothing flows."""
+    k = legs.constant
+    if legs.per_reynolds.any():
+        k = k + np.divide(legs.per_reynolds, re, out=np.zeros_like(re), where=re > 0.0)
+    return k
+
+
+def sum_served(values: Floats, order: Ints, start: Ints, end: Ints) -> Floats:
+    """Return for each leg the sum of a value over the terminals that it serves; 0 where it serves none."""
+    return _reduce_served(np.add, values, order, start, end, 0.0)
+
+
+def least_served(values: Floats, order: Ints, start: Ints, end: Ints) -> Floats:
+    """Return for each leg the least value among the terminals that it serves; infinite where it serves none."""
+    return _reduce_served(np.minimum, values, order, start, end, np.inf)
+
+
+def _reduce_served(
+    reduce: np.ufunc, values: Floats, order: Ints, start: Ints, end: Ints, none: float
+) -> Floats:
+    if not len(start):
+        return np.zeros(0)
+    padded = np.append(values[order], none)
+    ends = np.empty(2 * len(start), dtype=np.int64)
+    ends[0::2], ends[1::2] = start, end
+    found = reduce.reduceat(padded, ends)[0::2]
+    return np.asarray(np.where(end > start, found, none), dtype=np.float64)
+
+
+def _flows(layout: Layout) -> tuple[Floats, Floats, Floats, Bools]:
+    terminals = layout.terminals
+    mass = terminals.mass.copy()
+    lone = np.flatnonzero(terminals.lone)
+    if len(lone):
+        mass[lone] = 0.0
+        other = _source_flows(layout, mass, _leg_flows(layout, mass)[0])
+        for terminal in lone.tolist():
+            mass[terminal] = other[0 if not terminals.discharge[terminal] else 1][terminals.source[terminal]]
+    leg_mass, too_diverse = _leg_flows(layout, mass)
+    discharge, suction = _source_flows(layout, mass, leg_mass)
+    alone = ~np.isin(np.arange(len(layout.media)), terminals.source[terminals.discharge])
+    return mass, leg_mass, np.where(alone, suction, discharge), too_diverse
+
+
+def _source_flows(layout: Layout, mass: Floats, leg_mass: Floats) -> tuple[Floats, Floats]:
+    """Return the flow of each source on its discharge and on its suction (or return) side."""
+    legs, terminals, count = layout.legs, layout.terminals, len(layout.media)
+    found = []
+    for outward, ends in ((True, terminals.out), (False, terminals.back)):
+        roots = (legs.parent < 0) & (legs.outward == outward)
+        total = np.bincount(legs.source[roots], weights=leg_mass[roots], minlength=count)
+        direct = (ends < 0) & (terminals.discharge == outward)
+        total += np.bincount(terminals.source[direct], weights=mass[direct], minlength=count)
+        found.append(total)
+    return found[0], found[1]
+
+
+def _leg_flows(layout: Layout, mass: Floats) -> tuple[Floats, Bools]:
+    """Return the design flow of each leg: what hangs on it, or its diversity times all terminals that it serves."""
+    legs = layout.legs
+    whole = sum_served(mass, layout.order, layout.start, layout.end)
+    diversity = legs.diversity
+    nowhere = np.zeros(len(legs), dtype=np.bool_)
+    if np.isnan(diversity).all():
+        return whole, nowhere
+    flow = np.zeros(len(legs))
+    largest = np.zeros(len(legs))
+    for ends in (layout.terminals.out, layout.terminals.back):
+        on_leg = ends >= 0
+        np.add.at(flow, ends[on_leg], mass[on_leg])
+        np.maximum.at(largest, ends[on_leg], mass[on_leg])
+    for level in _levels(legs.parent):
+        shared = level[~np.isnan(diversity[level])]
+        flow[shared] = diversity[shared] * whole[shared]
+        inner = level[legs.parent[level] >= 0]
+        np.add.at(flow, legs.parent[inner], flow[inner])
+        np.maximum.at(largest, legs.parent[inner], flow[inner])
+    return flow, flow < largest * (1.0 - 1e-9)
+
+
+def _levels(parent: Ints) -> list[Ints]:
+    """Return the legs by distance from their source, the furthest first."""
+    depth = np.zeros(len(parent), dtype=np.int64)
+    above = parent.copy()
+    while (inner := above >= 0).any():
+        depth[inner] += 1
+        above[inner] = parent[above[inner]]
+    order = np.argsort(-depth, kind="stable")
+    cuts = np.flatnonzero(np.diff(depth[order])) + 1
+    return [np.asarray(level, dtype=np.int64) for level in np.split(order, cuts)]
+
+
+def _item_drops(items: Items, carried: Floats, pv: Floats, gradient: Floats) -> Floats:
+    mass = carried[items.carrier]
+    flow = mass / items.density
+    each = flow / items.parallel
+    drop = np.full(len(items), np.nan)
+    at_neck = ~np.isnan(items.neck)
+    reference = np.where(at_neck | (items.reference < 0), 0, items.reference)
+    has_leg = items.reference >= 0
+    form = items.form
+
+    these = form == K
+    if these.any():
+        neck_pv = velocity_pressure(items.density, flow / items.neck)
+        leg_pv = np.where(has_leg, pv[reference], np.nan) if len(pv) else np.nan
+        both = items.value * np.where(at_neck, neck_pv, leg_pv) / items.parallel**2
+        drop[these] = both[these]
+    these = form == KV
+    if these.any():
+        drop[these] = valve_drop(each[these], items.value[these], items.density[these])
+    these = form == DROP
+    if these.any():
+        ratio = np.where(np.isnan(items.at), 1.0, each / items.at)
+        drop[these] = (items.value * ratio**items.exponent)[these]
+    these = form == EQUIVALENT
+    if these.any():
+        along = np.where(has_leg, gradient[reference], np.nan) if len(gradient) else np.full(len(items), np.nan)
+        drop[these] = (items.value * along / items.parallel**2)[these]
+    return drop
+
+
+def _device_drops(layout: Layout, carried: Floats, pv: Floats) -> tuple[Floats, Floats]:
+    """Return each device's drop fully open (0 where it has no table), and its base drop."""
+    uses = layout.devices
+    mass = carried[np.array([use.carrier for use in uses], dtype=np.int64)]
+    density, open_kv, open_k, neck, least = (
+        np.array([getattr(use, name) for use in uses], dtype=np.float64)
+        for name in ("density", "open_kv", "open_k", "neck", "least_drop")
+    )
+    flow = mass / density
+    reference = np.array([use.reference for use in uses], dtype=np.int64)
+    leg_pv = np.array([pv[number] if number >= 0 else np.nan for number in reference.tolist()])
+    damper = open_k * np.where(np.isnan(neck), leg_pv, velocity_pressure(density, flow / neck))
+    opened = np.where(
+        ~np.isnan(open_kv), valve_drop(flow, open_kv, density), np.where(np.isnan(open_k), 0.0, damper)
+    )
+    return opened, np.maximum(opened, least)
+
+
+def _terminal_drops(layout: Layout, mass: Floats) -> Floats:
+    """Return the total-pressure drop of each terminal at design flow."""
+    terminals = layout.terminals
+    flow = mass / terminals.density
+    ratio = np.where(np.isnan(terminals.drop_at), 1.0, flow / terminals.drop_at) ** terminals.exponent
+    drop = terminals.drop * ratio
+    static = ~np.isnan(terminals.static_drop)
+    if static.any():
+        neck_pv = velocity_pressure(terminals.density, flow / terminals.neck)
+        part = terminals.static_drop * ratio
+        total = np.where(terminals.discharge, part + neck_pv, np.abs(part) - neck_pv)
+        drop = np.where(static, total, drop)
+    drop = np.where(terminals.broken, np.nan, drop)
+    return np.asarray(np.where(np.isnan(mass), np.nan, drop), dtype=np.float64)

@@ -1,0 +1,334 @@
+"""From a description to arrays: `lay_out`."""
+
+from __future__ import annotations
+
+import dataclasses
+import math
+from collections import defaultdict
+
+import numpy as np
+
+from budget.catalogue import coefficient
+from budget.description import (
+    Basis,
+    Description,
+    Finding,
+    Geometry,
+    Level,
+    Path,
+    Quantity,
+    Run,
+    error,
+    note,
+    warning,
+)
+from budget.network.arrays import DeviceUse, Floats, Ints, Items, Layout, Legs, Loss, Terminals, Zone
+from budget.network.equipment import EquipmentRows
+from budget.network.media import Media, media_of, medium_at, pascals, volume
+from budget.network.topology import AT_SOURCE, Topology, connect
+from budget.network.zones import find_zones
+from budget.physics import shapes
+
+Broken = dict[Path, set[str]]
+"""Keys of each table that could not be read: what rests on them is NaN."""
+
+
+def lay_out(description: Description) -> Layout:
+    """Lay a run out as arrays: legs, terminals, items, devices and zones, in SI base units."""
+    topology = connect(description)
+    media, findings = media_of(description)
+    findings = [*topology.findings, *findings]
+    broken = _broken(description)
+    legs, zones, terminal_zone = _legs(description, topology, media, broken, findings)
+    terminals = _terminals(description, topology, media, broken, terminal_zone, findings)
+    rows = EquipmentRows(description, topology, media, terminals, broken, findings)
+    items = rows.items()
+    devices, zones = _with_devices(rows.devices(), zones, topology)
+    order, start, end = _serving(legs, terminals)
+    return Layout(
+        description,
+        topology,
+        tuple(media),
+        legs,
+        terminals,
+        items,
+        devices,
+        zones,
+        order,
+        start,
+        end,
+        tuple(findings),
+    )
+
+
+def _broken(description: Description) -> Broken:
+    broken: Broken = defaultdict(set)
+    for finding in description.findings:
+        if finding.level is Level.ERROR and finding.code != "later" and len(finding.path) > 1:
+            broken[finding.path[:2]].add(str(finding.path[2]) if len(finding.path) > 2 else "")
+    return broken
+
+
+_RUN_KEYS = {"pipe", "duct", "size", "bore", "length", "fittings", "compression", "fitting_method"}
+
+
+def _legs(
+    description: Description, topology: Topology, media: list[Media], broken: Broken, findings: list[Finding]
+) -> tuple[Legs, tuple[Zone, ...], dict[str, int]]:
+    count = len(topology.legs)
+    columns: dict[str, Floats] = {
+        name: np.full(count, np.nan) for name in ("density", "viscosity", "length", "roughness", "diversity")
+    }
+    constant, per_reynolds = np.zeros(count), np.zeros(count)
+    rise = np.zeros(count)
+    compression = np.zeros(count)
+    geometries: list[Geometry | None] = []
+    losses: list[tuple[Loss, ...]] = []
+    known_losses: dict[tuple[Path, bool], tuple[Loss, ...]] = {}
+    for number, leg in enumerate(topology.legs):
+        if leg.run_out:
+            owner = description.terminals[leg.owner]
+            run = owner.run or Run()
+        else:
+            section = description.sections[leg.owner]
+            run, owner = section.run, section  # type: ignore[assignment]
+            if leg.first and section.rise != 0.0:
+                if topology.kinds[leg.source] == "open":
+                    rise[number] = section.rise
+                else:
+                    text = "rise counts in an open liquid circuit only; remove it, or open the source"
+                    findings.append(error("rise", text, (*section.path, "rise")))
+        medium = media[leg.source].supply if leg.outward else media[leg.source].back
+        columns["density"][number], columns["viscosity"][number] = medium.density, medium.viscosity
+        columns["length"][number] = math.nan if run.length is None else run.length
+        rough = run.line.roughness if run.line else None
+        columns["roughness"][number] = math.nan if rough is None else rough
+        if run.diversity is not None:
+            columns["diversity"][number] = run.diversity
+        if run.line is not None and run.line.flexible:
+            compression[number] = run.compression
+        geometries.append(run.geometry)
+        key = (owner.path, leg.run_out)
+        if key not in known_losses:
+            known_losses[key] = _losses(description, run, findings)
+        losses.append(known_losses[key])
+        constant[number] = sum(loss.count * loss.constant for loss in losses[-1])
+        per_reynolds[number] = sum(loss.count * loss.per_reynolds for loss in losses[-1])
+        if broken.get(owner.path, set()) & _RUN_KEYS:
+            constant[number] = math.nan
+    area, diameter, laminar = _cross_sections(geometries)
+    stretch = np.where(compression > 0.0, shapes.flexible_factor(compression, diameter), 1.0)
+    zones, zone, terminal_zone = find_zones(description, topology, findings)
+    legs = Legs(
+        parent=np.array([leg.parent for leg in topology.legs], dtype=np.int64),
+        source=np.array([leg.source for leg in topology.legs], dtype=np.int64),
+        zone=zone,
+        first=np.array([leg.first for leg in topology.legs], dtype=np.bool_),
+        outward=np.array([leg.outward for leg in topology.legs], dtype=np.bool_),
+        run_out=np.array([leg.run_out for leg in topology.legs], dtype=np.bool_),
+        area=area,
+        diameter=diameter,
+        laminar=laminar,
+        stretch=stretch,
+        constant=constant,
+        per_reynolds=per_reynolds,
+        rise=rise,
+        losses=tuple(losses),
+        **columns,
+    )
+    return legs, zones, terminal_zone
+
+
+def _cross_sections(geometries: list[Geometry | None]) -> tuple[Floats, Floats, Floats]:
+    width = np.array([g.width if g else math.nan for g in geometries], dtype=np.float64)
+    height = np.array([g.height if g else math.nan for g in geometries], dtype=np.float64)
+    shape = np.array([g.shape if g else "round" for g in geometries], dtype=object)
+    area, diameter, laminar = (np.full(len(geometries), np.nan) for _ in range(3))
+    for name in ("round", "rectangular", "oval"):
+        these = shape == name
+        if not these.any():
+            continue
+        if name == "round":
+            found = shapes.circle(width[these])
+        else:
+            make = shapes.rectangle if name == "rectangular" else shapes.flat_oval
+            found = make(width[these], height[these])
+        area[these], diameter[these] = found.area, found.hydraulic_diameter
+        laminar[these] = found.laminar_constant
+    return area, diameter, laminar
+
+
+def _losses(description: Description, run: Run, findings: list[Finding]) -> tuple[Loss, ...]:
+    """Return the fittings of a run with their coefficients; a finding where a table does not reach."""
+    found = []
+    for use in run.fittings:
+        own = description.fittings.get(use.name)
+        if own is not None:
+            found.append(Loss(use.name, use.count, own.k, 0.0, "own", own.source, "stated in the run"))
+            continue
+        if run.geometry is None:
+            found.append(Loss(use.name, use.count, math.nan, 0.0, "", "", ""))
+            continue
+        bore = run.geometry.width if run.geometry.shape == "round" else _hydraulic_diameter(run.geometry)
+        nominal = run.geometry.nominal if run.geometry.shape == "round" else bore
+        k = coefficient(use.name, run.fitting_method, nominal, bore)
+        if k is None:
+            found.append(Loss(use.name, use.count, math.nan, 0.0, "", "", ""))
+            continue
+        found.append(Loss(use.name, use.count, k.constant, k.per_reynolds, k.method, k.source, k.known_from))
+        duct = run.line is not None and run.line.kind == "duct"
+        if duct and k.method != "constant":
+            text = f"{use.name!r} is a pipe fitting; its coefficient is not that of a duct: state k"
+            findings.append(warning("fitting-range", text, use.path))
+        elif not k.in_range:
+            text = f"{use.name!r} is outside its table at this size; the nearest tabulated value is used"
+            findings.append(warning("fitting-range", text, use.path))
+        elif k.method not in (run.fitting_method, "constant") and run.fitting_method != "by size":
+            text = f"{use.name!r} has no coefficient by {run.fitting_method}; it is taken {k.method}"
+            findings.append(note("fitting-method", text, use.path))
+    return tuple(found)
+
+
+def _hydraulic_diameter(geometry: Geometry) -> float:
+    make = shapes.rectangle if geometry.shape == "rectangular" else shapes.flat_oval
+    return float(make(geometry.width, geometry.height).hydraulic_diameter)
+
+
+_TERMINAL_KEYS = {"drop", "at", "exponent", "static_drop", "neck", "outlet_pressure", "rise", "item"}
+
+
+def _terminals(
+    description: Description,
+    topology: Topology,
+    media: list[Media],
+    broken: Broken,
+    zone: dict[str, int],
+    findings: list[Finding],
+) -> Terminals:
+    ids = tuple(id_ for id_ in description.terminals if id_ in topology.terminal_source)
+    rows: dict[str, list[float]] = defaultdict(list)
+    flags: dict[str, list[bool]] = defaultdict(list)
+    places: dict[str, list[int]] = defaultdict(list)
+    sides = {(topology.terminal_source[id_], id_ in topology.outward): 0 for id_ in ids}
+    for id_ in ids:
+        sides[topology.terminal_source[id_], id_ in topology.outward] += 1
+    for id_ in ids:
+        terminal = description.terminals[id_]
+        source = topology.terminal_source[id_]
+        discharge = id_ in topology.outward
+        supply = media[source].supply
+        own = supply if discharge else media[source].back
+        bad = broken.get(terminal.path, set())
+        mass = _mass(description, media[source], id_, findings)
+        other = sides.get((source, not discharge), 0)
+        lone = topology.kinds[source] == "air" and sides[source, discharge] == 1 and other > 0
+        unstated = terminal.flow is None and terminal.load is None
+        flags["lone"].append(lone and unstated and not bad & {"flow", "load"})
+        if unstated and not flags["lone"][-1] and not bad & {"flow", "load"}:
+            findings.append(error("no-flow", "the terminal has no flow; state flow or load", terminal.path))
+        flags["discharge"].append(discharge)
+        flags["broken"].append(bool(bad & _TERMINAL_KEYS))
+        places["source"].append(source)
+        places["zone"].append(zone[id_])
+        places["out"].append(topology.outward.get(id_, AT_SOURCE))
+        places["back"].append(topology.back.get(id_, AT_SOURCE))
+        rows["mass"].append(mass)
+        rows["density"].append(own.density)
+        rows["drop"].append(_pascals(terminal.drop, supply.density, 0.0))
+        rows["drop_at"].append(math.nan if terminal.at is None else volume(terminal.at, own.density))
+        rows["exponent"].append(terminal.exponent)
+        rows["static_drop"].append(_pascals(terminal.static_drop, supply.density, math.nan))
+        rows["neck"].append(neck_area(terminal.neck))
+        rows["rise"].append(terminal.rise)
+        rows["outlet"].append(_pascals(terminal.outlet_pressure, supply.density, 0.0))
+        if topology.kinds[source] != "open":
+            for key, stated in (("rise", terminal.rise != 0.0), ("outlet_pressure", terminal.outlet_pressure)):
+                if stated:
+                    text = f"{key} counts in an open liquid circuit only; remove it, or open the source"
+                    findings.append(error("rise", text, (*terminal.path, key)))
+                    rows["rise" if key == "rise" else "outlet"][-1] = 0.0
+    return Terminals(
+        ids=ids,
+        **{key: np.array(places[key], dtype=np.int64) for key in ("source", "zone", "out", "back")},
+        **{key: np.array(flags[key], dtype=np.bool_) for key in ("lone", "discharge", "broken")},
+        **{
+            key: np.array(rows[key], dtype=np.float64)
+            for key in ("mass", "density", "drop", "drop_at", "exponent", "static_drop", "neck", "rise", "outlet")
+        },
+    )
+
+
+def _pascals(quantity: Quantity | None, density: float, otherwise: float) -> float:
+    return otherwise if quantity is None else pascals(quantity, density)
+
+
+def neck_area(geometry: Geometry | None) -> float:
+    """Return the area of a neck or outlet, m2; NaN for none."""
+    if geometry is None:
+        return math.nan
+    return float(_cross_sections([geometry])[0][0])
+
+
+def _mass(description: Description, media: Media, id_: str, findings: list[Finding]) -> float:
+    """Return a terminal's mass flow: stated, or load / (cp |dT|) with cp the mean of both legs."""
+    terminal, supply = description.terminals[id_], media.supply
+    if terminal.flow is not None:
+        mass = terminal.flow.basis is Basis.MASS
+        return terminal.flow.value if mass else terminal.flow.value * supply.density
+    if terminal.load is None:
+        return math.nan
+    back = media.back
+    if terminal.return_temperature is not None:
+        back = medium_at(description.fluid, terminal.return_temperature)
+    path = (*terminal.path, "load")
+    difference = abs(supply.temperature - back.temperature)
+    if not difference > 0.0:
+        text = "a load needs a temperature difference; state return_temperature here or in the fluid"
+        findings.append(error("no-difference", text, path))
+        return math.nan
+    heat = 0.5 * (supply.specific_heat + back.specific_heat)
+    if math.isnan(heat):
+        findings.append(error("fluid", "a load needs the fluid's specific heat; state specific_heat", path))
+    return terminal.load / (heat * difference)
+
+
+def _with_devices(
+    devices: tuple[DeviceUse, ...], zones: tuple[Zone, ...], topology: Topology
+) -> tuple[tuple[DeviceUse, ...], tuple[Zone, ...]]:
+    """Tie each held zone to the device that holds it."""
+    held = {zone.leg: number for number, zone in enumerate(zones) if zone.leg >= 0}
+    tied = list(zones)
+    uses = []
+    for number, use in enumerate(devices):
+        behind = held.get(use.number, -1) if not use.terminal and use.device.holds == "differential" else -1
+        if behind >= 0:
+            set_point = _pascals(use.device.set_point, use.density, math.nan)
+            tied[behind] = dataclasses.replace(zones[behind], device=number, set_point=set_point)
+        uses.append(dataclasses.replace(use, zone=behind))
+    return tuple(uses), tuple(tied)
+
+
+def _serving(legs: Legs, terminals: Terminals) -> tuple[Ints, Ints, Ints]:
+    """Order the terminals so that those of each leg stand together (children after their parent's own)."""
+    count = len(legs)
+    children: list[list[int]] = [[] for _ in range(count + 1)]
+    hanging: list[list[int]] = [[] for _ in range(count + 1)]
+    for leg, parent in enumerate(legs.parent.tolist()):
+        children[parent].append(leg)
+    for ends in (terminals.out, terminals.back):
+        for terminal, leg in enumerate(ends.tolist()):
+            if leg >= 0:
+                hanging[leg].append(terminal)
+    order: list[int] = []
+    start, end = [0] * count, [0] * count
+    stack = [(root, False) for root in reversed(children[-1])]
+    while stack:
+        leg, done = stack.pop()
+        if done:
+            end[leg] = len(order)
+            continue
+        start[leg] = len(order)
+        order += hanging[leg]
+        stack.append((leg, True))
+        stack += [(child, False) for child in reversed(children[leg])]
+    return (np.array(values, dtype=np.int64) for values in (order, start, end))  # type: ignore[return-value]

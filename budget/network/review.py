@@ -1,0 +1,334 @@
+"""What a designer must look at in the results: limits, doubtful regimes, unstated junctions, excess, authority."""
+
+from __future__ import annotations
+
+import math
+from collections import defaultdict
+from collections.abc import Iterator
+
+import numpy as np
+
+from budget.description import Description, Finding, Path, Run, Section, Terminal, error, note, warning
+from budget.network.arrays import Floats
+from budget.network.computed import Computed
+from budget.network.duty import source_result
+from budget.network.takeup import adjust
+from budget.physics.shapes import FLEXIBLE_COMPRESSION, FLEXIBLE_DIAMETERS
+
+SMALL = 1e-3
+"""Pa below which a remaining pressure is rounding."""
+
+Authorities = dict[int, tuple[float | None, float | None]]
+
+
+def review(run: Computed, authority: Authorities) -> Iterator[Finding]:
+    """Find what is doubtful in a computed run, in the order of the file's tables."""
+    yield from _sources(run)
+    yield from _zones(run)
+    yield from _legs(run)
+    yield from _junctions(run)
+    yield from _flexible(run)
+    yield from _terminals(run)
+    yield from _devices(run)
+    yield from _authorities(run, authority)
+
+
+def _sources(run: Computed) -> Iterator[Finding]:
+    for number, source in enumerate(run.layout.description.sources.values()):
+        result = source_result(run, number)
+        if result.in_hand is not None and result.in_hand < 0.0:
+            yield warning(
+                "nothing-in-hand",
+                "the duty, {0}, is {1} above what is available",
+                (*source.path, "available"),
+                (result.duty, "pressure"),
+                (-result.in_hand, "pressure"),
+            )
+        for heading, allowed in result.budget.items():
+            over = result.spent[heading] - allowed
+            if over > SMALL:
+                yield warning(
+                    "heading",
+                    f"{heading} of {source.id} takes {{0}}, {{1}} above its budget",
+                    ("budget", heading),
+                    (result.spent[heading], "pressure"),
+                    (over, "pressure"),
+                )
+        if result.kind == "air":
+            yield from _air_balance(run, number, source.path)
+
+
+def _air_balance(run: Computed, source: int, path: Path) -> Iterator[Finding]:
+    terminals, legs = run.layout.terminals, run.layout.legs
+    flows = []
+    for outward in (True, False):
+        roots = (legs.parent < 0) & (legs.outward == outward) & (legs.source == source)
+        ends = terminals.out if outward else terminals.back
+        direct = (ends < 0) & (terminals.discharge == outward) & (terminals.source == source)
+        flows.append(float(run.drops.leg_mass[roots].sum() + run.drops.terminal_mass[direct].sum()))
+    discharge, suction = flows
+    if discharge > 0 and suction > 0 and abs(discharge - suction) > 0.01 * max(discharge, suction):
+        text = (
+            f"discharge {discharge:.4g} kg/s and suction {suction:.4g} kg/s differ by more than 1 %; "
+            "the source takes the discharge side's flow"
+        )
+        yield warning("air-balance", text, path)
+
+
+def _zones(run: Computed) -> Iterator[Finding]:
+    for number, zone in enumerate(run.layout.zones):
+        largest = float(run.circuits.largest[number])
+        if zone.device < 0 or math.isnan(zone.set_point) or not zone.set_point < largest * (1.0 - 1e-9):
+            continue
+        use = run.layout.devices[zone.device]
+        yield error(
+            "set-point",
+            f"the set point of {use.device.name!r}, {{0}}, is below the largest circuit behind it, {{1}}; raise it",
+            ("device", use.device.name, "set_point"),
+            (zone.set_point, "pressure"),
+            (largest, "pressure"),
+        )
+
+
+def _owner(run: Computed, leg: int) -> tuple[Section | Terminal, Run]:
+    found = run.layout.topology.legs[leg]
+    if found.run_out:
+        terminal = run.layout.description.terminals[found.owner]
+        return terminal, terminal.run or Run()
+    section = run.layout.description.sections[found.owner]
+    return section, section.run
+
+
+def _legs(run: Computed) -> Iterator[Finding]:
+    """Find legs beyond their limits, one finding a section and code, at its worst leg."""
+    drops, legs = run.drops, run.layout.legs
+    most, steepest, least = _limits(run)
+    flowing = drops.leg_mass > 0.0
+    with np.errstate(invalid="ignore"):
+        checks = (
+            ("velocity", drops.velocity > most, drops.velocity, most, "velocity", "above"),
+            ("gradient", drops.gradient > steepest, drops.gradient, steepest, "gradient", "above"),
+            ("slow", flowing & (drops.velocity < least), drops.velocity, least, "velocity", "below"),
+        )
+        transitional = flowing & (drops.regime == 1)
+    for code, wrong, values, limit, dimension, side in checks:
+        for leg in _worst(run, wrong, values if side == "above" else -values):
+            owner, _ = _owner(run, leg)
+            word = "gradient" if code == "gradient" else "velocity"
+            text = f"{word} {{0}} is {side} its limit, {{1}}"
+            path: Path = (*owner.path, "bore" if _states_bore(owner) else "size")
+            yield warning(code, text, path, (float(values[leg]), dimension), (float(limit[leg]), dimension))
+    for leg in _worst(run, transitional, drops.friction):
+        owner, _ = _owner(run, leg)
+        text = (
+            f"Reynolds number {float(drops.reynolds[leg]):.0f} is transitional (2300 to 4000); "
+            "no published friction law is reliable there"
+        )
+        yield warning("transitional", text, (*owner.path, "size"))
+    for leg in np.flatnonzero(drops.too_diverse).tolist():
+        if legs.first[leg] or not drops.too_diverse[_first_leg(run, leg)]:
+            owner, _ = _owner(run, leg)
+            yield error(
+                "diversity",
+                "the diversified flow is less than that of the largest branch; raise the diversity",
+                (*owner.path, "diversity"),
+            )
+
+
+def _states_bore(owner: Section | Terminal) -> bool:
+    geometry = owner.run.geometry if owner.run else None
+    return geometry is not None and geometry.label.endswith("mm bore")
+
+
+def _first_leg(run: Computed, leg: int) -> int:
+    found = run.layout.topology.legs[leg]
+    owned = run.layout.topology.run_out_legs if found.run_out else run.layout.topology.section_legs
+    return owned[found.owner][0]
+
+
+def _worst(run: Computed, wrong: np.ndarray, values: Floats) -> list[int]:  # type: ignore[type-arg]
+    """Return the leg with the largest value of each owner that has a wrong one."""
+    best: dict[tuple[bool, str], int] = {}
+    for leg in np.flatnonzero(wrong).tolist():
+        found = run.layout.topology.legs[leg]
+        key = (found.run_out, found.owner)
+        if key not in best or values[leg] > values[best[key]]:
+            best[key] = leg
+    return list(best.values())
+
+
+def _limits(run: Computed) -> tuple[Floats, Floats, Floats]:
+    """Return greatest velocity, greatest gradient and least velocity of each leg: its own, its class's, by bore, general."""
+    limits = run.layout.description.limits
+    count = len(run.layout.legs)
+    most, steepest, least = (np.full(count, bound) for bound in (np.inf, np.inf, 0.0))
+    known: dict[str, tuple[float, float, float]] = {}
+    for leg, found in enumerate(run.layout.topology.legs):
+        if found.owner not in known:
+            _, owner = _owner(run, leg)
+            by_class = limits.classes.get(owner.class_ or ("run-out" if found.run_out else ""), {})
+            known[found.owner] = (
+                _first(owner.limit_velocity, by_class.get("velocity"), _by_bore(run, owner), limits.velocity, math.inf),
+                _first(owner.limit_gradient, by_class.get("gradient"), limits.gradient, math.inf),
+                _first(by_class.get("least_velocity"), limits.least_velocity, 0.0),
+            )
+        most[leg], steepest[leg], least[leg] = known[found.owner]
+    return most, steepest, least
+
+
+def _first(*values: float | None) -> float:
+    return next(value for value in values if value is not None)
+
+
+def _by_bore(run: Computed, owner: Run) -> float | None:
+    bore = owner.geometry.bore if owner.geometry else None
+    if bore is None:
+        return None
+    table = run.layout.description.limits.velocity_by_bore
+    return next((velocity for up_to, velocity in table if bore <= up_to * (1.0 + 1e-9)), None)
+
+
+def _junctions(run: Computed) -> Iterator[Finding]:
+    """Find legs that meet at a section's end without a junction stated: its loss is not counted."""
+    layout = run.layout
+    meeting: dict[int, dict[str, bool]] = defaultdict(dict)
+    for leg, found in enumerate(layout.topology.legs):
+        if found.parent >= 0 and layout.end[leg] > layout.start[leg]:
+            meeting[found.parent][found.owner] = found.run_out
+    for ends in (layout.terminals.out, layout.terminals.back):
+        for terminal, end in enumerate(ends.tolist()):
+            if end >= 0 and not layout.legs.run_out[end]:
+                meeting[end][layout.terminals.ids[terminal]] = True
+    unstated: dict[str, Path] = {}
+    for members in meeting.values():
+        if len(members) < 2:
+            continue
+        for id_, is_terminal in members.items():
+            owner = layout.description.terminals[id_] if is_terminal else layout.description.sections[id_]
+            if not _junction_stated(owner):
+                unstated[id_] = owner.path
+    rank = layout.description.rank()
+    for id_ in sorted(unstated, key=lambda id_: rank.get(id_, 0)):
+        yield warning(
+            "junction",
+            'legs meet and the junction is not stated, its loss is not counted; state takeoff, or "none"',
+            (*unstated[id_], "takeoff"),
+        )
+
+
+def _junction_stated(owner: Section | Terminal) -> bool:
+    takeoff = owner.takeoff if isinstance(owner, Terminal) else owner.run.takeoff
+    fittings = owner.run.fittings if owner.run else ()
+    return takeoff is not None or any(use.name.startswith("tee ") for use in fittings)
+
+
+def _flexible(run: Computed) -> Iterator[Finding]:
+    low, high = FLEXIBLE_DIAMETERS
+    for leg in np.flatnonzero(run.layout.legs.stretch != 1.0).tolist():
+        owner, built = _owner(run, leg)
+        diameter = float(run.layout.legs.diameter[leg])
+        if math.isnan(diameter):
+            continue
+        if not low - 1e-9 <= diameter <= high + 1e-9 or built.compression > FLEXIBLE_COMPRESSION[1] + 1e-9:
+            text = "flexible duct was measured from 150 to 250 mm and up to 30 % compression; this is extrapolated"
+            yield warning("flexible", text, (*owner.path, "size"))
+
+
+def _terminals(run: Computed) -> Iterator[Finding]:
+    terminals, drops = run.layout.terminals, run.drops
+    required = run.circuits.required[terminals.zone]
+    with np.errstate(invalid="ignore"):
+        left = np.flatnonzero(run.take_up.excess > SMALL + 1e-9 * required).tolist()
+        gaining = np.flatnonzero(drops.terminal_drop < 0.0).tolist()
+    balanced = {use.number for use in run.layout.devices if use.terminal}
+    for number in left:
+        terminal = run.layout.description.terminals[terminals.ids[number]]
+        what = "its device can't take it up" if number in balanced else "no device takes it up"
+        path: Path = (*terminal.path, "balance")
+        figure = (float(run.take_up.excess[number]), "pressure")
+        yield warning("excess", f"{{0}} remains and {what}; the terminal is over-supplied", path, figure)
+    for number in gaining:
+        terminal = run.layout.description.terminals[terminals.ids[number]]
+        yield warning(
+            "extract-gain",
+            "the static drop is less than the velocity pressure in the neck; check both",
+            (*terminal.path, "static_drop"),
+        )
+
+
+def _devices(run: Computed) -> Iterator[Finding]:
+    layout = run.layout
+    for number, use in enumerate(layout.devices):
+        path: Path = (*_device_owner(run, number), "balance")
+        drop = float(run.drops.device_base[number] + run.take_up.taken[number])
+        adjusted = adjust(layout, run.drops, number, drop)
+        table = use.device.kv or use.device.k
+        if table and use.device.holds is None and adjusted.setting is None and not math.isnan(drop):
+            yield warning(
+                "device-range",
+                f"{use.device.name!r} can't be set to drop {{0}}: outside its setting table; choose another size",
+                path,
+                (drop, "pressure"),
+            )
+        if adjusted.signal is not None and adjusted.signal < use.least_signal * (1.0 - 1e-9):
+            yield warning(
+                "signal",
+                "the measuring signal, {0}, is below the least that can be read, {1}",
+                path,
+                (adjusted.signal, "pressure"),
+                (use.least_signal, "pressure"),
+            )
+    if layout.devices:
+        for section in layout.description.sections.values():
+            if section.run.diversity is not None and section.run.diversity < 1.0:
+                text = "settings hold for the diversified flow, not for all terminals at once"
+                yield note("settings-diversified", text, (*section.path, "diversity"))
+
+
+def _device_owner(run: Computed, number: int) -> Path:
+    use, description = run.layout.devices[number], run.layout.description
+    if use.terminal:
+        return description.terminals[run.layout.terminals.ids[use.number]].path
+    return description.sections[run.layout.topology.legs[use.number].owner].path
+
+
+def _authorities(run: Computed, authority: Authorities) -> Iterator[Finding]:
+    limits, items = run.layout.description.limits, run.layout.items
+    for number, item in enumerate(items.items):
+        value, _ = authority.get(int(items.carrier[number]), (None, None))
+        if not item.control or value is None:
+            continue
+        path: Path = (*item.path, "control")
+        if value < limits.authority:
+            text = f"authority {value:.2f} is below {limits.authority:g} (common practice); a smaller Kv raises it"
+            yield warning("authority", text, path)
+        elif value < limits.authority_note:
+            text = f"authority {value:.2f} is below {limits.authority_note:g}, the value to aim for (common practice)"
+            yield note("authority-low", text, path)
+
+
+def accept(findings: tuple[Finding, ...], description: Description) -> tuple[Finding, ...]:
+    """Turn warnings that a section or terminal accepts into notes with the reason; note what was accepted in vain."""
+    accepted = {
+        (owner.path, code): reason
+        for owners in (description.sections, description.terminals)
+        for owner in owners.values()
+        for code, reason in owner.accept.items()
+    }
+    if not accepted:
+        return findings
+    used = set()
+    settled = []
+    for finding in findings:
+        key = (finding.path[:2], finding.code)
+        if finding.level == "warning" and key in accepted:
+            used.add(key)
+            finding = note(finding.code, f"{finding.message} (accepted: {_plain(accepted[key])})", finding.path, *finding.figures)
+        settled.append(finding)
+    for path, code in accepted.keys() - used:
+        settled.append(note("accept-unused", f"{code!r} was accepted here and does not occur", (*path, "accept", code)))
+    return tuple(settled)
+
+
+def _plain(reason: str) -> str:
+    return reason.replace("{", "{{").replace("}", "}}")

@@ -1,0 +1,108 @@
+"""What the hands can do: every action with its name, its keys and the places where it works.
+
+The table is the whole of it: the footer, the command list, the key bindings of the config and the manual read it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Literal
+
+Place = Literal["ledger", "detail", "findings", "manual", "text", "list", "entry"]
+"""Where the hands are: a screen, a list to pick from, or a field that is being written in."""
+
+SCREENS: tuple[Place, ...] = ("ledger", "detail", "findings", "manual")
+"""Screens on which a letter is a command."""
+
+EVERYWHERE: tuple[Place, ...] = (*SCREENS, "text")
+
+
+@dataclass(frozen=True, slots=True)
+class Action:
+    """One thing that can be done: its name in the config, what it says, its keys, where, and its rank in the footer."""
+
+    id: str
+    title: str
+    keys: tuple[str, ...]
+    places: tuple[Place, ...] = ("ledger",)
+    short: str = ""
+    """The word that the footer shows."""
+    rank: int = 99
+    """Place in the footer, the first six are shown; 99 is never shown."""
+
+
+_LISTS: tuple[Place, ...] = ("ledger", "detail", "findings", "list")
+
+ACTIONS: tuple[Action, ...] = (
+    Action("up", "Move up", ("up",), _LISTS),
+    Action("down", "Move down", ("down",), _LISTS),
+    Action("left", "Move to the column on the left", ("left",)),
+    Action("right", "Move to the column on the right", ("right",)),
+    Action("page_up", "Move up a page", ("pageup",), _LISTS),
+    Action("page_down", "Move down a page", ("pagedown",), _LISTS),
+    Action("first", "Move to the first row", ("home",), _LISTS),
+    Action("last", "Move to the last row", ("end",), _LISTS),
+    Action("edit", "Edit the cell", ("enter",), ("ledger", "detail"), "edit", 1),
+    Action("next_cell", "Move to the next cell that can be edited", ("tab",)),
+    Action("previous_cell", "Move to the cell before that can be edited", ("shift+tab",)),
+    Action("set", "Set a key of the row, in words of the file", ("equals_sign",), ("ledger", "detail"), "set key"),
+    Action("pick", "Pick for the cell from a list", ("p",), ("ledger", "detail"), "pick", 3),
+    Action("pick_size", "Pick a size", ("s",)),
+    Action("pick_fitting", "Pick fittings", ("f",)),
+    Action("add_after", "Add a section after this one", ("a",), short="add", rank=2),
+    Action("add_before", "Add a section before this one", ("b",)),
+    Action("add_beneath", "Add a section beneath this one", ("c",)),
+    Action("add_terminal", "Add a terminal", ("t",), short="terminal", rank=4),
+    Action("duplicate", "Duplicate the branch with new IDs", ("d",)),
+    Action("move", "Hang the branch on another section", ("m",)),
+    Action("earlier", "Move the branch up among its neighbours", ("shift+up", "left_square_bracket")),
+    Action("later", "Move the branch down among its neighbours", ("shift+down", "right_square_bracket")),
+    Action("delete", "Delete the row with what hangs on it", ("x", "delete")),
+    Action("rename", "Rename the ID, everywhere", ("r",)),
+    Action("fold", "Fold or unfold the branch", ("space",)),
+    Action("fold_all", "Fold or unfold every branch", ("z",)),
+    Action("undo", "Undo", ("u",), ("ledger", "detail", "findings"), "undo", 5),
+    Action("redo", "Redo", ("U", "ctrl+r"), ("ledger", "detail", "findings")),
+    Action("search", "Search the ledger", ("slash",), short="search"),
+    Action("next_match", "Next match", ("n",)),
+    Action("previous_match", "Match before", ("N",)),
+    Action("go_to", "Go to an ID", ("g",), ("ledger", "detail", "findings")),
+    Action("go_to_index", "Go to the index terminal", ("i",)),
+    Action("next_finding", "Go to the next finding", ("e",)),
+    Action("next_source", "Switch to the next source", ("P",)),
+    Action("show_ledger", "Ledger", ("f2",), EVERYWHERE),
+    Action("show_detail", "Row detail", ("v", "f3"), ("ledger", "findings"), "detail"),
+    Action("show_findings", "Findings", ("F", "f4"), ("ledger", "detail", "manual"), "findings"),
+    Action("show_text", "Text", ("T", "f5"), SCREENS),
+    Action("show_manual", "Manual", ("question_mark", "f1"), SCREENS),
+    Action("commands", "Command list", ("colon", "ctrl+p"), EVERYWHERE, "commands", 6),
+    Action("back", "Back to the ledger", ("escape",), ("ledger", "detail", "findings", "manual", "text"), "back"),
+    Action("save", "Save", ("ctrl+s",), EVERYWHERE, "save"),
+    Action("suspend", "Suspend to the shell", ("ctrl+z",), SCREENS),
+    Action("quit", "Quit", ("ctrl+q",), (*EVERYWHERE, "list", "entry")),
+    Action("choose", "Take what is marked", ("enter",), ("list", "findings"), "take", 1),
+    Action("leave", "Leave things as they were", ("escape", "ctrl+c"), ("list", "entry"), "leave", 3),
+    Action("accept", "Enter what is written", ("enter",), ("entry",), "enter", 1),
+    Action("accept_next", "Enter it and edit the next cell", ("tab",), ("entry",), "next cell", 2),
+    Action("accept_previous", "Enter it and edit the cell before", ("shift+tab",), ("entry",)),
+    Action("pick_instead", "Pick from a list instead", ("down",), ("entry",), "pick"),
+    Action("apply_text", "Put the text into the design", ("ctrl+e",), ("text",), "apply", 1),
+    Action("undo_text", "Undo in the text", ("ctrl+z",), ("text",)),
+)
+
+BY_ID: Mapping[str, Action] = {action.id: action for action in ACTIONS}
+
+LETTERS: Mapping[str, str] = {"h": "left", "j": "down", "k": "up", "l": "right"}
+"""Letters for movement, where the config asks for them."""
+
+FOOTER: Mapping[Place, tuple[str, ...]] = {
+    "ledger": ("edit", "add_after", "add_terminal", "undo", "save", "commands"),
+    "detail": ("edit", "pick", "undo", "save", "back", "commands"),
+    "findings": ("choose", "show_detail", "back", "commands"),
+    "manual": ("back", "show_findings", "commands"),
+    "text": ("apply_text", "save", "back", "commands"),
+    "list": ("choose", "leave"),
+    "entry": ("accept", "accept_next", "leave", "pick_instead"),
+}
+"""What the footer shows at each place, in order of use; six at most."""

@@ -1,0 +1,206 @@
+"""The app: wires the open document to the widgets, and the keys to what they do."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, ClassVar
+
+from textual import events
+from textual.app import App, ComposeResult
+from textual.containers import Horizontal
+
+from budget.description.edits import Edit
+from budget.description.finding import Path
+from budget.document import Document, Snapshot
+from budget.report.figures import Figures
+from budget.screens import entering, turning
+from budget.screens.actions import Place
+from budget.screens.budget_line import BudgetLine
+from budget.screens.chooser import Chooser, Offer
+from budget.screens.config import Config
+from budget.screens.doing import DOINGS
+from budget.screens.filters import AsciiFilter, SafeFilter
+from budget.screens.foot import Foot
+from budget.screens.ledger import Ledger, Mark
+from budget.screens.rows import View
+from budget.screens.safe import plain
+from budget.screens.themes import Theme
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from textual.widget import Widget
+
+WIDE = 120
+"""Columns from which the row detail stands beside the ledger."""
+
+
+class BudgetApp(App[int], inherit_bindings=False):
+    """The ledger with its budget line and foot; other screens take the ledger's place when they are first asked for."""
+
+    ENABLE_COMMAND_PALETTE = False
+    AUTO_FOCUS = None
+    ALLOW_SELECT = False
+    CSS: ClassVar[str] = """
+    Screen { overflow: hidden; }
+    #budget-line { height: 3; }
+    #middle { height: 1fr; }
+    #middle > * { width: 1fr; height: 1fr; }
+    #middle > #beside { width: 40%; }
+    #foot { height: 2; }
+    """
+
+    def __init__(self, document: Document, config: Config, theme: Theme, *, ascii_only: bool, notes: Sequence[str]) -> None:
+        """Open on a document, with the user's settings; notes are told at the foot."""
+        super().__init__()
+        self.document, self.config, self.colours = document, config, theme
+        self.keymap, self.notes = config.keymap, notes
+        self.entry: entering.Entry | None = None
+        self.at: Place = "ledger"
+        self.came_from: Place = "ledger"
+        self.sought = ""
+        self.change: tuple[str, str] = ("", "")
+        self.animation_level = "none"
+        self._filters.append(SafeFilter())
+        if ascii_only:
+            self._filters.append(AsciiFilter())
+        self.register_theme(theme.widget_theme())
+        self.theme = theme.name
+
+        view = View(document.snapshot)
+        self.ledger = Ledger(theme, view)
+        self.budget_line = BudgetLine(theme, view, self.ledger.source)
+        self.foot = Foot(theme, config.keymap)
+        self.choosers: dict[Place, Chooser] = {}
+
+    def compose(self) -> ComposeResult:
+        """Budget line, ledger, foot."""
+        yield self.budget_line
+        with Horizontal(id="middle"):
+            yield self.ledger
+        yield self.foot
+
+    def on_mount(self) -> None:
+        """Show the run, and say what was wrong with the settings."""
+        self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
+        self.show(self.document.snapshot)
+        self.tell()
+        if self.notes:
+            self.say(plain(self.notes[0]) + (f" (and {len(self.notes) - 1} more)" if len(self.notes) > 1 else ""), "warning")
+
+    # What is in front
+
+    @property
+    def place(self) -> Place:
+        """Where the hands are: a field that is open, else the screen."""
+        return "entry" if self.entry is not None else self.at
+
+    @property
+    def front(self) -> Ledger | Chooser:
+        """The ledger, or the list in its place."""
+        return self.choosers.get(self.at, self.ledger)
+
+    def turn_to(self, place: Place) -> None:
+        """Bring a screen to the front, in the place of the ledger."""
+        if place != self.at:
+            self.came_from, self.at = self.at, place
+        for widget in self.middle.children:
+            if widget.id != "beside":
+                widget.display = widget.id == place
+        self.tell()
+
+    @property
+    def middle(self) -> Widget:
+        """What stands between the budget line and the foot."""
+        return self.query_one("#middle")
+
+    def chooser(self, place: Place) -> Chooser:
+        """Return the list of a place; it is made when it is first asked for."""
+        if place not in self.choosers:
+            self.choosers[place] = Chooser(self.colours, place)
+            self.middle.mount(self.choosers[place])
+        return self.choosers[place]
+
+    def offer(self, offer: Offer) -> None:
+        """Show a list to pick from."""
+        self.chooser("list").present(offer)
+        self.turn_to("list")
+
+    # What is shown
+
+    def show(self, snapshot: Snapshot, before: Snapshot | None = None) -> None:
+        """Show a snapshot; with the one before it, by how much the required pressure changed."""
+        view = View(snapshot)
+        self.ledger.show(view)
+        source = self.ledger.source
+        if before is not None:
+            old, new = before.budget.sources.get(source), snapshot.budget.sources.get(source)
+            figures = Figures(snapshot.description)
+            changed = figures.change(old.required, new.required) if old is not None and new is not None else ""
+            self.change = (source, changed)
+        self._show_budget(view)
+
+    def _show_budget(self, view: View) -> None:
+        source = self.ledger.source
+        changed = self.change[1] if self.change[0] == source else ""
+        self.budget_line.show(view, source, changed, modified=self.document.dirty)
+
+    def apply(self, edit: Edit, label: str, path: Path | None = None) -> None:
+        """Put an edit into the document as one undo step; the cursor goes to `path`. Raises EditError."""
+        before = self.document.snapshot
+        self.document.apply(edit, label, mark=self.ledger.mark)
+        self.show(self.document.snapshot, before)
+        if path is not None:
+            self.ledger.return_to(Mark(path, self.ledger.cursor, self.ledger.column))
+        self.tell()
+
+    def say(self, message: str, role: str = "") -> None:
+        """Say something at the foot until the next key."""
+        self.foot.say(message, role)
+
+    def tell(self) -> None:
+        """Tell at the foot what is under the cursor, and which keys work here."""
+        self.foot.tell(self.place, turning.about(self))
+        if self.ledger.source != self.budget_line.source:
+            self._show_budget(self.ledger.view)
+        if self.entry is None:
+            turning.follow(self)
+
+    def keys(self, action: str) -> str:
+        """Spell the key of an action."""
+        return self.keymap.shown(action)
+
+    # What comes in
+
+    def on_key(self, event: events.Key) -> None:
+        """Do what the key means here; a letter goes into the field that is open."""
+        action = self.keymap.action(self.place, event.key)
+        if action is None and self._write(event):
+            event.stop().prevent_default()
+            return
+        if action is None:
+            return
+        event.stop().prevent_default()
+        if self.foot.message and self.entry is None:
+            self.say("")
+        DOINGS[action](self)
+
+    def on_paste(self, event: events.Paste) -> None:
+        """Put a text from the clipboard into the field that is open."""
+        if self.entry is not None:
+            entering.press(self, self.entry, self.entry.field.insert(event.text))
+        elif self.at == "list":
+            self.choosers["list"].write(self.choosers["list"].field.insert(event.text))
+
+    def on_resize(self, event: events.Resize) -> None:
+        """Put the row detail beside the ledger where there is room."""
+        turning.lay_out(self, event.size.width >= WIDE)
+
+    def _write(self, event: events.Key) -> bool:
+        if self.entry is not None:
+            field = self.entry.field.press(event.key, event.character)
+            if field is not None:
+                entering.press(self, self.entry, field)
+            return True
+        if self.at == "list":
+            return turning.write(self, event.key, event.character)
+        return False

@@ -1,0 +1,95 @@
+"""Changing the run: its shape, one step back and forth, and saving it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import TYPE_CHECKING
+
+from budget.description.edits import EditError
+from budget.screens import shaping
+from budget.screens.chooser import Choice, Offer
+from budget.screens.ledger import Mark
+from budget.screens.safe import plain
+from budget.storage import StorageError
+
+if TYPE_CHECKING:
+    from budget.screens.app import BudgetApp
+
+
+def reshape(app: BudgetApp, make: Callable[..., shaping.Change], *extra: object) -> None:
+    """Make a change of shape where the cursor is, as one undo step, and go to what is new."""
+    row, snapshot = app.ledger.row, app.document.snapshot
+    if row is None:
+        app.say("the run is empty: write [source.P1] on the Text screen", "note")
+        return
+    place = app.ledger.rows.index(row)
+    try:
+        change = make(snapshot.text, snapshot.description, app.ledger.rows, place, *extra)
+        app.apply(change.edit, change.label, path=change.path)
+    except (shaping.CannotShape, EditError) as refused:
+        app.say(plain(str(refused)), "error")
+        return
+    app.say(f"{change.label}: done; {app.keys('undo')} takes it back")
+
+
+def move(app: BudgetApp) -> None:
+    """Offer what a branch may hang on."""
+    row, snapshot = app.ledger.row, app.document.snapshot
+    if row is None:
+        return
+    try:
+        ids = shaping.parents_for(snapshot.description, app.ledger.rows, app.ledger.rows.index(row))
+    except shaping.CannotShape as refused:
+        app.say(plain(str(refused)), "note")
+        return
+
+    def title(id_: str) -> str:
+        part = snapshot.description.sections.get(id_) or snapshot.description.sources.get(id_)
+        return plain(part.title) if part else ""
+
+    def take(parent: object) -> None:
+        reshape(app, lambda _text, description, _rows, _place: shaping.rehang(description, row, str(parent)))
+
+    app.offer(Offer(f"hang {plain(row.id)} on", ("ID", "title"), [Choice((plain(i), title(i)), i) for i in ids], take))
+
+
+def undo(app: BudgetApp) -> None:
+    """Take the last step back; the cursor goes where it was."""
+    document = app.document
+    if not document.can_undo:
+        app.say("nothing to undo", "note")
+        return
+    label, before = document.undo_label, document.snapshot
+    _return_to(app, document.undo(), before, f"undone: {label}")
+
+
+def redo(app: BudgetApp) -> None:
+    """Make a step again that was taken back."""
+    document = app.document
+    if not document.can_redo:
+        app.say("nothing to redo", "note")
+        return
+    label, before = document.redo_label, document.snapshot
+    _return_to(app, document.redo(), before, f"redone: {label}")
+
+
+def save(app: BudgetApp) -> bool:
+    """Write the run to its file; False, with the reason, where it could not be."""
+    try:
+        app.document.save()
+    except StorageError as refused:
+        app.say(plain(str(refused)), "error")
+        return False
+    app.show(app.document.snapshot)
+    app.say(f"saved {plain(str(app.document.path))}")
+    return True
+
+
+def _return_to(app: BudgetApp, mark: object, before: object, message: str) -> None:
+    from budget.document import Snapshot
+
+    app.show(app.document.snapshot, before=before if isinstance(before, Snapshot) else None)
+    if isinstance(mark, Mark):
+        app.ledger.return_to(mark)
+    app.tell()
+    app.say(plain(message))

@@ -1,0 +1,171 @@
+"""A list to pick from, in columns, which filters as one types."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Iterator, Sequence
+from dataclasses import dataclass
+
+from budget.screens.field import Field
+from budget.screens.ledger import field_pieces
+from budget.screens.lines import Lines, Piece
+from budget.screens.safe import clip, fit, width_of
+from budget.screens.themes import Theme
+
+HEAD = 2
+"""Lines above the entries: what the list is and the filter, and the headings."""
+
+_WIDEST = 34
+
+
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """One entry: its safe texts by column, what it stands for, and the role of its style."""
+
+    cells: tuple[str, ...]
+    value: object = None
+    role: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Offer:
+    """A list to pick from: its title, the headings, the entries, and what is done with one.
+
+    `more` computes further cells of an entry when it comes into view; `write` makes an entry of what was typed, where
+    that is allowed; `step` says what left and right do with an entry.
+    """
+
+    title: str
+    heads: tuple[str, ...]
+    choices: Sequence[Choice]
+    take: Callable[[object], None]
+    filters: bool = True
+    more: Callable[[object], tuple[str, ...]] | None = None
+    write: Callable[[str], Choice | None] | None = None
+    step: Callable[[object, int], None] | None = None
+    leave: Callable[[], None] | None = None
+    start: int = 0
+    empty: str = "nothing is left; take letters away"
+
+
+class Chooser(Lines):
+    """The list on the screen: the filter, the entries that pass it, and the cursor on one of them."""
+
+    can_focus = True
+
+    def __init__(self, theme: Theme, id: str) -> None:  # noqa: A002
+        """Show nothing yet."""
+        super().__init__(theme, id=id)
+        self.offer = Offer("", (), (), lambda _: None)
+        self.field = Field()
+        self.kept: list[Choice] = []
+        self.cursor = 0
+        self.top = 0
+        self._more: dict[int, tuple[str, ...]] = {}
+
+    def present(self, offer: Offer, *, keep: bool = False) -> None:
+        """Show a list; with `keep` cursor and filter stay, as for the same list after a change."""
+        cursor = self.cursor if keep else offer.start
+        self.offer = offer
+        if not keep:
+            self.field, self.top = Field(), 0
+        self._more.clear()
+        self._filter()
+        self.cursor = min(cursor, max(0, len(self.kept) - 1))
+        self._keep_in_view()
+        self.repaint()
+
+    @property
+    def marked(self) -> Choice | None:
+        """The entry under the cursor."""
+        return self.kept[self.cursor] if self.cursor < len(self.kept) else None
+
+    @property
+    def page(self) -> int:
+        """Entries on a page."""
+        return max(1, self.size.height - HEAD)
+
+    def go(self, place: int) -> None:
+        """Move the cursor to an entry by its place."""
+        self.cursor = min(max(place, 0), max(len(self.kept) - 1, 0))
+        self._keep_in_view()
+        self.repaint()
+
+    def write(self, field: Field) -> None:
+        """Filter by what is written."""
+        if not self.offer.filters or field == self.field:
+            return
+        self.field = field
+        self.cursor = self.top = 0
+        self._filter()
+        self.repaint()
+
+    def on_resize(self) -> None:
+        """Keep the entry under the cursor in view."""
+        self._keep_in_view()
+        self.repaint()
+
+    def line(self, y: int, width: int) -> Iterable[Piece]:
+        """Spell the title, the headings, or an entry."""
+        if y == 0:
+            return self._title(width)
+        widths = self._widths(width)
+        if y == 1:
+            return self._cells(self.offer.heads, widths, "heading")
+        place = self.top + y - HEAD
+        if place >= len(self.kept):
+            return ((f" {self.offer.empty}", "faint"),) if place == 0 else ()
+        choice = self.kept[place]
+        roles = f"{choice.role} cursor" if place == self.cursor else choice.role
+        return self._cells(self._all_cells(choice), widths, roles)
+
+    def _title(self, width: int) -> Iterator[Piece]:
+        yield clip(f" {self.offer.title}  ", width), "title"
+        if self.offer.filters:
+            yield from field_pieces(self.field, min(30, max(8, width - width_of(self.offer.title) - 4)))
+        yield f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}", "faint"
+
+    def _cells(self, cells: Sequence[str], widths: Sequence[int], roles: str) -> Iterator[Piece]:
+        yield " ", roles
+        for text, width in zip(cells, widths, strict=False):
+            yield fit(clip(text, max(0, width - 2)), width), roles
+
+    def _widths(self, width: int) -> list[int]:
+        """Return the width of each column: that of its widest text in view, the last takes what remains."""
+        view = [self.offer.heads, *(self._all_cells(choice) for choice in self.kept[self.top : self.top + self.page])]
+        columns = max((len(cells) for cells in view), default=1)
+        widths = [
+            min(_WIDEST, max((width_of(cells[column]) for cells in view if column < len(cells)), default=0)) + 2
+            for column in range(columns)
+        ]
+        widths[-1:] = [max(8, width - 1 - sum(widths[:-1]))]
+        return widths
+
+    def _all_cells(self, choice: Choice) -> tuple[str, ...]:
+        if self.offer.more is None:
+            return choice.cells
+        key = id(choice)
+        if key not in self._more:
+            self._more[key] = self.offer.more(choice.value)
+        return (*choice.cells[:1], *self._more[key], *choice.cells[1:])
+
+    def _filter(self) -> None:
+        words = self.field.text.casefold().split()
+        self.kept = [
+            choice
+            for choice in self.offer.choices
+            if all(any(word in cell.casefold() for cell in choice.cells) for word in words)
+        ]
+        text = self.field.text.strip()
+        if text:
+            self.kept.sort(key=lambda choice: not choice.cells[0].casefold().startswith(text.casefold()))
+        if text and self.offer.write is not None:
+            written = self.offer.write(text)
+            if written is not None and all(choice.value != written.value for choice in self.kept):
+                self.kept.append(written)
+
+    def _keep_in_view(self) -> None:
+        if self.cursor < self.top:
+            self.top = self.cursor
+        elif self.cursor >= self.top + self.page:
+            self.top = self.cursor - self.page + 1
+        self.top = min(max(self.top, 0), max(0, len(self.kept) - self.page))

@@ -1,0 +1,114 @@
+"""The columns of the ledger: which of them a width has room for, and where each stands.
+
+Columns leave by priority, whole: a figure is never cut. Texts of the user's own stand last, except the ID, which is
+shown in characters whose width no terminal disputes.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+from budget.units import Dimension
+
+Key = Literal[
+    "id", "size", "length", "flow", "velocity", "gradient", "drop", "sum", "differential", "margin",
+    "balance", "fittings", "title",
+]  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """One column: its title for wide and for narrow terminals, its width with the sign at its end, and what it measures."""
+
+    key: Key
+    title: str
+    short: str
+    width: int
+    priority: int
+    dimension: Dimension | None = None
+    left: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Placed:
+    """A column where it stands on the line: first cell and number of cells."""
+
+    column: Column
+    x: int
+    width: int
+
+    @property
+    def end(self) -> int:
+        """The first cell behind it."""
+        return self.x + self.width
+
+
+COLUMNS: tuple[Column, ...] = (
+    Column("id", "section or terminal", "ID", 14, 99, left=True),
+    Column("size", "size", "size", 10, 90),
+    Column("length", "length", "length", 7, 85, Dimension.LENGTH),
+    Column("flow", "flow", "flow", 7, 75, Dimension.FLOW),
+    Column("velocity", "velocity", "vel.", 6, 60, Dimension.VELOCITY),
+    Column("gradient", "gradient", "grad.", 6, 50, Dimension.GRADIENT),
+    Column("drop", "drop", "drop", 7, 98, Dimension.PRESSURE),
+    Column("sum", "sum so far", "sum", 7, 65, Dimension.PRESSURE),
+    Column("differential", "differential", "diff.", 7, 70, Dimension.PRESSURE),
+    Column("margin", "margin", "margin", 7, 95, Dimension.PRESSURE),
+    Column("balance", "balance", "balance", 12, 40, left=True),
+    Column("fittings", "fittings", "fittings", 20, 30, left=True),
+    Column("title", "title", "title", 14, 20, left=True),
+)
+BY_KEY = {column.key: column for column in COLUMNS}
+
+MARK = 1
+"""Cells at the left edge for the sign of the index circuit."""
+
+_WIDEST_ID = 30
+_ROOMY = 110
+
+
+def place_columns(width: int) -> tuple[Placed, ...]:
+    """Return the columns for which a line of so many cells has room, in order, the most needed ones first to stay."""
+    room = width - MARK
+    kept: set[str] = set()
+    roomy = width >= _ROOMY
+    for column in sorted(COLUMNS, key=lambda column: -column.priority):
+        if _width(column, roomy) > room and kept:
+            break
+        kept.add(column.key)
+        room -= _width(column, roomy)
+    spare = max(room, 0)
+    placed, x = [], MARK
+    for column in COLUMNS:
+        if column.key not in kept:
+            continue
+        taken = _width(column, roomy)
+        if column.key == "id":
+            extra = min(spare, _WIDEST_ID - taken if "title" in kept else spare)
+            taken, spare = taken + extra, spare - extra
+            taken = min(taken, width - MARK)
+        if column.key == "title":
+            taken, spare = taken + spare, 0
+        placed.append(Placed(column, x, taken))
+        x += taken
+    return tuple(placed)
+
+
+def fit_figure(text: str, room: int) -> str:
+    """Return a figure that fits: with fewer decimals, in powers of ten, and at last as a row of signs; never cut."""
+    if len(text) <= room:
+        return text
+    try:
+        number = float(text)
+    except ValueError:
+        return "#" * room
+    decimals = len(text.partition(".")[2])
+    shorter = (f"{number:.{kept}f}" for kept in range(decimals - 1, -1, -1))
+    powers = (f"{number:.{kept}e}".replace("e+0", "e").replace("e+", "e") for kept in (2, 1, 0))
+    return next((figure for figure in (*shorter, *powers) if len(figure) <= room), "#" * room)
+
+
+def _width(column: Column, roomy: bool) -> int:
+    """Return the cells that a column takes; a roomy line has room for its whole title."""
+    return max(column.width, len(column.title) + 2) if roomy and not column.left else column.width

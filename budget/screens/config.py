@@ -1,0 +1,110 @@
+"""The user's settings for the app: `config.toml` in the user's config folder, read with every mistake told.
+
+    theme = "dark"       # terminal, light, dark, high-contrast, colour-blind, or a file themes/NAME.toml beside the config
+    mouse = false
+    ascii = false
+    letters = false      # h j k l move as well
+
+    [keys]
+    undo = "u"
+    save = ["ctrl+s", "f12"]
+
+A setting that can't be taken is reported and left at its default, so that the app always opens.
+"""
+
+from __future__ import annotations
+
+import difflib
+import tomllib
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any
+
+from budget.screens.keymap import Keymap, build
+from budget.screens.themes import TERMINAL, names_of_themes
+
+NAME = "config.toml"
+LARGEST = 256 * 1024
+
+
+@dataclass(frozen=True, slots=True)
+class Config:
+    """What the user chose."""
+
+    theme: str = TERMINAL
+    mouse: bool = False
+    ascii: bool = False
+    letters: bool = False
+    keymap: Keymap = field(default_factory=lambda: build()[0])
+
+
+def config_folder() -> Path:
+    """Return the user's config folder for this program; it need not exist."""
+    import platformdirs
+
+    return Path(platformdirs.user_config_path("budget"))
+
+
+def config_path() -> Path:
+    """Return where the config file is looked for."""
+    return config_folder() / NAME
+
+
+def load_config(path: Path | None = None) -> tuple[Config, tuple[str, ...]]:
+    """Read the user's config file; without one, the defaults. Problems start with the path of the file."""
+    path = path or config_path()
+    try:
+        if path.stat().st_size > LARGEST:
+            return Config(), (f"{path}: the file is larger than {LARGEST // 1024} kB; it was not read",)
+        text = path.read_bytes().decode("utf-8")
+    except (FileNotFoundError, NotADirectoryError):
+        return Config(), ()
+    except (OSError, UnicodeDecodeError) as refused:
+        return Config(), (f"{path}: could not be read: {refused}",)
+    config, problems = read_config(text, path.parent)
+    return config, tuple(f"{path}: {problem}" for problem in problems)
+
+
+def read_config(text: str, folder: Path | None = None) -> tuple[Config, tuple[str, ...]]:
+    """Read the text of a config; themes of one's own are looked for in `folder`/themes.
+
+    Returns what could be taken, and one sentence for everything that could not.
+    """
+    try:
+        data = tomllib.loads(text)
+    except (tomllib.TOMLDecodeError, RecursionError, ValueError) as refused:
+        return Config(), (f"it is not TOML: {refused}; every setting is at its default",)
+    problems: list[str] = []
+    settings: dict[str, Any] = {}
+    for key, value in data.items():
+        if key == "keys":
+            continue
+        problem = _check(key, value, folder)
+        if problem:
+            problems.append(problem)
+        else:
+            settings[key] = value
+    keymap, wrong_keys = _keys(data.get("keys", {}), letters=settings.get("letters", False))
+    return Config(**settings, keymap=keymap), (*problems, *wrong_keys)
+
+
+def _keys(value: object, *, letters: bool) -> tuple[Keymap, tuple[str, ...]]:
+    if not isinstance(value, Mapping):
+        return build(letters=letters)[0], ("keys: write a table, [keys]",)
+    keymap, problems = build(value, letters=letters)
+    if not problems:
+        return keymap, ()
+    return build(letters=letters)[0], (*problems, "the keys are at their defaults until that is mended")
+
+
+def _check(key: str, value: object, folder: Path | None) -> str:
+    if key in ("mouse", "ascii", "letters"):
+        return "" if isinstance(value, bool) else f"{key}: write true or false"
+    if key == "theme":
+        names = names_of_themes(folder)
+        if isinstance(value, str) and value in names:
+            return ""
+        return f"theme: there is no theme {value!r}; there are {', '.join(names)}"
+    close = difflib.get_close_matches(key, ["theme", "mouse", "ascii", "letters", "keys"], n=1, cutoff=0.5)
+    return f"{key}: there is no such setting; " + (f"did you mean {close[0]}?" if close else "remove it")

@@ -1,0 +1,71 @@
+"""What each action does: one line from its name to the function."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from functools import partial
+from typing import TYPE_CHECKING
+
+from budget.screens import changing, entering, moving, shaping, turning
+
+if TYPE_CHECKING:
+    from budget.screens.app import BudgetApp
+
+Doing = Callable[["BudgetApp"], object]
+
+DOINGS: Mapping[str, Doing] = {
+    "up": lambda app: moving.step(app, -1),
+    "down": lambda app: moving.step(app, 1),
+    "left": lambda app: moving.sideways(app, -1),
+    "right": lambda app: moving.sideways(app, 1),
+    "page_up": lambda app: moving.page(app, -1),
+    "page_down": lambda app: moving.page(app, 1),
+    "first": partial(moving.end, last=False),
+    "last": partial(moving.end, last=True),
+    "fold": moving.fold,
+    "fold_all": moving.fold_all,
+    "search": moving.search,
+    "next_match": lambda app: moving.next_match(app, 1),
+    "previous_match": lambda app: moving.next_match(app, -1),
+    "go_to": moving.go_to,
+    "go_to_index": moving.to_index,
+    "next_finding": moving.next_finding,
+    "next_source": moving.next_source,
+    "edit": turning.edit,
+    "next_cell": lambda app: entering.next_cell(app, 1),
+    "previous_cell": lambda app: entering.next_cell(app, -1),
+    "set": entering.set_key,
+    "rename": entering.rename,
+    "accept": entering.accept,
+    "accept_next": lambda app: entering.accept_and_move(app, 1),
+    "accept_previous": lambda app: entering.accept_and_move(app, -1),
+    "leave": turning.leave,
+    "pick": turning.pick,
+    "pick_size": lambda app: turning.pick_key(app, "size"),
+    "pick_fitting": lambda app: turning.pick_key(app, "fittings"),
+    "pick_instead": turning.pick_instead,
+    "choose": turning.choose,
+    "add_after": lambda app: changing.reshape(app, shaping.add_section, "after"),
+    "add_before": lambda app: changing.reshape(app, shaping.add_section, "before"),
+    "add_beneath": lambda app: changing.reshape(app, shaping.add_section, "beneath"),
+    "add_terminal": lambda app: changing.reshape(app, shaping.add_terminal),
+    "duplicate": lambda app: changing.reshape(app, shaping.duplicate),
+    "move": changing.move,
+    "earlier": lambda app: changing.reshape(app, shaping.shift, -1),
+    "later": lambda app: changing.reshape(app, shaping.shift, 1),
+    "delete": lambda app: changing.reshape(app, shaping.delete),
+    "undo": changing.undo,
+    "redo": changing.redo,
+    "save": turning.save,
+    "show_ledger": lambda app: app.turn_to("ledger"),
+    "show_detail": turning.show_detail,
+    "show_findings": turning.show_findings,
+    "show_text": turning.show_text,
+    "show_manual": turning.show_manual,
+    "commands": turning.show_commands,
+    "back": turning.back,
+    "apply_text": turning.apply_text,
+    "undo_text": turning.undo_text,
+    "suspend": turning.suspend,
+    "quit": turning.leave_app,
+}

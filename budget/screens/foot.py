@@ -1,0 +1,73 @@
+"""The two lines at the foot: what the program has to say, or a field to write in, and the keys that work here."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+
+from budget.screens.actions import BY_ID, FOOTER, Place
+from budget.screens.field import Field
+from budget.screens.keymap import Keymap
+from budget.screens.ledger import field_pieces
+from budget.screens.lines import Lines, Piece
+from budget.screens.safe import clip, width_of
+from budget.screens.themes import Theme
+
+HEIGHT = 2
+
+
+class Foot(Lines):
+    """A message stands until the next key; without one, the row under the cursor is told."""
+
+    def __init__(self, theme: Theme, keymap: Keymap) -> None:
+        """Show the keys of the ledger."""
+        super().__init__(theme, id="foot")
+        self.keymap = keymap
+        self.place: Place = "ledger"
+        self.message = ""
+        self.role = ""
+        self.about: tuple[str, str] = ("", "")
+        self.label = ""
+        self.field: Field | None = None
+
+    def say(self, message: str, role: str = "") -> None:
+        """Say something in a style; "" says nothing."""
+        self.message, self.role = message, role
+        self.repaint()
+
+    def tell(self, place: Place, about: tuple[str, str]) -> None:
+        """Tell where the hands are and, with its role, what is under the cursor."""
+        self.place, self.about = place, about
+        self.repaint()
+
+    def ask(self, label: str, field: Field | None) -> None:
+        """Show a field to write in behind its label; None takes it away."""
+        self.label, self.field = label, field
+        self.repaint()
+
+    def line(self, y: int, width: int) -> Iterable[Piece]:
+        """Spell the message, or the keys."""
+        return self._first(width) if y == 0 else self._keys(width)
+
+    def _first(self, width: int) -> Iterator[Piece]:
+        if self.field is None:
+            text, role = (self.message, self.role) if self.message else self.about
+            yield clip(f" {text}", width), role
+            return
+        label = clip(f" {self.label} ", width // 2)
+        yield label, "heading"
+        room = width - width_of(label)
+        need = room if not self.message else min(room, max(16, width_of(self.field.text) + 2))
+        yield from field_pieces(self.field, need)
+        yield clip(f" {self.message}", room - need), self.role
+
+    def _keys(self, width: int) -> Iterator[Piece]:
+        taken = 0
+        for action in FOOTER[self.place]:
+            key = self.keymap.shown(action)
+            text = BY_ID[action].short or BY_ID[action].title.lower()
+            need = width_of(key) + width_of(text) + 4
+            if not key or taken + need > width:
+                continue
+            taken += need
+            yield f" {key}", "key"
+            yield f" {text}  ", "faint"

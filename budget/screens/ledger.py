@@ -1,0 +1,287 @@
+"""The ledger: the run as an indented tree with a column for each figure, and a cursor on one cell."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
+
+from budget.description.finding import Path
+from budget.screens.columns import MARK, Placed, fit_figure, place_columns
+from budget.screens.field import Field
+from budget.screens.lines import Lines, Piece
+from budget.screens.rows import EMPTY, FOLDED_SIGN, DEEPEST_INDENT, INDEX_SIGN, Row, View, tree, visible
+from budget.screens.safe import clip, fit, width_of
+from budget.screens.themes import Theme
+
+HEAD = 2
+"""Lines above the rows: titles and units of the columns."""
+
+
+@dataclass(frozen=True, slots=True)
+class Mark:
+    """Where the cursor is, in words that survive a change of the run: the row's keys, the rows around it, the column."""
+
+    path: Path
+    place: int = 0
+    column: str = "length"
+
+
+class Ledger(Lines):
+    """The home screen. It holds cursor, scroll and fold state, and nothing else."""
+
+    can_focus = True
+
+    def __init__(self, theme: Theme, view: View) -> None:
+        """Show a view, with the cursor on the first row."""
+        super().__init__(theme, id="ledger")
+        self.view = view
+        self.rows = tree(view.snapshot.description)
+        self.folded: frozenset[str] = frozenset()
+        self.shown: tuple[Row, ...] = self.rows
+        self.cursor = 0
+        self.column = "length"
+        self.top = 0
+        self.field: Field | None = None
+        self.problem = ""
+        self._placed: tuple[Placed, ...] = ()
+        self._placed_for = -1
+
+    # What is shown
+
+    def show(self, view: View) -> None:
+        """Show another view of the run; the cursor stays on its row, wherever that is now."""
+        mark = self.mark
+        if view.snapshot.description is not self.view.snapshot.description:
+            self.rows = tree(view.snapshot.description)
+        self.view = view
+        self._refold()
+        self._find(mark)
+        self.repaint()
+
+    @property
+    def row(self) -> Row | None:
+        """The row under the cursor."""
+        return self.shown[self.cursor] if self.cursor < len(self.shown) else None
+
+    @property
+    def mark(self) -> Mark:
+        """Where the cursor is."""
+        row = self.row
+        return Mark(row.path if row else (), self.cursor, self.column)
+
+    @property
+    def source(self) -> str:
+        """The source on which the row under the cursor hangs, or the first one."""
+        for row in reversed(self.shown[: self.cursor + 1]):
+            if row.kind == "source":
+                return row.id
+        return next(iter(self.view.snapshot.description.sources), "")
+
+    # Moving
+
+    def go(self, place: int) -> None:
+        """Move the cursor to a row by its place."""
+        self.cursor = min(max(place, 0), max(len(self.shown) - 1, 0))
+        self._keep_in_view()
+        self.repaint()
+
+    def go_to(self, path: Path, column: str | None = None) -> bool:
+        """Move the cursor to a row by its keys, unfolding what hides it; False where there is none."""
+        target = next((row for row in self.rows if row.path == path), None)
+        if target is None:
+            return False
+        self._unfold_above(target)
+        if column is not None and column in {placed.column.key for placed in self.placed}:
+            self.column = column
+        self.go(self.shown.index(target))
+        return True
+
+    def return_to(self, mark: Mark) -> None:
+        """Move the cursor to a mark that was kept, or near it where the row is gone."""
+        if mark.path and self.go_to(mark.path, mark.column):
+            return
+        self._find(mark)
+        self.repaint()
+
+    def move_column(self, step: int) -> None:
+        """Move the cursor to a neighbouring column that is shown."""
+        keys = [placed.column.key for placed in self.placed]
+        place = keys.index(self.column) if self.column in keys else 0
+        self.column = keys[min(max(place + step, 0), len(keys) - 1)]
+        self.repaint()
+
+    @property
+    def page(self) -> int:
+        """Rows on a page."""
+        return max(1, self.size.height - HEAD)
+
+    def fold(self, ids: frozenset[str]) -> None:
+        """Fold exactly these branches."""
+        mark = self.mark
+        self.folded = ids
+        self._refold()
+        self._find(mark)
+        self.repaint()
+
+    # Painting
+
+    @property
+    def placed(self) -> tuple[Placed, ...]:
+        """The columns for which there is room."""
+        width = self.size.width or 80
+        if width != self._placed_for:
+            self._placed, self._placed_for = place_columns(width), width
+            if self.column not in {placed.column.key for placed in self._placed}:
+                self.column = self._placed[-1].column.key
+        return self._placed
+
+    def line(self, y: int, width: int) -> Iterable[Piece]:
+        """Spell the headings, or a row."""
+        if y == 0:
+            return self._titles(width)
+        if y == 1:
+            return self._units()
+        place = self.top + y - HEAD
+        if place >= len(self.shown):
+            return ()
+        if place == self.cursor and self.field is not None:
+            return self._written_in(self.shown[place], width)
+        return self._row(self.shown[place], current=place == self.cursor)
+
+    def on_resize(self) -> None:
+        """Keep the row under the cursor in view."""
+        self._keep_in_view()
+        self.repaint()
+
+    def _titles(self, width: int) -> Iterator[Piece]:
+        roomy = width >= 110
+        yield " " * MARK, "heading"
+        for placed in self.placed:
+            column = placed.column
+            text = column.title if roomy or column.left else column.short
+            yield _aligned(clip(text, placed.width - 1), placed), "heading"
+
+    def _units(self) -> Iterator[Piece]:
+        figures = self.view.figures
+        yield " " * MARK, "faint"
+        for placed in self.placed:
+            dimension = placed.column.dimension
+            unit = figures.unit(dimension) if dimension is not None else ""
+            if placed.column.key == "id":
+                unit = f"{self.cursor + 1} of {len(self.shown)}" if self.shown else "nothing yet"
+            yield _aligned(clip(unit, placed.width - 1), placed), "faint"
+
+    def _row(self, row: Row, *, current: bool) -> Iterator[Piece]:
+        base = "row" if current else ""
+        yield (INDEX_SIGN if self._on_index(row) else " "), f"index {base}"
+        cells = self.view.cells(row)
+        for placed in self.placed:
+            key = placed.column.key
+            cell = cells.get(key, EMPTY)
+            roles = f"{cell.role} {base}"
+            if current and key == self.column:
+                roles = f"{cell.role} cursor"
+            text = self._id(row, cell.text, placed.width - 1) if key == "id" else cell.text
+            yield _aligned(_fitting(text, placed), placed, cell.sign or " "), roles
+
+    def _id(self, row: Row, text: str, width: int) -> str:
+        indent = " " * min(row.depth, DEEPEST_INDENT)
+        fold = FOLDED_SIGN if row.branch and row.kind != "item" and row.id in self.folded else ""
+        return clip(indent + fold + text, width)
+
+    def _on_index(self, row: Row) -> bool:
+        return row.kind in ("section", "terminal") and self.view.on_index(row)
+
+    def _written_in(self, row: Row, width: int) -> Iterator[Piece]:
+        """Spell the row of the cursor with the field in its cell, and what is wrong with it beside."""
+        assert self.field is not None
+        place = next((placed for placed in self.placed if placed.column.key == self.column), self.placed[0])
+        need = min(max(place.width, width_of(self.field.text) + 2), width - MARK)
+        start = max(MARK, min(place.end - need if not place.column.left else place.x, width - need))
+        pieces = list(self._row(row, current=True))
+        left, x = [], 0
+        for text, roles in pieces:
+            if x + width_of(text) > start:
+                break
+            left.append((text, roles))
+            x += width_of(text)
+        yield from left
+        yield " " * (start - x), "row"
+        yield from field_pieces(self.field, need)
+        x = start + need
+        if self.problem:
+            yield fit(f" {self.problem}", max(0, width - x)), "error"
+            return
+        for text, roles in _behind(pieces, x):
+            yield text, roles
+
+    # Keeping the cursor
+
+    def _refold(self) -> None:
+        self.shown = tuple(visible(self.rows, self.folded)) if self.folded else self.rows
+
+    def _find(self, mark: Mark) -> None:
+        place = self._place_of(mark.path)
+        self.cursor = min(max(mark.place if place is None else place, 0), max(len(self.shown) - 1, 0))
+        self._keep_in_view()
+
+    def _place_of(self, path: Path) -> int | None:
+        if self.cursor < len(self.shown) and self.shown[self.cursor].path == path:
+            return self.cursor
+        for size in range(len(path), 1, -2):
+            for place, row in enumerate(self.shown):
+                if row.path == path[:size]:
+                    return place
+        return None
+
+    def _unfold_above(self, target: Row) -> None:
+        if target in self.shown:
+            return
+        place, depth = self.rows.index(target), target.depth
+        opened = set()
+        for row in reversed(self.rows[:place]):
+            if row.depth < depth:
+                opened.add(row.id)
+                depth = row.depth
+        self.folded -= opened
+        self._refold()
+
+    def _keep_in_view(self) -> None:
+        page = self.page
+        if self.cursor < self.top or self.cursor >= self.top + page:
+            # A third of a page at a time: on a narrow link a whole page of rows is dear.
+            step = page // 3
+            self.top = self.cursor - step if self.cursor < self.top else self.cursor - page + 1 + step
+        self.top = min(max(self.top, 0), max(0, len(self.shown) - page))
+
+
+def field_pieces(field: Field, width: int) -> Iterator[Piece]:
+    """Spell a field that is written in: its text, and the place of the next letter the other way round."""
+    before, letter, after = field.window(width - 1)
+    shown = "cursor" if field.fresh else "field"
+    yield before, shown
+    yield letter, "cursor"
+    yield fit(after, width - width_of(before) - width_of(letter)), "field"
+
+
+def _behind(pieces: list[Piece], start: int) -> Iterator[Piece]:
+    """Yield the pieces that begin at or after a cell, with the gap before the first."""
+    x, begun = 0, False
+    for text, roles in pieces:
+        if x >= start:
+            if not begun:
+                yield " " * (x - start), "row"
+                begun = True
+            yield text, roles
+        x += width_of(text)
+
+
+def _fitting(text: str, placed: Placed) -> str:
+    room = placed.width - 1
+    if placed.column.dimension is not None:
+        return fit_figure(text, room)
+    return clip(text, room)
+
+
+def _aligned(text: str, placed: Placed, sign: str = " ") -> str:
+    return fit(text, placed.width - 1, right=not placed.column.left) + sign

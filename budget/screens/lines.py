@@ -1,0 +1,123 @@
+"""A widget made of lines of text, of which only the cells that differ are painted again."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+
+from rich.cells import cell_len
+from rich.segment import Segment
+from rich.style import Style
+from textual.geometry import Region
+from textual.strip import Strip
+from textual.widget import Widget
+
+from budget.screens.safe import fit
+from budget.screens.themes import Theme
+
+Piece = tuple[str, str]
+"""A text and the role of its style; roles are joined by a space, the later one wins."""
+
+
+class Lines(Widget):
+    """Lines of text that a subclass spells in `line`; `repaint` sends what differs from what is on the screen."""
+
+    BLANK = False
+    can_focus = False
+
+    def __init__(self, theme: Theme, *, id: str) -> None:  # noqa: A002
+        """Take the theme whose styles the roles name."""
+        super().__init__(id=id, markup=False)
+        self.colours = theme
+        self._painted: dict[int, Strip] = {}
+        self._styles: dict[str, Style] = {}
+
+    def line(self, y: int, width: int) -> Iterable[Piece]:
+        """Return what stands on the line `y` of the widget, as pieces of text with their roles."""
+        raise NotImplementedError
+
+    def render_line(self, y: int) -> Strip:
+        """Return a line as it was last spelled."""
+        strip = self._painted.get(y)
+        if strip is None or strip.cell_length != self.size.width:
+            strip = self._painted[y] = self._spell(y)
+        return strip
+
+    def repaint(self) -> None:
+        """Spell every line again and send the cells that differ from what is on the screen."""
+        if not self.is_mounted or not self.size:
+            return
+        for y in range(self.size.height):
+            new = self._spell(y)
+            old = self._painted.get(y)
+            if old is None or old.cell_length != new.cell_length:
+                span = (0, self.size.width)
+            elif old == new:
+                continue
+            else:
+                span = differing(old, new)
+            self._painted[y] = new
+            self.refresh(Region(span[0], y, span[1] - span[0], 1))
+
+    def wear(self, theme: Theme) -> None:
+        """Put on another theme."""
+        self.colours = theme
+        self._styles.clear()
+        self._painted.clear()
+        self.refresh()
+
+    def style_of(self, roles: str) -> Style:
+        """Return the style of a role, or of several joined, on the background of the text."""
+        style = self._styles.get(roles)
+        if style is None:
+            style = self.colours.styles["text"]
+            for role in roles.split():
+                style += self.colours.styles[role]
+            self._styles[roles] = style
+        return style
+
+    def _spell(self, y: int) -> Strip:
+        width = self.size.width
+        segments: list[Segment] = []
+        for text, roles in self.line(y, width):
+            style = self.style_of(roles)
+            if segments and segments[-1].style == style:
+                segments[-1] = Segment(segments[-1].text + text, style)
+            elif text:
+                segments.append(Segment(text, style))
+        return Strip(segments).adjust_cell_length(width, self.style_of(""))
+
+
+def differing(old: Strip, new: Strip) -> tuple[int, int]:
+    """Return the first cell in which two lines of one length differ, and the one behind the last."""
+    before, after = _cells(old), _cells(new)
+    length = min(len(before), len(after))
+    first = next((x for x in range(length) if before[x] != after[x]), length)
+    last = next((x for x in range(length - 1, first - 1, -1) if before[x] != after[x]), first)
+    while first > 0 and not after[first][0]:
+        first -= 1
+    end = last + 1
+    while end < len(after) and not after[end][0]:
+        end += 1
+    return first, end
+
+
+def _cells(strip: Strip) -> list[tuple[str, Style | None]]:
+    """Return the cells of a line: a character and its style; an empty text for the second half of a wide one."""
+    cells: list[tuple[str, Style | None]] = []
+    for text, style, _ in strip:
+        if text.isascii():
+            cells += [(c, style) for c in text]
+            continue
+        for c in text:
+            width = cell_len(c)
+            if width == 0 and cells:
+                cells[-1] = (cells[-1][0] + c, style)
+            elif width:
+                cells += [(c, style), *[("", style)] * (width - 1)]
+    return cells
+
+
+def spread(left: str, right: str, width: int) -> tuple[str, str]:
+    """Return two texts for the two ends of a line, the left one clipped where they would meet."""
+    room = max(0, width - len(right))
+    return fit(left, room), right[:width]
