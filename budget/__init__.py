@@ -1,3 +1,139 @@
-"""The pressure budget of a pipe or duct run."""
+"""The pressure budget of a pipe or duct run.
+
+    >>> import budget
+    >>> run = budget.read("examples/first-look.toml")
+    >>> result = budget.evaluate(run.description)
+    >>> result.sources["P1"].required                      # Pa
+    >>> budget.quantity(result.sources["P1"].required, "pressure").to("kPa")
+    >>> run = budget.apply(run, budget.SetValue(("section", "M1", "length"), "9 m"))
+    >>> budget.save(run, "examples/first-look.toml")
+
+Everything is in SI base units. `read` never raises for what stands in a file: `findings` says what is wrong with it.
+"""
+
+from __future__ import annotations
+
+import dataclasses
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from budget.description import Description, Finding, Level, describe, read_bytes, read_text
+from budget.description.edits import (
+    AddTable,
+    CopyTable,
+    Edit,
+    EditError,
+    Literal,
+    MoveTable,
+    RemoveTable,
+    RenameKey,
+    SetValue,
+    Several,
+    Unset,
+    apply_to_text,
+)
+from budget.network import Budget, SectionResult, SourceResult, TerminalResult, evaluate
+from budget.storage import ChangedOnDisk, Stamp, StorageError
+
+if TYPE_CHECKING:
+    import pint
 
 __version__ = "0.1.0"
+
+__all__ = [
+    "AddTable",
+    "Budget",
+    "ChangedOnDisk",
+    "CopyTable",
+    "Description",
+    "Edit",
+    "EditError",
+    "Finding",
+    "Level",
+    "Literal",
+    "MoveTable",
+    "RemoveTable",
+    "RenameKey",
+    "Run",
+    "SectionResult",
+    "SetValue",
+    "Several",
+    "SourceResult",
+    "StorageError",
+    "TerminalResult",
+    "Unset",
+    "apply",
+    "evaluate",
+    "quantity",
+    "read",
+    "reads",
+    "save",
+]
+
+
+@dataclasses.dataclass(frozen=True, slots=True)
+class Run:
+    """A run's text and the description that was read from it."""
+
+    text: str
+    description: Description
+    stamp: Stamp | None = None
+    """What was on disk when it was read; None for a text that was not read from a file."""
+
+
+def read(path: str | Path) -> Run:
+    """Read a run's file. Raises StorageError where the file itself can't be read."""
+    from budget.storage import load
+
+    content, stamp = load(Path(path))
+    source = read_bytes(content)
+    return Run(source.text, describe(source), stamp)
+
+
+def reads(text: str) -> Run:
+    """Read a run from text."""
+    return Run(text, describe(read_text(text)))
+
+
+def apply(run: Run, edit: Edit) -> Run:
+    """Return the run with an edit made to its text, and nothing else changed. Raises EditError."""
+    text = apply_to_text(run.text, edit)
+    return Run(text, describe(read_text(text)), run.stamp)
+
+
+def save(run: Run, path: str | Path, *, over: bool = False) -> Run:
+    """Write a run to its file, whole or not at all.
+
+    A run that was read from a file is not written over what somebody else has put there since, unless `over`: then
+    ChangedOnDisk is raised. Raises StorageError where it can't be written.
+    """
+    from budget.storage import save as write
+
+    stamp = write(Path(path), run.text.encode("utf-8"), None if over else run.stamp)
+    return dataclasses.replace(run, stamp=stamp)
+
+
+def quantity(value: float, dimension: str) -> pint.Quantity[Any]:
+    """Return a result in SI as a pint quantity: `quantity(section.run.drop, "pressure")`. Needs pint installed."""
+    import pint
+
+    registry = pint.get_application_registry()
+    return registry.Quantity(value, _SI_UNITS[dimension])
+
+
+_SI_UNITS = {
+    "length": "m",
+    "flow": "m**3/s",
+    "mass flow": "kg/s",
+    "pressure": "Pa",
+    "gradient": "Pa/m",
+    "velocity": "m/s",
+    "power": "W",
+    "temperature": "K",
+    "difference": "delta_degC",
+    "density": "kg/m**3",
+    "viscosity": "Pa*s",
+    "specific_heat": "J/(kg*K)",
+    "angle": "degree",
+    "fraction": "",
+}

@@ -64,14 +64,19 @@ class Quantity:
     basis: Basis = Basis.PLAIN
 
 
+Fault = Literal["not-a-quantity", "decimal-comma", "not-finite", "unknown-unit", "wrong-dimension"]
+"""In which way a text fails to be a quantity."""
+
+
 class UnitError(ValueError):
     """A text that is no quantity of the dimension that was due: what is wrong, and what would be right."""
 
-    def __init__(self, message: str, remedy: str) -> None:
+    def __init__(self, message: str, remedy: str, code: Fault = "not-a-quantity") -> None:
         """Keep both halves; the text of the error joins them."""
         super().__init__(f"{message}; {remedy}")
         self.message = message
         self.remedy = remedy
+        self.code = code
 
 
 class Factor(NamedTuple):
@@ -123,7 +128,7 @@ def bare(number: float, dimension: Dimension, unit: str) -> Quantity:
     try:
         return Quantity(_finite(known.to_si(float(number)), shown), dimension, known.basis)
     except OverflowError:
-        raise UnitError("the number is too large", "write a number below 1e308") from None
+        raise UnitError("the number is too large", "write a number below 1e308", "not-finite") from None
 
 
 def bare_unit(dimension: Dimension, system: Literal["SI", "IP"], *, gas: bool, small: bool = False) -> str:
@@ -400,7 +405,7 @@ def _unit(spelling: str, dimension: Dimension) -> _Unit:
 
 def _finite(value: float, text: str) -> float:
     if not math.isfinite(value):
-        raise UnitError(f"{_quoted(text)} is not a finite number", "write a finite number")
+        raise UnitError(f"{_quoted(text)} is not a finite number", "write a finite number", "not-finite")
     return value
 
 
@@ -442,13 +447,15 @@ def _wrong_unit(text: str, number: str, spelling: str, dimension: Dimension) -> 
             return UnitError(
                 f"{_quoted(text)} is {other.noun}, and {dimension.noun} was due",
                 f"write {_choice(dimension, number)}",
+                "wrong-dimension",
             )
     message = f"the unit {_quoted(spelling)} is not known"
     folded = {known.lower(): unit.name for known, unit in _SPELLINGS[dimension].items()}
     nearest = difflib.get_close_matches(normal.lower(), folded, n=1, cutoff=0.5)
     if nearest:
-        return UnitError(message, f"did you mean {folded[nearest[0]]}? It may be {_choice(dimension)}")
-    return UnitError(message, f"write {_choice(dimension, number)}")
+        hint = f"did you mean {folded[nearest[0]]}? It may be {_choice(dimension)}"
+        return UnitError(message, hint, "unknown-unit")
+    return UnitError(message, f"write {_choice(dimension, number)}", "unknown-unit")
 
 
 _COMMA = re.compile(r"\s*([+-]?[0-9]+),([0-9]+)(?![0-9,.])(.*)", re.DOTALL)
@@ -472,18 +479,21 @@ def _not_a_number(text: str, dimension: Dimension) -> UnitError:
         plain = number.replace(",", "")
         if number.count(",") == 1 and "." not in number:
             decimal = number.replace(",", ".")
-            return UnitError(f"{shown} has a comma", f'write "{decimal}{rest}" or "{plain}{rest}"')
+            remedy = f'write "{decimal}{rest}" or "{plain}{rest}"'
+            return UnitError(f"{shown} has a comma", remedy, "decimal-comma")
         return UnitError(f"{shown} has commas between thousands", f'write "{plain}{rest}"')
     if found := _COMMA.fullmatch(text):
         whole, decimals, rest = found.groups()
-        return UnitError(f"{shown} has a decimal comma", f'write "{whole}.{decimals}{rest}": a decimal point')
+        remedy = f'write "{whole}.{decimals}{rest}": a decimal point'
+        return UnitError(f"{shown} has a decimal comma", remedy, "decimal-comma")
     if found := _UNDERSCORE.fullmatch(text):
         number, rest = found.groups()
         return UnitError(f"{shown} has an underscore", f'write "{number.replace("_", "")}{rest}"')
     if _HEXADECIMAL.match(text):
         return UnitError(f"{shown} is not a decimal number", f"write digits and {_choice(dimension)}")
     if _NAMED.match(text):
-        return UnitError(f"{shown} is not a finite number", f"write a finite number and {_choice(dimension)}")
+        remedy = f"write a finite number and {_choice(dimension)}"
+        return UnitError(f"{shown} is not a finite number", remedy, "not-finite")
     if found := _FRACTION.fullmatch(text):
         sign, whole, top, bottom, rest = found.groups()
         if int(bottom):

@@ -1,4 +1,4 @@
-"""What an edit means for the data that a text holds: functions that return new data and leave the old alone."""
+"""What an edit means for the data in a text: functions that return new data and leave the old alone."""
 
 from collections.abc import Callable, Mapping
 from typing import Any

@@ -161,7 +161,7 @@ def _display(reading: Reading, data: Mapping[str, Any]) -> dict[str, str]:
         try:
             parse(f"1 {unit}", Dimension(key))
         except UnitError as refused:
-            reading.wrong(getattr(refused, "code", "not-a-quantity"), f"{unit!r} is not a unit for {key}; {refused.remedy}", ("display", key))
+            reading.wrong(refused.code, f"{unit!r} is not a unit for {key}; {refused.remedy}", ("display", key))
         else:
             good[key] = unit
     return good

@@ -92,6 +92,10 @@ class SpanIndex:
         """Return the table with a header at this path; the keys above the first header for the empty path."""
         return self.by_path.get(path)
 
+    def all_tables(self) -> list[Table]:
+        """Return the tables in file order; the first one holds the keys above the first header."""
+        return self._scan.tables
+
     def tables(self) -> list[Path]:
         """Return the tables that have a header, in file order."""
         return [table.path for table in self._scan.tables[1:]]

@@ -130,7 +130,7 @@ class Reading:
                 self.wrong("type", f"{_what(value)} where a quantity was due; write a text such as \"1 {unit}\"", path)
                 return None
         except UnitError as refused:
-            self.wrong(getattr(refused, "code", "not-a-quantity"), str(refused), path)
+            self.wrong(refused.code, str(refused), path)
             return None
         if self._outside(quantity.value, spec):
             bounds = _bounds(spec, lambda bound: spell(bound, unit, spec.dimension, 6))

@@ -83,10 +83,8 @@ def _held_differential(run: Computed, carrier: int) -> float:
     """Return the differential over the carrier's circuit when all others are shut, Pa."""
     layout = run.layout
     legs = layout.legs
-    if carrier < len(legs):
-        zone = int(legs.zone[carrier])
-    else:
-        zone = int(layout.terminals.zone[carrier - len(legs)])
+    on_leg = carrier < len(legs)
+    zone = int(legs.zone[carrier] if on_leg else layout.terminals.zone[carrier - len(legs)])
     if layout.zones[zone].outer >= 0:
         return float(run.circuits.required[zone])
     source = layout.zones[zone].source

@@ -50,12 +50,12 @@ class Budget:
         """Each section that hangs on a source, by ID, in file order."""
         topology = self.run.layout.topology
         known = (id_ for id_ in self.run.layout.description.sections if id_ in topology.section_legs)
-        return _Lazy(known, lambda id_: self._records.section(id_))
+        return _Lazy(known, self._records.section)
 
     @cached_property
     def terminals(self) -> Mapping[str, TerminalResult]:
         """Each terminal that hangs on a source, by ID, in file order."""
-        return _Lazy(self.run.layout.terminals.ids, lambda id_: self._records.terminal(id_))
+        return _Lazy(self.run.layout.terminals.ids, self._records.terminal)
 
     @cached_property
     def findings(self) -> tuple[Finding, ...]:

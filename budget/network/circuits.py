@@ -48,9 +48,7 @@ def find_circuits(layout: Layout, drops: Hydraulics) -> Circuits:
     along = path_sums(drops.leg_total, inner)
     own = at_leg(along, terminals.out, terminals.zone, legs.zone)
     own += at_leg(along, terminals.back, terminals.zone, legs.zone)
-    start = np.array(
-        [drops.source_items[z.source] if _takes_items(layout, n) else 0.0 for n, z in enumerate(zones)]
-    )
+    start = np.array([drops.source_items[z.source] if _takes_items(layout, n) else 0.0 for n, z in enumerate(zones)])
     in_zone = start[terminals.zone] + own + drops.terminal_total
     largest = np.full(len(zones), np.nan)
     np.fmax.at(largest, terminals.zone, in_zone)

@@ -142,8 +142,7 @@ def source_result(run: Computed, number: int) -> SourceResult:
         sfp=None if electrical is None else float(specific_fan_power(electrical, flow * factor)),
         spent=spent_by_heading(run, number),
         budget={
-            heading: pascals(quantity, media.supply.density)
-            for heading, quantity in layout.description.budget.items()
+            heading: pascals(quantity, media.supply.density) for heading, quantity in layout.description.budget.items()
         },
         items=run.item_results(len(layout.legs) + len(layout.terminals) + number),
     )
@@ -227,4 +226,3 @@ def _outlet_pressure(source: Source, density: float, flow: float) -> float | Non
     if source.outlet is None:
         return None
     return float(velocity_pressure(density, flow / neck_area(source.outlet)))
-

@@ -9,7 +9,7 @@ import numpy as np
 
 from budget.description import Description, Device, Finding, Item, Path, Quantity, Section, Terminal, error
 from budget.network import results
-from budget.network.arrays import DeviceUse, Items, Terminals
+from budget.network.arrays import DeviceUse, Floats, Ints, Items, Terminals
 from budget.network.media import Media, pascals, volume
 from budget.network.topology import Topology
 
@@ -59,14 +59,26 @@ class EquipmentRows:
             for item in source.items:
                 self._add(item, self._first_source + number, self.media[number].supply.density, -1, math.nan)
         rows = self._numbers
+
+        def whole(key: str) -> Ints:
+            return np.array(rows[key], dtype=np.int64)
+
+        def real(key: str) -> Floats:
+            return np.array(rows[key], dtype=np.float64)
+
         return Items(
-            items=tuple(self._items),
-            **{key: np.array(rows[key], dtype=np.int64) for key in ("carrier", "form", "reference", "heading")},
-            **{
-                key: np.array(rows[key], dtype=np.float64)
-                for key in ("value", "at", "exponent", "parallel", "density", "neck")
-            },
+            carrier=whole("carrier"),
+            form=whole("form"),
+            value=real("value"),
+            at=real("at"),
+            exponent=real("exponent"),
+            parallel=real("parallel"),
+            density=real("density"),
+            reference=whole("reference"),
+            neck=real("neck"),
+            heading=whole("heading"),
             inside=np.array([item.inside for item in self._items], dtype=np.bool_),
+            items=tuple(self._items),
         )
 
     def devices(self) -> tuple[DeviceUse, ...]:
@@ -188,4 +200,3 @@ class EquipmentRows:
         if carrier >= self._first_source:
             return "plant"
         return "control" if item.control else "distribution"
-

@@ -65,7 +65,7 @@ def flow_and_drops(layout: Layout) -> Hydraulics:
 
     carried = np.concatenate([leg_mass, mass, source_mass])
     item_drop = _item_drops(items, carried, pv, gradient)
-    owners = np.bincount(items.carrier, weights=item_drop, minlength=len(carried))
+    owners = _sums(items.carrier, item_drop, len(carried))
     leg_count, terminal_count = len(legs), len(terminals)
     device_open, device_base = _device_drops(layout, carried, pv)
     base = np.zeros(len(carried))
@@ -123,9 +123,7 @@ def least_served(values: Floats, order: Ints, start: Ints, end: Ints) -> Floats:
     return _reduce_served(np.minimum, values, order, start, end, np.inf)
 
 
-def _reduce_served(
-    reduce: np.ufunc, values: Floats, order: Ints, start: Ints, end: Ints, none: float
-) -> Floats:
+def _reduce_served(reduce: np.ufunc, values: Floats, order: Ints, start: Ints, end: Ints, none: float) -> Floats:
     if not len(start):
         return np.zeros(0)
     padded = np.append(values[order], none)
@@ -150,15 +148,19 @@ def _flows(layout: Layout) -> tuple[Floats, Floats, Floats, Bools]:
     return mass, leg_mass, np.where(alone, suction, discharge), too_diverse
 
 
+def _sums(owners: Ints, values: Floats, count: int) -> Floats:
+    return np.bincount(owners, weights=values, minlength=count).astype(np.float64)
+
+
 def _source_flows(layout: Layout, mass: Floats, leg_mass: Floats) -> tuple[Floats, Floats]:
     """Return the flow of each source on its discharge and on its suction (or return) side."""
     legs, terminals, count = layout.legs, layout.terminals, len(layout.media)
     found = []
     for outward, ends in ((True, terminals.out), (False, terminals.back)):
         roots = (legs.parent < 0) & (legs.outward == outward)
-        total = np.bincount(legs.source[roots], weights=leg_mass[roots], minlength=count)
+        total = _sums(legs.source[roots], leg_mass[roots], count)
         direct = (ends < 0) & (terminals.discharge == outward)
-        total += np.bincount(terminals.source[direct], weights=mass[direct], minlength=count)
+        total += _sums(terminals.source[direct], mass[direct], count)
         found.append(total)
     return found[0], found[1]
 
@@ -240,9 +242,7 @@ def _device_drops(layout: Layout, carried: Floats, pv: Floats) -> tuple[Floats, 
     reference = np.array([use.reference for use in uses], dtype=np.int64)
     leg_pv = np.array([pv[number] if number >= 0 else np.nan for number in reference.tolist()])
     damper = open_k * np.where(np.isnan(neck), leg_pv, velocity_pressure(density, flow / neck))
-    opened = np.where(
-        ~np.isnan(open_kv), valve_drop(flow, open_kv, density), np.where(np.isnan(open_k), 0.0, damper)
-    )
+    opened = np.where(~np.isnan(open_kv), valve_drop(flow, open_kv, density), np.where(np.isnan(open_k), 0.0, damper))
     return opened, np.maximum(opened, least)
 
 

@@ -22,7 +22,7 @@ from budget.description import (
     note,
     warning,
 )
-from budget.network.arrays import DeviceUse, Floats, Ints, Items, Layout, Legs, Loss, Terminals, Zone
+from budget.network.arrays import Bools, DeviceUse, Floats, Ints, Layout, Legs, Loss, Terminals, Zone
 from budget.network.equipment import EquipmentRows
 from budget.network.media import Media, media_of, medium_at, pascals, volume
 from budget.network.topology import AT_SOURCE, Topology, connect
@@ -43,7 +43,7 @@ def lay_out(description: Description) -> Layout:
     terminals = _terminals(description, topology, media, broken, terminal_zone, findings)
     rows = EquipmentRows(description, topology, media, terminals, broken, findings)
     items = rows.items()
-    devices, zones = _with_devices(rows.devices(), zones, topology)
+    devices, zones = _with_devices(rows.devices(), zones)
     order, start, end = _serving(legs, terminals)
     return Layout(
         description,
@@ -247,14 +247,34 @@ def _terminals(
                     text = f"{key} counts in an open liquid circuit only; remove it, or open the source"
                     findings.append(error("rise", text, (*terminal.path, key)))
                     rows["rise" if key == "rise" else "outlet"][-1] = 0.0
+
+    def real(key: str) -> Floats:
+        return np.array(rows[key], dtype=np.float64)
+
+    def whole(key: str) -> Ints:
+        return np.array(places[key], dtype=np.int64)
+
+    def truth(key: str) -> Bools:
+        return np.array(flags[key], dtype=np.bool_)
+
     return Terminals(
         ids=ids,
-        **{key: np.array(places[key], dtype=np.int64) for key in ("source", "zone", "out", "back")},
-        **{key: np.array(flags[key], dtype=np.bool_) for key in ("lone", "discharge", "broken")},
-        **{
-            key: np.array(rows[key], dtype=np.float64)
-            for key in ("mass", "density", "drop", "drop_at", "exponent", "static_drop", "neck", "rise", "outlet")
-        },
+        source=whole("source"),
+        zone=whole("zone"),
+        out=whole("out"),
+        back=whole("back"),
+        mass=real("mass"),
+        lone=truth("lone"),
+        discharge=truth("discharge"),
+        density=real("density"),
+        drop=real("drop"),
+        drop_at=real("drop_at"),
+        exponent=real("exponent"),
+        static_drop=real("static_drop"),
+        neck=real("neck"),
+        rise=real("rise"),
+        outlet=real("outlet"),
+        broken=truth("broken"),
     )
 
 
@@ -293,7 +313,7 @@ def _mass(description: Description, media: Media, id_: str, findings: list[Findi
 
 
 def _with_devices(
-    devices: tuple[DeviceUse, ...], zones: tuple[Zone, ...], topology: Topology
+    devices: tuple[DeviceUse, ...], zones: tuple[Zone, ...]
 ) -> tuple[tuple[DeviceUse, ...], tuple[Zone, ...]]:
     """Tie each held zone to the device that holds it."""
     held = {zone.leg: number for number, zone in enumerate(zones) if zone.leg >= 0}

@@ -10,6 +10,8 @@ import numpy as np
 
 from budget.description import Basis, Description, Finding, Fluid, Path, Quantity, Source, error, warning
 from budget.physics import fluids
+from budget.physics.glycols import Basis as GlycolBasis
+from budget.physics.glycols import Kind
 
 FREEZING_MARGIN = 3.0
 """K above the freezing point within which a warning is given (design margin; common practice)."""
@@ -92,9 +94,9 @@ def volume(quantity: Quantity, density: float) -> float:
     return quantity.value / density if quantity.basis is Basis.MASS else quantity.value
 
 
-def _glycol(fluid: Fluid) -> tuple[fluids.Kind, fluids.Basis, float]:
-    kind: fluids.Kind = "propylene" if fluid.name == "propylene glycol" else "ethylene"
-    basis: fluids.Basis = "volume" if fluid.concentration_by == "volume" else "mass"
+def _glycol(fluid: Fluid) -> tuple[Kind, GlycolBasis, float]:
+    kind: Kind = "propylene" if fluid.name == "propylene glycol" else "ethylene"
+    basis: GlycolBasis = "volume" if fluid.concentration_by == "volume" else "mass"
     return kind, basis, fluid.concentration or 0.0
 
 

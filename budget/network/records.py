@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 import math
-from typing import cast
 
 import numpy as np
 
 from budget.description import Geometry
-from budget.network.arrays import DeviceUse
+from budget.network.arrays import DeviceUse, Floats
 from budget.network.circuits import path_sums
 from budget.network.computed import Computed
 from budget.network.results import DeviceResult, LegResult, LossResult, RunResult, SectionResult, TerminalResult
@@ -179,7 +178,7 @@ def _or_none(value: float) -> float | None:
     return None if math.isnan(value) else value
 
 
-def _cumulative(run: Computed) -> np.ndarray:  # type: ignore[type-arg]
+def _cumulative(run: Computed) -> Floats:
     """Return for the first leg of each section the sum from the source's outlet to the section's downstream end.
 
     Outward that is everything on the path so far, both legs of paired sections. On the way back it is the largest
@@ -205,4 +204,4 @@ def _cumulative(run: Computed) -> np.ndarray:  # type: ignore[type-arg]
         served = from_source[layout.served(leg)]
         if len(served) and not np.isnan(served).all():
             largest[leg] = np.nanmax(served)
-    return cast("np.ndarray", np.where(legs.outward, outward, largest - after))
+    return np.where(legs.outward, outward, largest - after)

@@ -9,7 +9,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from budget.description import Description, Finding, Path, Run, Section, Terminal, error, note, warning
-from budget.network.arrays import Floats
+from budget.network.arrays import Bools, Floats
 from budget.network.computed import Computed
 from budget.network.duty import source_result
 from budget.network.takeup import adjust
@@ -146,7 +146,7 @@ def _first_leg(run: Computed, leg: int) -> int:
     return owned[found.owner][0]
 
 
-def _worst(run: Computed, wrong: np.ndarray, values: Floats) -> list[int]:  # type: ignore[type-arg]
+def _worst(run: Computed, wrong: Bools, values: Floats) -> list[int]:
     """Return the leg with the largest value of each owner that has a wrong one."""
     best: dict[tuple[bool, str], int] = {}
     for leg in np.flatnonzero(wrong).tolist():
@@ -158,7 +158,10 @@ def _worst(run: Computed, wrong: np.ndarray, values: Floats) -> list[int]:  # ty
 
 
 def _limits(run: Computed) -> tuple[Floats, Floats, Floats]:
-    """Return greatest velocity, greatest gradient and least velocity of each leg: its own, its class's, by bore, general."""
+    """Return greatest velocity, greatest gradient and least velocity of each leg.
+
+    A section's own limit comes first, then its class's, then that of its bore, then the general one.
+    """
     limits = run.layout.description.limits
     count = len(run.layout.legs)
     most, steepest, least = (np.full(count, bound) for bound in (np.inf, np.inf, 0.0))
@@ -323,7 +326,9 @@ def accept(findings: tuple[Finding, ...], description: Description) -> tuple[Fin
         key = (finding.path[:2], finding.code)
         if finding.level == "warning" and key in accepted:
             used.add(key)
-            finding = note(finding.code, f"{finding.message} (accepted: {_plain(accepted[key])})", finding.path, *finding.figures)
+            finding = note(
+                finding.code, f"{finding.message} (accepted: {_plain(accepted[key])})", finding.path, *finding.figures
+            )
         settled.append(finding)
     for path, code in accepted.keys() - used:
         settled.append(note("accept-unused", f"{code!r} was accepted here and does not occur", (*path, "accept", code)))

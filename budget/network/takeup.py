@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from budget.network.arrays import DeviceUse, Floats, Layout
+from budget.network.arrays import DeviceUse, Floats, Ints, Layout
 from budget.network.circuits import Circuits, margins_within
 from budget.network.hydraulics import Hydraulics
 from budget.physics.fittings import kv_of_drop, valve_drop
@@ -89,7 +89,7 @@ def _turn(layout: Layout, use: DeviceUse, rank: dict[str, int]) -> tuple[int, bo
     return -count, not leg.outward, rank.get(leg.owner, 0)
 
 
-def _zones_directly_in(layout: Layout, zone: int, served: np.ndarray) -> set[int]:  # type: ignore[type-arg]
+def _zones_directly_in(layout: Layout, zone: int, served: Ints) -> set[int]:
     """Return the held zones just inside a zone that hold any of the served terminals."""
     found = set()
     for inner in set(layout.terminals.zone[served].tolist()):

@@ -113,7 +113,9 @@ class _Rooting:
                 break
             if at in place:
                 ring = trail[place[at] :]
-                self._wrong("cycle", ring[0], f"{' -> '.join([*ring, ring[0]])} hang on each other; correct one of them")
+                self._wrong(
+                    "cycle", ring[0], f"{' -> '.join([*ring, ring[0]])} hang on each other; correct one of them"
+                )
                 break
             place[at] = len(trail)
             trail.append(at)
@@ -166,13 +168,17 @@ def _add_section_legs(description: Description, topology: Topology, rooted: dict
     if section.from_ is None:
         if section.run.paired_stated and section.run.paired:
             topology.findings.append(
-                error("paired", "a section that leads back has no leg to pair; remove paired", (*section.path, "paired"))
+                error(
+                    "paired", "a section that leads back has no leg to pair; remove paired", (*section.path, "paired")
+                )
             )
         parent = legs[-1] if legs else AT_SOURCE
         side: Side = "return" if kind == "closed" else "suction"
         topology.section_legs[id_] = (add(side, parent, outward=False, first=True),)
         return
-    supply = add("supply" if kind == "closed" else "discharge", legs[0] if legs else AT_SOURCE, outward=True, first=True)
+    supply = add(
+        "supply" if kind == "closed" else "discharge", legs[0] if legs else AT_SOURCE, outward=True, first=True
+    )
     topology.section_legs[id_] = (supply,)
     if kind == "air":
         if section.run.paired_stated and section.run.paired:
@@ -229,7 +235,7 @@ class _Joining:
                 return
         self._attach(source, kind, out or None, back or None)
 
-    def _place(self, key: str, target: str | None) -> tuple[int, int] | None | Literal[False]:
+    def _place(self, key: str, target: str | None) -> tuple[int, int] | Literal[False] | None:
         """Return leg (or AT_SOURCE) and source that `from` or `to` names; None: not stated; False: wrong."""
         if target is None:
             return None
@@ -248,7 +254,9 @@ class _Joining:
             return False  # what it hangs on is wrong itself, and said so
         if key == "from":
             if section.from_ is None:
-                self._wrong("wrong-connection", f"{target!r} leads back to the source; from needs one that leads out", key)
+                self._wrong(
+                    "wrong-connection", f"{target!r} leads back to the source; from needs one that leads out", key
+                )
                 return False
             return legs[0], self.rooted[target]
         if section.from_ is not None and len(legs) < 2:
@@ -261,9 +269,7 @@ class _Joining:
 
     def _paired_back(self, source: int) -> tuple[int, int] | None:
         """Return the return leg of the section that feeds the terminal; an error names the unpaired one."""
-        at = self.terminal.from_
-        assert at is not None
-        feeding = at
+        at = feeding = self.terminal.from_ or ""
         while at not in self.numbers:
             section = self.description.sections[at]
             if not section.run.paired:

@@ -51,9 +51,7 @@ def find_zones(
     return tuple(zones), zone, terminal_zone
 
 
-def _holding(
-    description: Description, topology: Topology, findings: list[Finding]
-) -> dict[int, tuple[int, int]]:
+def _holding(description: Description, topology: Topology, findings: list[Finding]) -> dict[int, tuple[int, int]]:
     """Return the legs of the sections whose device holds a differential over all that hangs on them."""
     wanted = [
         section
@@ -76,6 +74,8 @@ def _holding(
             continue
         odd = sorted(supplied ^ returning)
         name = odd[0] if odd else section.id
-        text = f"{section.balance!r} holds a differential only if all on it returns by its paired leg; {name!r} does not"
+        text = (
+            f"{section.balance!r} holds a differential only if all on it returns by its paired leg; {name!r} does not"
+        )
         findings.append(error("held-differently", text, (*section.path, "balance")))
     return found

@@ -17,9 +17,10 @@ FLEXIBLE_COMPRESSION: Final = (0.0, 0.30)
 # f Re of rectangles, Shah and London (1978), in powers of short over long side; from memory, checked against
 # the exact series to 0.07 %.
 _RECTANGLE = 96.0 * np.array([1.0, -1.3553, 1.9467, -1.7012, 0.9564, -0.2537])
-# f Re of flat ovals against minor over major axis (numerical solution); 0 is parallel plates.
-_OVAL_RATIO = np.array([0.0, 1 / 8, 1 / 6, 1 / 4, 1 / 3, 1 / 2, 1 / 1.5, 1.0])
-_OVAL_CONSTANT = np.array([96.0, 85.535, 82.643, 77.648, 73.621, 68.109, 65.274, ROUND])
+# f Re of flat ovals against major over minor axis (numerical solution); parallel plates have 96.
+_OVAL_RATIO = np.array([1.0, 1.5, 2.0, 3.0, 4.0, 6.0, 8.0])
+_OVAL_CONSTANT = np.array([ROUND, 65.274, 68.109, 73.621, 77.648, 82.643, 85.535])
+_PLATES = 96.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,12 +56,15 @@ def flat_oval(width: ArrayLike, height: ArrayLike) -> Shape:
     """Flat-oval duct: two half circles joined by flats; inside overall dimensions in m, either way round.
 
     A = pi a^2/4 + a (b - a), P = pi a + 2 (b - a), a the minor and b the major axis. The laminar constant is
-    interpolated in a numerical table (64 for the circle, 96 for parallel plates).
+    interpolated in a numerical table of major/minor axis to 8, beyond it toward 96, that of parallel plates.
     """
     a, b = _sides(width, height)
     area = 0.25 * np.pi * a * a + a * (b - a)
     perimeter = np.pi * a + 2.0 * (b - a)
-    constant = np.interp(a / b, _OVAL_RATIO, _OVAL_CONSTANT)
+    ratio = b / a
+    constant = np.interp(ratio, _OVAL_RATIO, _OVAL_CONSTANT)
+    beyond = _PLATES - (_PLATES - _OVAL_CONSTANT[-1]) * _OVAL_RATIO[-1] / np.maximum(ratio, _OVAL_RATIO[-1])
+    constant = np.where(ratio > _OVAL_RATIO[-1], beyond, constant)
     return _shape(area, perimeter, constant)
 
 

@@ -57,9 +57,7 @@ def _clean(value: Any) -> Any:
     return value
 
 
-def _design_fluid(
-    description: Description, budget: Budget, fallback: FluidResult | None
-) -> dict[str, Any] | None:
+def _design_fluid(description: Description, budget: Budget, fallback: FluidResult | None) -> dict[str, Any] | None:
     """Return the fluid of the design: that of a source that does not override it, where there is one."""
     for id_, result in budget.sources.items():
         if not _overrides(description, id_):
@@ -105,12 +103,11 @@ def _source(description: Description, result: SourceResult) -> dict[str, Any]:
 
 
 def _run(run: RunResult) -> dict[str, Any]:
-    values = {
-        field.name: getattr(run, field.name) for field in dataclasses.fields(run) if field.name != "legs"
-    }
-    legs = []
-    for leg in run.legs:
-        legs.append({f.name: getattr(leg, f.name) for f in dataclasses.fields(leg) if f.name != "losses"})
+    values = {field.name: getattr(run, field.name) for field in dataclasses.fields(run) if field.name != "legs"}
+    legs = [
+        {field.name: getattr(leg, field.name) for field in dataclasses.fields(leg) if field.name != "losses"}
+        for leg in run.legs
+    ]
     return values | {"legs": legs}
 
 

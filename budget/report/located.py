@@ -28,7 +28,7 @@ class Located:
 def locate(findings: Iterable[Finding], source: SourceText, description: Description) -> tuple[Located, ...]:
     """Return findings with their places, in the order of the file; each once."""
     figures = Figures(description)
-    found = {}
+    found: dict[Located, None] = {}
     for finding in findings:
         line, column = source.locate(finding.path)
         placed = Located(

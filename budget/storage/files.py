@@ -35,7 +35,8 @@ class Stamp:
 def load(path: Path) -> tuple[bytes, Stamp]:
     """Read a file's bytes. Raises StorageError for anything that is not a readable regular file of sensible size."""
     try:
-        with path.open("rb", opener=_without_blocking) as stream:
+        # O_NONBLOCK: a FIFO must not hang the program.
+        with os.fdopen(os.open(path, os.O_RDONLY | os.O_NONBLOCK), "rb") as stream:
             status = os.fstat(stream.fileno())
             if not stat.S_ISREG(status.st_mode):
                 raise StorageError(f"{path} is not a regular file; name the run's TOML file")
@@ -68,10 +69,6 @@ def save(path: Path, content: bytes, stamp: Stamp | None) -> Stamp:
     if written != content:
         raise StorageError(f"{path} does not hold what was written; save it under another name")
     return found
-
-
-def _without_blocking(path: str, flags: int) -> int:
-    return os.open(path, flags | os.O_NONBLOCK)  # a FIFO must not hang the program
 
 
 def _stamp(status: os.stat_result, content: bytes) -> Stamp:

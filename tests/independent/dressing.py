@@ -15,6 +15,7 @@ PIPES = {
 }
 OWN_SIZES = (15, 20, 25, 32, 40, 50, 80, 100, 150, 200)
 VALVE = ((0.5, 0.02), (1, 0.09), (2.5, 0.4), (4, 1.0))  # setting, share of the largest Kv
+COARSE = ((1, 0.35), (2, 0.6), (3, 1.0))  # cannot take up much
 ROUNDS = (63, 80, 100, 125, 160, 200, 250, 315, 400, 500, 630, 800, 1000, 1250)
 SIDES = (100, 150, 200, 250, 300, 400, 500, 600, 800, 1000, 1200)
 INCHES = (4, 5, 6, 8, 10, 12, 14, 16, 20, 24, 28, 32, 36, 42, 48)
@@ -229,7 +230,8 @@ class Dresser:
         series, kind = rng.choice((("DRV", "kv"), ("DRV", "kv"), ("ORV", "cv"), ("LDV", "kv")))
         self.tags |= {f"device {kind}"} | ({"least drop"} if series == "LDV" else set())
         name = f"{series} {plain(largest)}"
-        rows = [[setting, float(plain(largest * share, 4))] for setting, share in VALVE]
+        shares = COARSE if series == "LDV" else VALVE
+        rows = [[setting, float(plain(largest * share, 4))] for setting, share in shares]
         entry: Entry = {kind: rows}
         if series == "ORV":
             entry["signal_kv"] = float(plain(largest * 1.1, 4))
@@ -278,6 +280,7 @@ class Dresser:
                 self.tags.add("nested differentials")
         if hold == "differential" or (hold == "flow" and name not in self.single):
             entry["balance"] = self.holding(hold)
+            self.tags.add(f"holds {hold} on a section")
         elif name not in self.single and rng.random() < 0.2:
             entry["balance"] = self.balance(mass)
             self.tags.add("device on a section")

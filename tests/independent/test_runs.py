@@ -13,7 +13,8 @@ WANTED = (
     "SI", "IP", "closed", "open", "air", "paired", "reverse return", "joined risers", "both sides",
     "lone terminal omits its flow", "discharge side alone", "suction side alone", "suction from a tank",
     "diversity", "unequal legs", "load", "terminal's return temperature", "several sources",
-    "source with a temperature of its own", "holds flow", "holds differential", "stated set point",
+    "source with a temperature of its own", "holds flow", "holds differential", "holds flow on a section",
+    "stated set point",
     "default set point", "nested differentials", "device kv", "device cv", "device k", "least drop",
     "run-out", "run-out from and to", "item k", "item kv", "item cv", "item drop", "item drop at",
     "item filter", "item equivalent_length", "item tested", "exponent", "parallel", "item on a section",
@@ -58,6 +59,18 @@ def test_the_random_runs_flow_in_every_regime(texts: list[str]) -> None:
     )
     assert min(regimes[name] for name in ("laminar", "transitional", "turbulent")) > 200
     assert regimes["turbulent"] > sum(regimes.values()) / 2
+
+
+def test_some_devices_are_asked_for_more_than_their_table_has(texts: list[str]) -> None:
+    owners = [
+        owner
+        for text in small(texts)
+        for kind in ("sections", "terminals")
+        for owner in evaluate(text)[kind].values()
+    ]
+    devices = [owner["device"] for owner in owners if owner["device"] and "kv" in owner["device"]]
+    outside = sum(device["setting"] is None for device in devices)
+    assert len(devices) / 50 < outside < len(devices) / 2
 
 
 def test_no_leg_is_idle_and_mass_is_kept(texts: list[str]) -> None:

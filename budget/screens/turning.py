@@ -1,0 +1,267 @@
+"""Turning to another screen, in the ledger's place, and what the keys do there."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from budget.description.finding import Level, dotted
+from budget.screens import changing, entering, moving
+from budget.screens.actions import ACTIONS, Place
+from budget.screens.chooser import Choice, Chooser, Offer
+from budget.screens.field import Field
+from budget.screens.rows import Row
+from budget.screens.safe import clip, plain
+
+if TYPE_CHECKING:
+    from budget.screens.app import BudgetApp
+
+LEDGER_AT_LEAST = 82
+"""Columns that the ledger keeps where the row detail stands beside it."""
+
+
+def about(app: BudgetApp) -> tuple[str, str]:
+    """Return what is to be told of the row under the cursor, with the role of its style."""
+    if app.at in app.choosers:
+        marked = app.choosers[app.at].marked
+        return ("  ".join(cell.strip() for cell in marked.cells if cell.strip()), "faint") if marked else ("", "")
+    row = app.ledger.row
+    if app.at != "ledger" or row is None:
+        return "", ""
+    view = app.ledger.view
+    level = view.level(row) if row.kind != "item" else None
+    if level is not None:
+        found = next(f for f in view.snapshot.findings if f.owner == row.id and f.level is level)
+        return plain(found.message), level.value
+    title = view.cells(row)["title"].text
+    return f"{plain(dotted(row.path))}  {title}", "faint"
+
+
+# The row detail
+
+
+def show_detail(app: BudgetApp) -> None:
+    """Show everything written and computed for the row under the cursor."""
+    row = app.ledger.row
+    if app.at == "findings":
+        choose(app)
+        row = app.ledger.row
+    if row is None:
+        return
+    app.chooser("detail").present(_detail(app, row))
+    app.turn_to("detail")
+
+
+def _detail(app: BudgetApp, row: Row) -> Offer:
+    from budget.screens.detail import lines_of
+
+    choices = [Choice((line.label, line.text), line.path, line.role) for line in lines_of(app.ledger.view.snapshot, row)]
+    return Offer("Row detail", ("", ""), choices, lambda _: None, filters=False)
+
+
+def follow(app: BudgetApp) -> None:
+    """Let the row detail follow the cursor, and the lists the run, where they are in view."""
+    row = app.ledger.row
+    beside = app.choosers.get("beside")
+    if row is not None and beside is not None and beside.display:
+        beside.present(_detail(app, row))
+    if app.at == "detail" and row is not None:
+        app.choosers["detail"].present(_detail(app, row), keep=True)
+    if app.at == "findings":
+        app.choosers["findings"].present(_findings(app), keep=True)
+
+
+def lay_out(app: BudgetApp, width: int, wide: int) -> None:
+    """Put the row detail beside the ledger where there is room, and take it away where there is none."""
+    beside = app.choosers.get("beside")
+    if width < wide:
+        if beside is not None:
+            beside.display = False
+        return
+    if beside is None:
+        beside = app.choosers["beside"] = Chooser(app.colours, "beside", passive=True)
+        app.middle.mount(beside)
+    beside.styles.width = max(width - LEDGER_AT_LEAST - 50, width - LEDGER_AT_LEAST if width < 140 else 56)
+    beside.display = True
+    follow(app)
+
+
+def edit(app: BudgetApp) -> None:
+    """Edit the cell under the cursor, or the line of the row detail."""
+    if app.at == "ledger":
+        entering.edit_cell(app)
+        return
+    marked = app.choosers["detail"].marked
+    if marked is None or not isinstance(marked.value, tuple):
+        app.say("this line is computed; Enter works on the lines as written", "note")
+        return
+    entering.edit_key(app, marked.value)
+
+
+# Findings
+
+
+def show_findings(app: BudgetApp) -> None:
+    """List what is wrong or doubtful; Enter goes to its row and cell."""
+    app.chooser("findings").present(_findings(app))
+    app.turn_to("findings")
+
+
+def _findings(app: BudgetApp) -> Offer:
+    found = app.ledger.view.snapshot.findings
+    ranked = sorted(found, key=lambda finding: list(Level).index(finding.level))
+    choices = [
+        Choice((finding.level.value, str(finding.line), plain(finding.table), plain(finding.message)), finding, finding.level.value)
+        for finding in ranked
+    ]
+    return Offer(
+        "Findings", ("", "line", "where", "what"), choices, lambda value: _to_finding(app, value),
+        filters=False, empty="nothing is wrong or doubtful",
+    )  # fmt: skip
+
+
+def _to_finding(app: BudgetApp, value: object) -> None:
+    from budget.report.located import Located
+
+    assert isinstance(value, Located)
+    app.turn_to("ledger")
+    shown = value.path[:4] if len(value.path) > 3 and value.path[2] == "item" else value.path[:2]
+    if not app.ledger.go_to(shown, moving.column_of(value.path)):
+        show_text(app)
+        app.text.go_to_line(value.line)
+    app.tell()
+    app.say(plain(value.message), value.level.value)
+
+
+# Lists
+
+
+def choose(app: BudgetApp) -> None:
+    """Take what is marked in the list."""
+    marked, offer = app.choosers[app.at].marked, app.choosers[app.at].offer
+    if app.at == "list":
+        app.turn_to(app.returns_to)
+    if marked is not None:
+        offer.take(marked.value)
+
+
+def leave(app: BudgetApp) -> None:
+    """Leave a field or a list, and things as they were."""
+    if app.entry is not None:
+        entering.leave(app)
+        return
+    app.turn_to(app.returns_to)
+    app.show(app.document.snapshot)
+    app.tell()
+
+
+def write(app: BudgetApp, key: str, character: str | None) -> bool:
+    """Filter the list by what is written; left and right step the marked entry where it counts something."""
+    chooser = app.choosers["list"]
+    marked, step = chooser.marked, chooser.offer.step
+    if step is not None and key in ("left", "right", "minus", "plus") and marked is not None:
+        step(marked.value, 1 if key in ("right", "plus") else -1)
+        return True
+    field = chooser.field.press(key, character)
+    if field is not None:
+        chooser.write(field)
+        app.tell()
+    return field is not None
+
+
+def show_commands(app: BudgetApp) -> None:
+    """List every action that works here, with its keys."""
+    from budget.screens.doing import DOINGS
+
+    here: Place = app.at if app.at != "list" else "ledger"
+    actions = [a for a in ACTIONS if here in a.places and a.id not in ("up", "down", "left", "right", "commands")]
+    choices = [Choice((a.title, app.keymap.shown(a.id, 3), a.id), a.id) for a in actions]
+    app.offer(Offer("do", ("", "key", "name in the config"), choices, lambda name: DOINGS[str(name)](app)))
+
+
+# Text and manual
+
+
+def show_text(app: BudgetApp) -> None:
+    """Show the file itself, to be edited."""
+    app.text.open(app.document.snapshot.text, app.ledger.row)
+    app.turn_to("text")
+
+
+def apply_text(app: BudgetApp) -> bool:
+    """Put the text into the document, as one undo step; False, with the reason, where it is not TOML."""
+    before = app.document.snapshot
+    after = app.document.replace_text(app.text.content, "edit the text", app.ledger.mark)
+    app.show(after, before)
+    if after.readable:
+        app.say("the text was taken into the design")
+        return True
+    first = after.findings[0]
+    app.text.go_to_line(first.line)
+    app.say(f"line {first.line}: {plain(first.message)}", "error")
+    return False
+
+
+def undo_text(app: BudgetApp) -> None:
+    """Undo what was typed in the text."""
+    app.text.undo()
+
+
+def show_manual(app: BudgetApp) -> None:
+    """List the pages of the manual; Enter opens one."""
+    from budget.screens.manual import pages
+
+    found = pages()
+    if not found:
+        app.say("the manual has no pages in this installation", "warning")
+        return
+
+    def take(name: object) -> None:
+        app.manual.open(str(name))
+        app.turn_to("manual")
+
+    app.offer(Offer("Manual", ("",), [Choice((plain(title),), name) for name, title in found], take))
+
+
+def back(app: BudgetApp) -> None:
+    """Go back to the ledger; a changed text is taken into the design first."""
+    if app.at == "text" and app.text.content != app.document.snapshot.text and not apply_text(app):
+        return
+    app.turn_to("ledger")
+
+
+# Saving and leaving
+
+
+def save(app: BudgetApp) -> None:
+    """Save the run; on the Text screen, what is written there."""
+    if app.at == "text" and app.text.content != app.document.snapshot.text and not apply_text(app):
+        return
+    changing.save(app)
+
+
+def leave_app(app: BudgetApp) -> None:
+    """Quit; where the run is not saved, ask first."""
+    if app.at == "text" and app.text.content != app.document.snapshot.text and not apply_text(app):
+        return
+    if not app.document.dirty:
+        app.exit(0)
+        return
+    choices = [
+        Choice(("save and quit",), "save"),
+        Choice(("quit without saving",), "discard"),
+        Choice(("stay",), "stay"),
+    ]
+    app.offer(Offer("The run is not saved", ("",), choices, lambda value: _quit(app, value)))
+
+
+def _quit(app: BudgetApp, value: object) -> None:
+    if value == "discard" or (value == "save" and changing.save(app)):
+        app.exit(0)
+
+
+def suspend(app: BudgetApp) -> None:
+    """Go to the shell; `fg` comes back."""
+    app.action_suspend_process()
+
+
+__all__ = ["Field", "clip"]
