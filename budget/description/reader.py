@@ -193,7 +193,9 @@ def _device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> D
     if not tables and holds is None:
         reading.wrong("missing", f"the device {id_!r} has no setting table; write kv, cv, k or holds", path)
     if holds is not None and values.get("least_drop") is None and not tables:
-        reading.wrong("missing", f"the device {id_!r} holds a {holds}; write its least_drop", path)
+        reading.findings.append(
+            warning("no-drop", f"the device {id_!r} has no least_drop; its base drop counts as nothing", path)
+        )
     for key, owner in (("greatest_drop", "flow"), ("set_point", "differential")):
         if key in values and holds != owner:
             reading.wrong("contradiction", f'{key} belongs to holds = "{owner}"; remove it', (*path, key))

@@ -59,9 +59,10 @@ def _only_its_flow(run: Computed, carrier: int, three_port: bool) -> float:
     else:
         numbers = layout.served(carrier)
         served = set(numbers.tolist())
-        if not served:
+        circuits = run.circuits.circuit[numbers]
+        if np.isnan(circuits).all():
             return math.nan
-        terminal = int(numbers[np.nanargmax(run.circuits.circuit[numbers])])
+        terminal = int(numbers[np.nanargmax(circuits)])
     taken = np.zeros(len(legs) + len(layout.terminals))
     for number, use in enumerate(layout.devices):
         taken[use.carrier] = run.take_up.taken[number]

@@ -140,15 +140,16 @@ class EquipmentRows:
         return (media.supply if found.outward else media.back).density
 
     def _terminal_reference(self, terminal: Terminal, number: int) -> tuple[int, float]:
-        """Return what a coefficient on a terminal refers to: its neck, else its run-out, else what it hangs on."""
+        """Return the leg that losses on a terminal refer to, its run-out or what it hangs on, and its neck area.
+
+        A coefficient refers to the neck where there is one; an equivalent length always to the leg.
+        """
         neck = float(self.terminals.neck[number])
-        if not math.isnan(neck):
-            return -1, neck
         run_out = self.topology.run_out_legs.get(terminal.id)
         if run_out:
-            return run_out[0], math.nan
+            return run_out[0], neck
         out = self.topology.outward.get(terminal.id)
-        return (out if out is not None else self.topology.back.get(terminal.id, -1)), math.nan
+        return (out if out is not None else self.topology.back.get(terminal.id, -1)), neck
 
     def _need_reference(self, item: Item, reference: int, neck: float) -> None:
         lost = item.k is not None and reference < 0 and math.isnan(neck)

@@ -206,7 +206,7 @@ def _item_drops(items: Items, carried: Floats, pv: Floats, gradient: Floats) -> 
     each = flow / items.parallel
     drop = np.full(len(items), np.nan)
     at_neck = ~np.isnan(items.neck)
-    reference = np.where(at_neck | (items.reference < 0), 0, items.reference)
+    reference = np.maximum(items.reference, 0)
     has_leg = items.reference >= 0
     form = items.form
 

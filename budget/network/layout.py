@@ -234,13 +234,13 @@ def _terminals(
         places["back"].append(topology.back.get(id_, AT_SOURCE))
         rows["mass"].append(mass)
         rows["density"].append(own.density)
-        rows["drop"].append(_pascals(terminal.drop, supply.density, 0.0))
+        rows["drop"].append(_pascals(terminal.drop, own.density, 0.0))
         rows["drop_at"].append(math.nan if terminal.at is None else volume(terminal.at, own.density))
         rows["exponent"].append(terminal.exponent)
-        rows["static_drop"].append(_pascals(terminal.static_drop, supply.density, math.nan))
+        rows["static_drop"].append(_pascals(terminal.static_drop, own.density, math.nan))
         rows["neck"].append(neck_area(terminal.neck))
         rows["rise"].append(terminal.rise)
-        rows["outlet"].append(_pascals(terminal.outlet_pressure, supply.density, 0.0))
+        rows["outlet"].append(_pascals(terminal.outlet_pressure, own.density, 0.0))
         if topology.kinds[source] != "open":
             for key, stated in (("rise", terminal.rise != 0.0), ("outlet_pressure", terminal.outlet_pressure)):
                 if stated:

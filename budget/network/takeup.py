@@ -48,7 +48,7 @@ def take_up(layout: Layout, drops: Hydraulics, circuits: Circuits) -> TakeUp:
     zone_remaining = circuits.zone_margin.copy()
     on_legs = [number for number, use in enumerate(layout.devices) if not use.terminal]
     held = any(zone.outer >= 0 for zone in layout.zones)
-    rank = layout.description.rank()
+    rank = layout.description.rank() if on_legs else {}
     for number in sorted(on_legs, key=lambda n: _turn(layout, layout.devices[n], rank)):
         use = layout.devices[number]
         zone = int(layout.legs.zone[use.number])
@@ -104,25 +104,30 @@ def _zones_directly_in(layout: Layout, zone: int, served: Ints) -> set[int]:
 def adjust(layout: Layout, drops: Hydraulics, number: int, drop: float) -> Adjusted:
     """Return how a device is set for a drop: Kv interpolated on log Kv, a damper on log k.
 
-    The setting is None outside the table, and for a device that holds flow or differential.
+    The setting is None outside the table. A device that holds flow or differential has no setting, and a signal only
+    across a measuring orifice.
     """
     use = layout.devices[number]
     carried = (drops.leg_mass, drops.terminal_mass)[use.terminal][use.number]
     flow = float(carried) / use.density
     device = use.device
     signal = None
-    if not device.k:
-        signal = drop if device.signal_kv is None else float(valve_drop(flow, device.signal_kv, use.density))
+    if device.signal_kv is not None:
+        signal = float(valve_drop(flow, device.signal_kv, use.density))
+    elif not device.k and not device.holds:
+        signal = drop
+    if device.holds:
+        return Adjusted(None, None, None, signal)
     if device.kv and not math.isnan(drop):
         kv = float(kv_of_drop(flow, drop, use.density)) if drop > 0 else math.inf
-        return Adjusted(kv, None, None if device.holds else _setting(device.kv, kv), signal)
+        return Adjusted(kv, None, _setting(device.kv, kv), signal)
     if device.k and not math.isnan(drop):
         if math.isnan(use.neck):
             pv = float(drops.velocity_pressure[use.reference]) if use.reference >= 0 else math.nan
         else:
             pv = float(velocity_pressure(use.density, flow / use.neck))
         k = drop / pv if pv > 0 else math.nan
-        return Adjusted(None, k, None if device.holds else _setting(device.k, k), None)
+        return Adjusted(None, k, _setting(device.k, k), None)
     return Adjusted(None, None, None, signal)
 
 

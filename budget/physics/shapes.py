@@ -93,11 +93,11 @@ def flexible_factor(compression: ArrayLike, diameter: ArrayLike) -> Array:
     stretched duct's gradient x this factor x the fitted length. Measured within FLEXIBLE_DIAMETERS and
     FLEXIBLE_COMPRESSION; outside them the formula goes on and the caller says so.
 
-    Source: Abushakra, Walker and Sherman (2004), ASHRAE Transactions 110: 1 + 0.58 r exp(-0.126 D), r in
-    percent and D in inches.
+    Source: Abushakra, Walker and Sherman (2004), ASHRAE Transactions 110: 1 + 0.58 r exp(-0.00496 D), r in
+    percent and D in mm.
     """
     r, d = np.asarray(compression, dtype=np.float64), np.asarray(diameter, dtype=np.float64)
-    return np.asarray(1.0 + 58.0 * r * np.exp(-0.126 / 0.0254 * d))
+    return np.asarray(1.0 + 58.0 * r * np.exp(-4.96 * d))
 
 
 def _shape(area: Array, perimeter: Array, constant: ArrayLike) -> Shape:

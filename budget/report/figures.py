@@ -20,20 +20,20 @@ GRAVITY = 9.80665
 """m/s2, standard; turns a pressure into a head of the fluid itself."""
 
 _DECIMALS: Mapping[str, int] = {
-    **{"m": 1, "mm": 1, "cm": 1, "um": 0, "ft": 1, "in": 2},
-    **{"m3/s": 4, "m3/h": 2, "L/s": 3, "L/min": 1, "L/h": 0, "gpm": 2, "cfm": 0},
-    **{"kg/s": 3, "kg/h": 0, "lb/h": 0},
-    **{"Pa": 0, "kPa": 2, "mbar": 1, "bar": 4, "psi": 2, "inH2O": 3, "ftH2O": 2, "mmH2O": 0, "mH2O": 3},
-    **{"Pa/m": 0, "kPa/m": 3, "mbar/m": 2, "mmH2O/m": 1, "inH2O/100ft": 3, "ftH2O/100ft": 2},
-    **{"m/s": 2, "ft/s": 2, "fpm": 0},
-    **{"W": 0, "kW": 2, "MW": 4, "hp": 2, "Btu/h": 0, "MBH": 1, "TR": 2},
-    **{"degC": 1, "degF": 1, "K": 1, "delta_degC": 1, "delta_degF": 1, "%": 1, "deg": 0},
-    **{"kg/m3": 2, "lb/ft3": 3, "": 3},
+    "m": 1, "mm": 1, "cm": 1, "um": 0, "ft": 1, "in": 2,
+    "m3/s": 4, "m3/h": 2, "L/s": 3, "L/min": 1, "L/h": 0, "gpm": 2, "cfm": 0,
+    "kg/s": 3, "kg/h": 0, "lb/h": 0,
+    "Pa": 0, "kPa": 2, "mbar": 1, "bar": 4, "psi": 2, "inH2O": 3, "ftH2O": 2, "mmH2O": 0, "mH2O": 3,
+    "Pa/m": 0, "kPa/m": 3, "mbar/m": 2, "mmH2O/m": 1, "inH2O/100ft": 3, "ftH2O/100ft": 2,
+    "m/s": 2, "ft/s": 2, "fpm": 0,
+    "W": 0, "kW": 2, "MW": 4, "hp": 2, "Btu/h": 0, "MBH": 1, "TR": 2,
+    "degC": 1, "degF": 1, "K": 1, "delta_degC": 1, "delta_degF": 1, "%": 1, "deg": 0,
+    "kg/m3": 2, "lb/ft3": 3, "": 3,
 }
 _DECIMALS_OF_A_GAS: Mapping[str, int] = {
-    **{"L/s": 1, "m3/h": 0, "m3/s": 3, "L/min": 0, "kg/s": 4, "kg/h": 1},
-    **{"Pa": 1, "kPa": 4, "mmH2O": 2},
-    **{"Pa/m": 2, "mmH2O/m": 3, "inH2O/100ft": 3},
+    "L/s": 1, "m3/h": 0, "m3/s": 3, "L/min": 0, "kg/s": 4, "kg/h": 1,
+    "Pa": 1, "kPa": 4, "mmH2O": 2,
+    "Pa/m": 2, "mmH2O/m": 3, "inH2O/100ft": 3,
 }
 
 

@@ -1,1 +1,30 @@
-"""Screens."""
+"""The app: `budget edit FILE`."""
+
+from __future__ import annotations
+
+import os
+import sys
+from pathlib import Path
+
+from budget.screens.config import load_config
+from budget.screens.terminal import objection_here, prepare
+
+__all__ = ["run"]
+
+
+def run(path: Path, *, ascii: bool | None = None, mouse: bool | None = None) -> int:  # noqa: A002
+    """Open a run in the app and stay in it until the user leaves; return the exit code.
+
+    `ascii` and `mouse` overrule the user's config. 2 where the terminal or the file can't be used, with the
+    reason on the standard error.
+    """
+    config, problems = load_config()
+    ascii_only = config.ascii if ascii is None else ascii
+    refused = objection_here(ascii_only=ascii_only)
+    if refused:
+        print(f"budget: {refused}", file=sys.stderr)
+        return 2
+    prepare(os.environ)
+    from budget.screens.opening import open_app  # noqa: PLC0415 - the toolkit reads its switches when it is imported
+
+    return open_app(path, config, problems, ascii_only=ascii_only, mouse=config.mouse if mouse is None else mouse)

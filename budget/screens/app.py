@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import asyncio
 from typing import TYPE_CHECKING, ClassVar
 
 from textual import events
 from textual.app import App, ComposeResult
 from textual.containers import Horizontal
+from textual.filter import LineFilter
 
 from budget.description.edits import Edit
 from budget.description.finding import Path
@@ -18,17 +20,20 @@ from budget.screens.budget_line import BudgetLine
 from budget.screens.chooser import Chooser, Offer
 from budget.screens.config import Config
 from budget.screens.doing import DOINGS
-from budget.screens.filters import AsciiFilter, SafeFilter
 from budget.screens.foot import Foot
 from budget.screens.ledger import Ledger, Mark
 from budget.screens.rows import View
 from budget.screens.safe import plain
 from budget.screens.themes import Theme
+from budget.screens.toolkit import AsciiFilter, SafeFilter, widget_theme
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from textual.widget import Widget
+
+    from budget.screens.manual import ManualScreen
+    from budget.screens.text import TextScreen
 
 WIDE = 120
 """Columns from which the row detail stands beside the ledger."""
@@ -49,28 +54,31 @@ class BudgetApp(App[int], inherit_bindings=False):
     #foot { height: 2; }
     """
 
-    def __init__(self, document: Document, config: Config, theme: Theme, *, ascii_only: bool, notes: Sequence[str]) -> None:
+    def __init__(
+        self, document: Document, config: Config, theme: Theme, *, ascii_only: bool, notes: Sequence[str]
+    ) -> None:
         """Open on a document, with the user's settings; notes are told at the foot."""
         super().__init__()
         self.document, self.config, self.colours = document, config, theme
         self.keymap, self.notes = config.keymap, notes
         self.entry: entering.Entry | None = None
         self.at: Place = "ledger"
-        self.came_from: Place = "ledger"
+        self.returns_to: Place = "ledger"
         self.sought = ""
         self.change: tuple[str, str] = ("", "")
         self.animation_level = "none"
-        self._filters.append(SafeFilter())
-        if ascii_only:
-            self._filters.append(AsciiFilter())
-        self.register_theme(theme.widget_theme())
+        self._own_filters: tuple[LineFilter, ...] = (SafeFilter(), AsciiFilter()) if ascii_only else (SafeFilter(),)
+        self._running_loop: asyncio.AbstractEventLoop | None = None
+        self.register_theme(widget_theme(theme))
         self.theme = theme.name
 
         view = View(document.snapshot)
         self.ledger = Ledger(theme, view)
         self.budget_line = BudgetLine(theme, view, self.ledger.source)
         self.foot = Foot(theme, config.keymap)
-        self.choosers: dict[Place, Chooser] = {}
+        self.choosers: dict[str, Chooser] = {}
+        self._text: TextScreen | None = None
+        self._manual: ManualScreen | None = None
 
     def compose(self) -> ComposeResult:
         """Budget line, ledger, foot."""
@@ -81,11 +89,13 @@ class BudgetApp(App[int], inherit_bindings=False):
 
     def on_mount(self) -> None:
         """Show the run, and say what was wrong with the settings."""
+        self._running_loop = asyncio.get_running_loop()
         self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
         self.show(self.document.snapshot)
         self.tell()
         if self.notes:
-            self.say(plain(self.notes[0]) + (f" (and {len(self.notes) - 1} more)" if len(self.notes) > 1 else ""), "warning")
+            more = f" (and {len(self.notes) - 1} more)" if len(self.notes) > 1 else ""
+            self.say(plain(self.notes[0]) + more, "warning")
 
     # What is in front
 
@@ -101,8 +111,11 @@ class BudgetApp(App[int], inherit_bindings=False):
 
     def turn_to(self, place: Place) -> None:
         """Bring a screen to the front, in the place of the ledger."""
-        if place != self.at:
-            self.came_from, self.at = self.at, place
+        if place == "list" and self.at != "list":
+            self.returns_to = self.at
+        self.at = place
+        if place not in ("text", "manual"):
+            self.screen.set_focus(None)
         for widget in self.middle.children:
             if widget.id != "beside":
                 widget.display = widget.id == place
@@ -119,6 +132,26 @@ class BudgetApp(App[int], inherit_bindings=False):
             self.choosers[place] = Chooser(self.colours, place)
             self.middle.mount(self.choosers[place])
         return self.choosers[place]
+
+    @property
+    def text(self) -> TextScreen:
+        """The Text screen; it is made when it is first asked for."""
+        if self._text is None:
+            from budget.screens.text import TextScreen  # noqa: PLC0415 - heavy, and seldom needed
+
+            self._text = TextScreen()
+            self.middle.mount(self._text)
+        return self._text
+
+    @property
+    def manual(self) -> ManualScreen:
+        """The Manual screen; it is made when it is first asked for."""
+        if self._manual is None:
+            from budget.screens.manual import ManualScreen  # noqa: PLC0415 - heavy, and seldom needed
+
+            self._manual = ManualScreen()
+            self.middle.mount(self._manual)
+        return self._manual
 
     def offer(self, offer: Offer) -> None:
         """Show a list to pick from."""
@@ -182,6 +215,10 @@ class BudgetApp(App[int], inherit_bindings=False):
         event.stop().prevent_default()
         if self.foot.message and self.entry is None:
             self.say("")
+        self.do(action)
+
+    def do(self, action: str) -> None:
+        """Do an action by its name."""
         DOINGS[action](self)
 
     def on_paste(self, event: events.Paste) -> None:
@@ -193,7 +230,16 @@ class BudgetApp(App[int], inherit_bindings=False):
 
     def on_resize(self, event: events.Resize) -> None:
         """Put the row detail beside the ledger where there is room."""
-        turning.lay_out(self, event.size.width >= WIDE)
+        turning.lay_out(self, event.size.width, WIDE)
+
+    def close_with(self, code: int) -> None:
+        """End from a signal handler or another thread."""
+        if self._running_loop is not None:
+            self._running_loop.call_soon_threadsafe(self.exit, code)
+
+    def get_line_filters(self) -> Sequence[LineFilter]:
+        """Whatever a widget paints goes through these, last through our own."""
+        return (*super().get_line_filters(), *self._own_filters)
 
     def _write(self, event: events.Key) -> bool:
         if self.entry is not None:

@@ -38,12 +38,12 @@ class BudgetLine(Lines):
         """Spell one of the three lines."""
         result = self.view.snapshot.budget.sources.get(self.source)
         if y == 0:
-            return self._name(result)
+            return self._headline(result)
         if result is None:
             return ((" nothing can be computed until the errors are mended", "error"),) if y == 1 else ()
         return self._figures(result, width) if y == 1 else self._bars(result, width)
 
-    def _name(self, result: SourceResult | None) -> Iterator[Piece]:
+    def _headline(self, result: SourceResult | None) -> Iterator[Piece]:
         yield f" {steady(self.source) or '-'}", "title"
         if result is not None and result.index:
             yield f"  {INDEX_SIGN} ", "index"

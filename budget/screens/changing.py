@@ -6,6 +6,7 @@ from collections.abc import Callable
 from typing import TYPE_CHECKING
 
 from budget.description.edits import EditError
+from budget.document import Snapshot
 from budget.screens import shaping
 from budget.screens.chooser import Choice, Offer
 from budget.screens.ledger import Mark
@@ -26,7 +27,7 @@ def reshape(app: BudgetApp, make: Callable[..., shaping.Change], *extra: object)
     try:
         change = make(snapshot.text, snapshot.description, app.ledger.rows, place, *extra)
         app.apply(change.edit, change.label, path=change.path)
-    except (shaping.CannotShape, EditError) as refused:
+    except (shaping.ShapingError, EditError) as refused:
         app.say(plain(str(refused)), "error")
         return
     app.say(f"{change.label}: done; {app.keys('undo')} takes it back")
@@ -39,7 +40,7 @@ def move(app: BudgetApp) -> None:
         return
     try:
         ids = shaping.parents_for(snapshot.description, app.ledger.rows, app.ledger.rows.index(row))
-    except shaping.CannotShape as refused:
+    except shaping.ShapingError as refused:
         app.say(plain(str(refused)), "note")
         return
 
@@ -59,8 +60,9 @@ def undo(app: BudgetApp) -> None:
     if not document.can_undo:
         app.say("nothing to undo", "note")
         return
-    label, before = document.undo_label, document.snapshot
-    _return_to(app, document.undo(), before, f"undone: {label}")
+    step, before = document.history, document.snapshot
+    document.undo()
+    _return_to(app, step.mark, before, f"undone: {step.label}")
 
 
 def redo(app: BudgetApp) -> None:
@@ -69,8 +71,9 @@ def redo(app: BudgetApp) -> None:
     if not document.can_redo:
         app.say("nothing to redo", "note")
         return
-    label, before = document.redo_label, document.snapshot
-    _return_to(app, document.redo(), before, f"redone: {label}")
+    before = document.snapshot
+    document.redo()
+    _return_to(app, document.history.mark, before, f"redone: {document.history.label}")
 
 
 def save(app: BudgetApp) -> bool:
@@ -85,10 +88,8 @@ def save(app: BudgetApp) -> bool:
     return True
 
 
-def _return_to(app: BudgetApp, mark: object, before: object, message: str) -> None:
-    from budget.document import Snapshot
-
-    app.show(app.document.snapshot, before=before if isinstance(before, Snapshot) else None)
+def _return_to(app: BudgetApp, mark: object, before: Snapshot, message: str) -> None:
+    app.show(app.document.snapshot, before=before)
     if isinstance(mark, Mark):
         app.ledger.return_to(mark)
     app.tell()

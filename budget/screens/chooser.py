@@ -50,11 +50,10 @@ class Offer:
 class Chooser(Lines):
     """The list on the screen: the filter, the entries that pass it, and the cursor on one of them."""
 
-    can_focus = True
-
-    def __init__(self, theme: Theme, id: str) -> None:  # noqa: A002
-        """Show nothing yet."""
+    def __init__(self, theme: Theme, id: str, *, passive: bool = False) -> None:  # noqa: A002
+        """Show nothing yet; a passive one has no cursor."""
         super().__init__(theme, id=id)
+        self.passive = passive
         self.offer = Offer("", (), (), lambda _: None)
         self.field = Field()
         self.kept: list[Choice] = []
@@ -99,6 +98,11 @@ class Chooser(Lines):
         self._filter()
         self.repaint()
 
+    def refresh_more(self) -> None:
+        """Compute the further cells of the entries again."""
+        self._more.clear()
+        self.repaint()
+
     def on_resize(self) -> None:
         """Keep the entry under the cursor in view."""
         self._keep_in_view()
@@ -115,14 +119,15 @@ class Chooser(Lines):
         if place >= len(self.kept):
             return ((f" {self.offer.empty}", "faint"),) if place == 0 else ()
         choice = self.kept[place]
-        roles = f"{choice.role} cursor" if place == self.cursor else choice.role
+        roles = f"{choice.role} cursor" if place == self.cursor and not self.passive else choice.role
         return self._cells(self._all_cells(choice), widths, roles)
 
     def _title(self, width: int) -> Iterator[Piece]:
         yield clip(f" {self.offer.title}  ", width), "title"
         if self.offer.filters:
             yield from field_pieces(self.field, min(30, max(8, width - width_of(self.offer.title) - 4)))
-        yield f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}", "faint"
+        if not self.passive:
+            yield f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}", "faint"
 
     def _cells(self, cells: Sequence[str], widths: Sequence[int], roles: str) -> Iterator[Piece]:
         yield " ", roles

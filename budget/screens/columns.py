@@ -19,7 +19,7 @@ Key = Literal[
 
 @dataclass(frozen=True, slots=True)
 class Column:
-    """One column: its title for wide and for narrow terminals, its width with the sign at its end, and what it measures."""
+    """One column: its title on wide and on narrow terminals, its width with the sign at its end, what it measures."""
 
     key: Key
     title: str

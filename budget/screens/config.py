@@ -1,6 +1,6 @@
 """The user's settings for the app: `config.toml` in the user's config folder, read with every mistake told.
 
-    theme = "dark"       # terminal, light, dark, high-contrast, colour-blind, or a file themes/NAME.toml beside the config
+    theme = "dark"       # terminal, light, dark, high-contrast, colour-blind, or a file of one's own, themes/NAME.toml
     mouse = false
     ascii = false
     letters = false      # h j k l move as well
@@ -20,6 +20,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
+
+import platformdirs
 
 from budget.screens.keymap import Keymap, build
 from budget.screens.themes import TERMINAL, names_of_themes
@@ -41,8 +43,6 @@ class Config:
 
 def config_folder() -> Path:
     """Return the user's config folder for this program; it need not exist."""
-    import platformdirs
-
     return Path(platformdirs.user_config_path("budget"))
 
 

@@ -111,7 +111,8 @@ class _Computed:
             limit = result.budget.get(heading)
             of = f" of {self.figures.pressure(limit, self.density, unit=True)}" if limit is not None else ""
             over = limit is not None and value > limit
-            yield Line(f"  {heading}", self.figures.pressure(value, self.density, unit=True) + of, "over" if over else "")
+            spent = self.figures.pressure(value, self.density, unit=True)
+            yield Line(f"  {heading}", spent + of, "over" if over else "")
         yield from self._items(result.items)
 
     def _section(self, result: SectionResult) -> Iterator[Line]:

@@ -6,18 +6,18 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from budget.description.edits import Edit, EditError, SetValue, Unset
+from budget.description.edits import Edit, EditError, SetValue, Unset, rename_everywhere
 from budget.description.finding import Path, dotted
 from budget.document import Snapshot
 from budget.screens.field import Field
 from budget.screens.safe import plain
-from budget.screens.writing import WrittenWrong, key_of_cell, objection, value_of, written
+from budget.screens.writing import WritingError, key_of_cell, objection, value_of, written
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
 
 Attempt = Callable[[str], Snapshot | None]
-"""Tries a text out and returns what the run would be, None where it changes nothing; raises WrittenWrong or EditError."""
+"""Tries a text out; returns what the run would be, None for no change; raises WritingError or EditError."""
 
 
 @dataclass(slots=True)
@@ -49,7 +49,7 @@ def press(app: BudgetApp, entry: Entry, field: Field) -> None:
         try:
             tried = entry.attempt(field.text)
             entry.problem = ""
-        except (WrittenWrong, EditError) as wrong:
+        except (WritingError, EditError) as wrong:
             tried, entry.problem = None, plain(str(wrong))
         app.show(tried or app.document.snapshot, before=app.document.snapshot)
     _paint(app, entry)
@@ -65,7 +65,7 @@ def accept(app: BudgetApp) -> bool:
         entry.attempt(text)
         end(app)
         entry.accept(text)
-    except (WrittenWrong, EditError) as wrong:
+    except (WritingError, EditError) as wrong:
         entry.problem = plain(str(wrong))
         app.entry = entry
         _paint(app, entry)
@@ -121,13 +121,13 @@ def edit_key(app: BudgetApp, path: Path, *, in_cell: bool = False) -> None:
 
 
 def try_value(app: BudgetApp, path: Path, before: str, text: str) -> Snapshot | None:
-    """Return what the run would be with a value; raises WrittenWrong where the value can't stand."""
+    """Return what the run would be with a value; raises WritingError where the value can't stand."""
     if text == before:
         return None
     after = app.document.preview(edit_of(path, before, text))
     wrong = objection(app.document.snapshot, after, path)
     if wrong:
-        raise WrittenWrong(wrong)
+        raise WritingError(wrong)
     return after
 
 
@@ -147,7 +147,7 @@ def edit_of(path: Path, before: str, text: str) -> Edit:
 
 
 def set_key(app: BudgetApp) -> None:
-    """Ask for a key and its value, `limit_velocity = 1.2 m/s`, and set it on the row; without a value it is taken out."""
+    """Ask for a key and its value, `limit_velocity = 1.2 m/s`, and set it on the row; no value takes the key out."""
     row = app.ledger.row
     if row is None:
         return
@@ -155,7 +155,7 @@ def set_key(app: BudgetApp) -> None:
     def parts(text: str) -> tuple[Path, str]:
         name, sign, value = text.partition("=")
         if not sign or not name.strip():
-            raise WrittenWrong("write KEY = VALUE")
+            raise WritingError("write KEY = VALUE")
         keys = tuple(int(part) if part.isdecimal() else part.strip('"') for part in name.strip().split("."))
         return (*row.path, *keys), value.strip()
 
@@ -172,8 +172,6 @@ def set_key(app: BudgetApp) -> None:
 
 def rename(app: BudgetApp) -> None:
     """Ask for another ID; everything that refers to it follows."""
-    from budget.description.edits import rename_everywhere
-
     row = app.ledger.row
     if row is None or row.kind == "item":
         app.say("an item has a name, not an ID; edit its cell", "note")
@@ -181,10 +179,10 @@ def rename(app: BudgetApp) -> None:
 
     def edit(text: str) -> Edit:
         if not text.strip():
-            raise WrittenWrong("an ID can't be empty")
+            raise WritingError("an ID can't be empty")
         known = app.document.snapshot.description
         if text in known.sources or text in known.sections or text in known.terminals:
-            raise WrittenWrong(f"{plain(text)} is taken")
+            raise WritingError(f"{plain(text)} is taken")
         return rename_everywhere(app.document.snapshot.text, str(row.path[0]), row.id, text)
 
     def attempt(text: str) -> Snapshot | None:
@@ -193,7 +191,7 @@ def rename(app: BudgetApp) -> None:
         after = app.document.preview(edit(text))
         wrong = objection(app.document.snapshot, after, (row.path[0], text))
         if wrong:
-            raise WrittenWrong(wrong)
+            raise WritingError(wrong)
         return None
 
     def take(text: str) -> None:
@@ -206,7 +204,7 @@ def rename(app: BudgetApp) -> None:
 def next_cell(app: BudgetApp, step: int) -> None:
     """Move the cursor to the next cell that can be edited, on this row or another."""
     ledger, text = app.ledger, app.document.snapshot.text
-    keys = [placed.column.key for placed in ledger.placed]
+    keys: list[str] = [placed.column.key for placed in ledger.placed]
     place, column = ledger.cursor, keys.index(ledger.column)
     for _ in range(len(keys) * 3 * max(1, ledger.page)):
         column += step
@@ -214,8 +212,9 @@ def next_cell(app: BudgetApp, step: int) -> None:
             column, place = (0, place + 1) if step > 0 else (len(keys) - 1, place - 1)
         if not 0 <= place < len(ledger.shown):
             return
-        if keys[column] != "id" and key_of_cell(text, ledger.shown[place], keys[column]) is not None:
-            ledger.column = keys[column]
+        key = keys[column]
+        if key != "id" and key_of_cell(text, ledger.shown[place], key) is not None:
+            ledger.column = key
             ledger.go(place)
             app.tell()
             return

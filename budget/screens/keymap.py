@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import difflib
 import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
@@ -22,13 +23,13 @@ SAME_IN_A_TERMINAL: Mapping[str, str] = {
 """Keys that a plain terminal can't tell apart."""
 
 _SIGNS: Mapping[str, str] = {
-    **{"/": "slash", "?": "question_mark", ":": "colon", "=": "equals_sign", "+": "plus", "-": "minus"},
-    **{"[": "left_square_bracket", "]": "right_square_bracket", "{": "left_curly_bracket"},
-    **{"}": "right_curly_bracket", "(": "left_parenthesis", ")": "right_parenthesis", "<": "less_than_sign"},
-    **{">": "greater_than_sign", "!": "exclamation_mark", ".": "full_stop", ",": "comma", ";": "semicolon"},
-    **{"*": "asterisk", "#": "number_sign", "&": "ampersand", "%": "percent_sign", "@": "at", "_": "underscore"},
-    **{"'": "apostrophe", '"': "quotation_mark", "\\": "backslash", "|": "vertical_line", "~": "tilde"},
-    **{"$": "dollar_sign", "^": "circumflex_accent", "`": "grave_accent", " ": "space"},
+    "/": "slash", "?": "question_mark", ":": "colon", "=": "equals_sign", "+": "plus", "-": "minus",
+    "[": "left_square_bracket", "]": "right_square_bracket", "{": "left_curly_bracket",
+    "}": "right_curly_bracket", "(": "left_parenthesis", ")": "right_parenthesis", "<": "less_than_sign",
+    ">": "greater_than_sign", "!": "exclamation_mark", ".": "full_stop", ",": "comma", ";": "semicolon",
+    "*": "asterisk", "#": "number_sign", "&": "ampersand", "%": "percent_sign", "@": "at", "_": "underscore",
+    "'": "apostrophe", '"': "quotation_mark", "\\": "backslash", "|": "vertical_line", "~": "tilde",
+    "$": "dollar_sign", "^": "circumflex_accent", "`": "grave_accent", " ": "space",
 }
 _SPELLED = {name: sign for sign, name in _SIGNS.items() if sign != " "}
 _NAMED = frozenset(
@@ -148,7 +149,5 @@ def _by_place(draft: _Draft) -> dict[Place, dict[str, str]]:
 
 
 def _nearest(word: str, known: Iterable[str]) -> str:
-    import difflib
-
     close = difflib.get_close_matches(word, list(known), n=1, cutoff=0.5)
     return f"did you mean {close[0]}?" if close else "the command list names them"

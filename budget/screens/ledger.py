@@ -9,7 +9,7 @@ from budget.description.finding import Path
 from budget.screens.columns import MARK, Placed, fit_figure, place_columns
 from budget.screens.field import Field
 from budget.screens.lines import Lines, Piece
-from budget.screens.rows import EMPTY, FOLDED_SIGN, DEEPEST_INDENT, INDEX_SIGN, Row, View, tree, visible
+from budget.screens.rows import DEEPEST_INDENT, EMPTY, FOLDED_SIGN, INDEX_SIGN, Row, View, tree, visible
 from budget.screens.safe import clip, fit, width_of
 from budget.screens.themes import Theme
 
@@ -19,7 +19,7 @@ HEAD = 2
 
 @dataclass(frozen=True, slots=True)
 class Mark:
-    """Where the cursor is, in words that survive a change of the run: the row's keys, the rows around it, the column."""
+    """Where the cursor is, so that it can be found after a change: the row's keys, its place, the column."""
 
     path: Path
     place: int = 0
@@ -28,8 +28,6 @@ class Mark:
 
 class Ledger(Lines):
     """The home screen. It holds cursor, scroll and fold state, and nothing else."""
-
-    can_focus = True
 
     def __init__(self, theme: Theme, view: View) -> None:
         """Show a view, with the cursor on the first row."""
@@ -145,7 +143,7 @@ class Ledger(Lines):
         if place >= len(self.shown):
             return ()
         if place == self.cursor and self.field is not None:
-            return self._written_in(self.shown[place], width)
+            return self._written_in(self.shown[place], self.field, width)
         return self._row(self.shown[place], current=place == self.cursor)
 
     def on_resize(self) -> None:
@@ -181,10 +179,10 @@ class Ledger(Lines):
             roles = f"{cell.role} {base}"
             if current and key == self.column:
                 roles = f"{cell.role} cursor"
-            text = self._id(row, cell.text, placed.width - 1) if key == "id" else cell.text
+            text = self._indented(row, cell.text, placed.width - 1) if key == "id" else cell.text
             yield _aligned(_fitting(text, placed), placed, cell.sign or " "), roles
 
-    def _id(self, row: Row, text: str, width: int) -> str:
+    def _indented(self, row: Row, text: str, width: int) -> str:
         indent = " " * min(row.depth, DEEPEST_INDENT)
         fold = FOLDED_SIGN if row.branch and row.kind != "item" and row.id in self.folded else ""
         return clip(indent + fold + text, width)
@@ -192,11 +190,10 @@ class Ledger(Lines):
     def _on_index(self, row: Row) -> bool:
         return row.kind in ("section", "terminal") and self.view.on_index(row)
 
-    def _written_in(self, row: Row, width: int) -> Iterator[Piece]:
+    def _written_in(self, row: Row, field: Field, width: int) -> Iterator[Piece]:
         """Spell the row of the cursor with the field in its cell, and what is wrong with it beside."""
-        assert self.field is not None
         place = next((placed for placed in self.placed if placed.column.key == self.column), self.placed[0])
-        need = min(max(place.width, width_of(self.field.text) + 2), width - MARK)
+        need = min(max(place.width, width_of(field.text) + 2), width - MARK)
         start = max(MARK, min(place.end - need if not place.column.left else place.x, width - need))
         pieces = list(self._row(row, current=True))
         left, x = [], 0
@@ -207,7 +204,7 @@ class Ledger(Lines):
             x += width_of(text)
         yield from left
         yield " " * (start - x), "row"
-        yield from field_pieces(self.field, need)
+        yield from field_pieces(field, need)
         x = start + need
         if self.problem:
             yield fit(f" {self.problem}", max(0, width - x)), "error"

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from budget.description.finding import Level, Path
+from budget.screens.chooser import Choice, Offer
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
 from budget.screens.rows import Row
@@ -144,8 +145,6 @@ def next_match(app: BudgetApp, direction: int) -> None:
 
 def go_to(app: BudgetApp) -> None:
     """Offer every ID to go to."""
-    from budget.screens.chooser import Choice, Offer
-
     view = app.ledger.view
     rows = [row for row in app.ledger.rows if row.kind != "item"]
     choices = [

@@ -5,11 +5,13 @@ from __future__ import annotations
 import unicodedata
 from functools import lru_cache
 
+from rich.cells import get_character_cell_size
+
 UNKNOWN = "\N{REPLACEMENT CHARACTER}"
 
 _ASCII = str.maketrans({
-    **{"»": ">", "█": "#", "░": "-", "▓": "#", "▒": "=", "▸": ">", "…": "~", "·": ".", "→": ">", "×": "x"},
-    **{"−": "-", "±": "~", "²": "2", "³": "3", "°": "o", "µ": "u", "μ": "u", "Δ": "D", UNKNOWN: "?", "\xa0": " "},
+    "»": ">", "█": "#", "░": "-", "▓": "#", "▒": "=", "▸": ">", "…": "~", "·": ".", "→": ">", "×": "x",
+    "−": "-", "±": "~", "²": "2", "³": "3", "°": "o", "µ": "u", "μ": "u", "Δ": "D", UNKNOWN: "?", "\xa0": " ",
     **dict.fromkeys("─━╌╍┄┅═▁▔‾", "-"),
     **dict.fromkeys("│┃║▏▎▍▌▐▕╎┆", "|"),
     **dict.fromkeys("┌┐└┘├┤┬┴┼╭╮╰╯╔╗╚╝╠╣╦╩╬┏┓┗┛┣┫┳┻╋", "+"),
@@ -105,8 +107,6 @@ def _is_steady(c: str) -> bool:
 
 
 def _cells(c: str) -> int:
-    from rich.cells import get_character_cell_size
-
     return get_character_cell_size(c)
 
 

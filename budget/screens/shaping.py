@@ -6,6 +6,7 @@ import re
 import tomllib
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Any, Literal
 
 from budget.description.edits import AddTable, CopyTable, Edit, MoveTable, RemoveTable, SetValue, Several
@@ -24,7 +25,7 @@ _COPIED_TO_A_TERMINAL = (
 _NUMBER_AT_END = re.compile(r"(\d+)(\D*)$")
 
 
-class CannotShape(ValueError):
+class ShapingError(ValueError):
     """A change of shape that makes no sense here; the text says why."""
 
 
@@ -40,20 +41,20 @@ class Change:
 def add_section(text: str, description: Description, rows: tuple[Row, ...], place: int, where: Where) -> Change:
     """Add a section after a row (between it and what hangs on it), before it, or beneath it as a new branch.
 
-    After means farther from the source. It takes its size and length from its neighbour. Raises CannotShape on a
+    After means farther from the source. It takes its size and length from its neighbour. Raises ShapingError on a
     terminal's far side and on the near side of a source.
     """
     row = rows[place]
     side = _side(description, row)
     if row.kind == "source" and where == "before":
-        raise CannotShape("nothing comes before a source; add after or beneath it")
+        raise ShapingError("nothing comes before a source; add after or beneath it")
     if row.kind == "terminal" and where != "before":
-        raise CannotShape("nothing hangs on a terminal; add before it")
+        raise ShapingError("nothing hangs on a terminal; add before it")
     id_ = new_id("S1" if row.kind == "source" else _section_like(description, row), _taken(description))
     path: Path = ("section", id_)
     parent = row.id if where != "before" else (_held_by(description, row) or "")
     if not parent:
-        raise CannotShape(f"{row.id} hangs on nothing; write what it hangs on first")
+        raise ShapingError(f"{row.id} hangs on nothing; write what it hangs on first")
     model = _section_model(description, row)
     values = {side: parent, **_copied(text, model, _COPIED_TO_A_SECTION)}
     if not ({"size", "bore"} & set(values)):
@@ -85,7 +86,7 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
     else:
         parent, side = row.id, _side(description, row)
     if not parent:
-        raise CannotShape(f"{row.id} hangs on nothing; write what it hangs on first")
+        raise ShapingError(f"{row.id} hangs on nothing; write what it hangs on first")
     id_ = new_id(sibling.id if sibling else "T1", _taken(description), itself=sibling is None)
     path: Path = ("terminal", id_)
     values: dict[str, Any] = {side: parent}
@@ -105,7 +106,7 @@ def duplicate(text: str, description: Description, rows: tuple[Row, ...], place:
     if row.kind == "item":
         return _duplicate_item(text, row)
     if row.kind == "source":
-        raise CannotShape("a source can't be duplicated; duplicate a branch of it")
+        raise ShapingError("a source can't be duplicated; duplicate a branch of it")
     taken = set(_taken(description))
     names: dict[str, str] = {}
     branch = (row, *beneath(rows, place))
@@ -124,7 +125,7 @@ def duplicate(text: str, description: Description, rows: tuple[Row, ...], place:
     return Change(Several(tuple(copies)), label, (row.path[0], names[row.id]))
 
 
-def delete(text: str, description: Description, rows: tuple[Row, ...], place: int) -> Change:
+def delete(text: str, _description: Description, rows: tuple[Row, ...], place: int) -> Change:
     """Delete a row with everything that hangs on it; what cases say of it goes too."""
     row = rows[place]
     if row.kind == "item":
@@ -148,7 +149,7 @@ def parents_for(description: Description, rows: tuple[Row, ...], place: int) -> 
     """Return the IDs on which the branch of a row can hang: sources and sections that don't hang on it."""
     row = rows[place]
     if row.kind in ("source", "item"):
-        raise CannotShape("only a section or a terminal can be moved")
+        raise ShapingError("only a section or a terminal can be moved")
     own = {row.id, *(part.id for part in beneath(rows, place))}
     side = _side(description, row)
     sections = (s.id for s in description.sections.values() if (s.from_ is not None) == (side == "from"))
@@ -159,7 +160,7 @@ def shift(text: str, description: Description, rows: tuple[Row, ...], place: int
     """Move a branch in the file before or behind its neighbour on the same section."""
     row = rows[place]
     if row.kind == "item":
-        raise CannotShape("items keep their order; move the section")
+        raise ShapingError("items keep their order; move the section")
     neighbours = [
         other
         for other in rows
@@ -169,7 +170,7 @@ def shift(text: str, description: Description, rows: tuple[Row, ...], place: int
     ]
     at = neighbours.index(row) + step
     if not 0 <= at < len(neighbours):
-        raise CannotShape(f"{row.id} is the {'first' if step < 0 else 'last'} of its neighbours")
+        raise ShapingError(f"{row.id} is the {'first' if step < 0 else 'last'} of its neighbours")
     other = neighbours[at]
     branch = (row, *beneath(rows, place))
     if step < 0:
@@ -178,7 +179,7 @@ def shift(text: str, description: Description, rows: tuple[Row, ...], place: int
         behind = (other, *beneath(rows, rows.index(other)))
         anchor = max((part.path for part in behind), key=lambda path: _start(text, path))
         chain = [anchor, *(part.path for part in branch)]
-        edits = tuple(MoveTable(path, after=before) for before, path in zip(chain, chain[1:], strict=False))
+        edits = tuple(MoveTable(path, after=before) for before, path in pairwise(chain))
     return Change(Several(edits), f"move {row.id} {'up' if step < 0 else 'down'}", row.path)
 
 
@@ -230,14 +231,14 @@ def _section_like(description: Description, row: Row) -> str:
     if row.id in description.sections:
         return row.id
     held = _held_by(description, row)
-    return held if held in description.sections else next(reversed(description.sections), "S1")
+    return held if held is not None and held in description.sections else next(iter(description.sections), "S1")
 
 
 def _section_model(description: Description, row: Row) -> Path | None:
     if row.id in description.sections:
         return row.path
     held = _held_by(description, row)
-    if held in description.sections:
+    if held is not None and held in description.sections:
         return ("section", held)
     first = next((s for s in description.sections.values() if row.id in (s.from_, s.to)), None)
     return first.path if first else None
@@ -310,6 +311,16 @@ def _without_in_cases(text: str, gone: set[str]) -> list[Edit]:
 
 
 __all__ = [
-    "CannotShape", "Change", "Where", "add_section", "add_terminal", "delete", "duplicate", "is_stated", "new_id",
-    "parents_for", "rehang", "shift",
+    "Change",
+    "ShapingError",
+    "Where",
+    "add_section",
+    "add_terminal",
+    "delete",
+    "duplicate",
+    "is_stated",
+    "new_id",
+    "parents_for",
+    "rehang",
+    "shift",
 ]  # fmt: skip

@@ -15,20 +15,25 @@ class TextScreen(TextArea):
         """Make an empty editor without a blinking cursor."""
         super().__init__(id="text", soft_wrap=False, show_line_numbers=True, tab_behavior="focus")
         self.cursor_blink = False
+        self._opened = ""
 
     def open(self, text: str, row: Row | None) -> None:
         """Show a text, with the cursor on a row's table."""
-        if text != self.text:
-            self.load_text(text)
+        self.load_text(text)
+        self._opened = self.text
         header = index_of(text).header(row.path) if row is not None else None
         if header is not None:
             self.go_to_line(text.count("\n", 0, header.start) + 1)
         self.focus()
 
     @property
-    def content(self) -> str:
-        """What is written now, with the line ends that the file has."""
-        return self.text
+    def changed(self) -> bool:
+        """Whether something was written that is not in the design yet."""
+        return self.text != self._opened
+
+    def taken(self) -> None:
+        """Remember that what is written now is in the design."""
+        self._opened = self.text
 
     def go_to_line(self, line: int) -> None:
         """Put the cursor at the start of a line, counted from 1."""

@@ -11,12 +11,10 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
-from typing import TYPE_CHECKING
 
-if TYPE_CHECKING:
-    from rich.color import ColorSystem
-    from rich.style import Style
-    from textual.theme import Theme as WidgetTheme
+from rich.color import ColorSystem
+from rich.errors import StyleSyntaxError
+from rich.style import Style
 
 TERMINAL = "terminal"
 """The built-in theme: the terminal's own colours, with bold, reverse and a colour or two that any palette has."""
@@ -50,8 +48,8 @@ _FAINT = frozenset({"faint", "rest", "bar"})
 
 _TERMINAL_STYLES: Mapping[str, str] = {
     **dict.fromkeys(ROLES, ""),
-    **{"heading": "bold", "index": "magenta", "over": "bold red", "error": "bold red", "warning": "red"},
-    **{"good": "bold", "row": "bold", "cursor": "reverse", "field": "reverse", "key": "bold", "title": "bold"},
+    "heading": "bold", "index": "magenta", "over": "bold red", "error": "bold red", "warning": "red",
+    "good": "bold", "row": "bold", "cursor": "reverse", "field": "reverse", "key": "bold", "title": "bold",
 }
 
 
@@ -68,36 +66,6 @@ class Theme:
     def whole(self, role: str) -> Style:
         """Return the style of a role with the background on which it stands."""
         return self.styles["text"] + self.styles[role]
-
-    def widget_theme(self) -> WidgetTheme:
-        """Return the same colours for the widgets of the toolkit: the text field and the manual."""
-        from textual.theme import Theme as WidgetTheme
-
-        if self.follows_terminal:
-            return _terminal_widgets(self.name)
-        text, cursor, field, row = (self.whole(role) for role in ("text", "cursor", "field", "row"))
-        return WidgetTheme(
-            name=self.name,
-            primary=_hex(self.whole("index")),
-            secondary=_hex(self.whole("title")),
-            accent=_hex(self.whole("key")),
-            warning=_hex(self.whole("warning")),
-            error=_hex(self.whole("error")),
-            success=_hex(self.whole("good")),
-            foreground=_hex(text),
-            background=_hex(text, back=True),
-            surface=_hex(text, back=True),
-            panel=_hex(row, back=True),
-            dark=self.dark,
-            variables={
-                "block-cursor-foreground": _hex(cursor),
-                "block-cursor-background": _hex(cursor, back=True),
-                "input-cursor-foreground": _hex(cursor),
-                "input-cursor-background": _hex(cursor, back=True),
-                "input-selection-foreground": _hex(field),
-                "input-selection-background": _hex(field, back=True),
-            },
-        )
 
 
 def shipped_folder() -> Path:
@@ -157,8 +125,6 @@ def read_theme(text: str, name: str) -> tuple[Theme | None, tuple[str, ...]]:
 @cache
 def terminal_theme() -> Theme:
     """Return the built-in theme, which leaves the colours to the terminal."""
-    from rich.style import Style
-
     styles = {role: Style.parse(words) for role, words in _TERMINAL_STYLES.items()}
     return Theme(TERMINAL, "The terminal's own colours", True, styles, follows_terminal=True)
 
@@ -175,10 +141,14 @@ def contrast(style: Style, system: ColorSystem | None = None) -> float:
     return (lighter + 0.05) / (darker + 0.05)
 
 
-def _read_style(role: str, words: object, problems: list[str]) -> Style:
-    from rich.errors import StyleSyntaxError
-    from rich.style import Style
+def hex_of(style: Style, *, back: bool = False) -> str:
+    """Return the colour of a style's text, or of its background, as `#rrggbb`."""
+    red, green, blue = _triplet(style, None, back=back)
+    return f"#{int(red):02x}{int(green):02x}{int(blue):02x}"
 
+
+
+def _read_style(role: str, words: object, problems: list[str]) -> Style:
     try:
         style = Style.parse(words if isinstance(words, str) else "?")
     except StyleSyntaxError:
@@ -217,16 +187,3 @@ def _luminance(triplet: tuple[float, float, float]) -> float:
         for part in (channel / 255.0 for channel in triplet)
     )
     return 0.2126 * red + 0.7152 * green + 0.0722 * blue
-
-
-def _hex(style: Style, *, back: bool = False) -> str:
-    red, green, blue = _triplet(style, None, back=back)
-    return f"#{int(red):02x}{int(green):02x}{int(blue):02x}"
-
-
-def _terminal_widgets(name: str) -> WidgetTheme:
-    from dataclasses import replace
-
-    from textual.theme import BUILTIN_THEMES
-
-    return replace(BUILTIN_THEMES["ansi-dark"], name=name)

@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, cast
 
-from budget.description.finding import Level, dotted
+from budget.description.finding import Level, Path, dotted
+from budget.report.located import Located
 from budget.screens import changing, entering, moving
 from budget.screens.actions import ACTIONS, Place
 from budget.screens.chooser import Choice, Chooser, Offer
-from budget.screens.field import Field
+from budget.screens.detail import lines_of
+from budget.screens.picking import offer_for
 from budget.screens.rows import Row
-from budget.screens.safe import clip, plain
+from budget.screens.safe import plain
+from budget.screens.writing import key_of_cell
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -52,9 +55,8 @@ def show_detail(app: BudgetApp) -> None:
 
 
 def _detail(app: BudgetApp, row: Row) -> Offer:
-    from budget.screens.detail import lines_of
-
-    choices = [Choice((line.label, line.text), line.path, line.role) for line in lines_of(app.ledger.view.snapshot, row)]
+    lines = lines_of(app.ledger.view.snapshot, row)
+    choices = [Choice((line.label, line.text), line.path, line.role) for line in lines]
     return Offer("Row detail", ("", ""), choices, lambda _: None, filters=False)
 
 
@@ -110,19 +112,15 @@ def _findings(app: BudgetApp) -> Offer:
     found = app.ledger.view.snapshot.findings
     ranked = sorted(found, key=lambda finding: list(Level).index(finding.level))
     choices = [
-        Choice((finding.level.value, str(finding.line), plain(finding.table), plain(finding.message)), finding, finding.level.value)
-        for finding in ranked
+        Choice((f.level.value, str(f.line), plain(f.table), plain(f.message)), f, f.level.value) for f in ranked
     ]
     return Offer(
-        "Findings", ("", "line", "where", "what"), choices, lambda value: _to_finding(app, value),
+        "Findings", ("", "line", "where", "what"), choices, lambda value: _to_finding(app, cast("Located", value)),
         filters=False, empty="nothing is wrong or doubtful",
     )  # fmt: skip
 
 
-def _to_finding(app: BudgetApp, value: object) -> None:
-    from budget.report.located import Located
-
-    assert isinstance(value, Located)
+def _to_finding(app: BudgetApp, value: Located) -> None:
     app.turn_to("ledger")
     shown = value.path[:4] if len(value.path) > 3 and value.path[2] == "item" else value.path[:2]
     if not app.ledger.go_to(shown, moving.column_of(value.path)):
@@ -133,6 +131,43 @@ def _to_finding(app: BudgetApp, value: object) -> None:
 
 
 # Lists
+
+
+def pick(app: BudgetApp) -> None:
+    """Offer what can stand in the cell, or in the line of the row detail."""
+    row = app.ledger.row
+    if app.at == "detail":
+        marked = app.choosers["detail"].marked
+        path = marked.value if marked is not None and isinstance(marked.value, tuple) else None
+    else:
+        path = key_of_cell(app.document.snapshot.text, row, app.ledger.column) if row is not None else None
+    if path is not None and row is not None and path == row.path:
+        changing.move(app)
+        return
+    _offer_for(app, path)
+
+
+def pick_key(app: BudgetApp, key: str) -> None:
+    """Offer what can stand at a key of the row under the cursor."""
+    row = app.ledger.row
+    _offer_for(app, (*row.path[:2], key) if row is not None else None)
+
+
+def pick_instead(app: BudgetApp) -> None:
+    """Turn from writing a value to picking it."""
+    entry = app.entry
+    if entry is None or not entry.path:
+        return
+    entering.leave(app)
+    _offer_for(app, entry.path)
+
+
+def _offer_for(app: BudgetApp, path: Path | None) -> None:
+    offer = offer_for(app, path) if path is not None else None
+    if offer is None:
+        app.say("there is no list for this; Enter writes it", "note")
+    else:
+        app.offer(offer)
 
 
 def choose(app: BudgetApp) -> None:
@@ -170,12 +205,10 @@ def write(app: BudgetApp, key: str, character: str | None) -> bool:
 
 def show_commands(app: BudgetApp) -> None:
     """List every action that works here, with its keys."""
-    from budget.screens.doing import DOINGS
-
     here: Place = app.at if app.at != "list" else "ledger"
     actions = [a for a in ACTIONS if here in a.places and a.id not in ("up", "down", "left", "right", "commands")]
     choices = [Choice((a.title, app.keymap.shown(a.id, 3), a.id), a.id) for a in actions]
-    app.offer(Offer("do", ("", "key", "name in the config"), choices, lambda name: DOINGS[str(name)](app)))
+    app.offer(Offer("do", ("", "key", "name in the config"), choices, lambda name: app.do(str(name))))
 
 
 # Text and manual
@@ -190,7 +223,8 @@ def show_text(app: BudgetApp) -> None:
 def apply_text(app: BudgetApp) -> bool:
     """Put the text into the document, as one undo step; False, with the reason, where it is not TOML."""
     before = app.document.snapshot
-    after = app.document.replace_text(app.text.content, "edit the text", app.ledger.mark)
+    after = app.document.replace_text(app.text.text, "edit the text", app.ledger.mark)
+    app.text.taken()
     app.show(after, before)
     if after.readable:
         app.say("the text was taken into the design")
@@ -208,7 +242,7 @@ def undo_text(app: BudgetApp) -> None:
 
 def show_manual(app: BudgetApp) -> None:
     """List the pages of the manual; Enter opens one."""
-    from budget.screens.manual import pages
+    from budget.screens.manual import pages  # noqa: PLC0415 - heavy, and seldom needed
 
     found = pages()
     if not found:
@@ -224,7 +258,7 @@ def show_manual(app: BudgetApp) -> None:
 
 def back(app: BudgetApp) -> None:
     """Go back to the ledger; a changed text is taken into the design first."""
-    if app.at == "text" and app.text.content != app.document.snapshot.text and not apply_text(app):
+    if app.at == "text" and app.text.changed and not apply_text(app):
         return
     app.turn_to("ledger")
 
@@ -234,14 +268,14 @@ def back(app: BudgetApp) -> None:
 
 def save(app: BudgetApp) -> None:
     """Save the run; on the Text screen, what is written there."""
-    if app.at == "text" and app.text.content != app.document.snapshot.text and not apply_text(app):
+    if app.at == "text" and app.text.changed and not apply_text(app):
         return
     changing.save(app)
 
 
 def leave_app(app: BudgetApp) -> None:
     """Quit; where the run is not saved, ask first."""
-    if app.at == "text" and app.text.content != app.document.snapshot.text and not apply_text(app):
+    if app.at == "text" and app.text.changed and not apply_text(app):
         return
     if not app.document.dirty:
         app.exit(0)
@@ -262,6 +296,3 @@ def _quit(app: BudgetApp, value: object) -> None:
 def suspend(app: BudgetApp) -> None:
     """Go to the shell; `fg` comes back."""
     app.action_suspend_process()
-
-
-__all__ = ["Field", "clip"]

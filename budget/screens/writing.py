@@ -58,7 +58,7 @@ _WHERE: Mapping[str, tuple[str, ...]] = {
 """By kind of row the columns that can be edited, besides the ID."""
 
 
-class WrittenWrong(ValueError):
+class WritingError(ValueError):
     """What was typed can't stand there; the text says what would be right."""
 
 
@@ -108,7 +108,7 @@ def value_of(typed: str, path: Path, before: str) -> Any:
     """Return the value that a typed text means at a key, of the kind that the key takes.
 
     `before` is the value as it is written now: where it is a number, a typed number becomes one, else a text.
-    Raises WrittenWrong where the text can't be such a value.
+    Raises WritingError where the text can't be such a value.
     """
     spec, text = spec_of(path), typed.strip()
     match spec:
@@ -120,7 +120,7 @@ def value_of(typed: str, path: Path, before: str) -> Any:
             return _number(text) if _NUMBER.fullmatch(text) and _NUMBER.fullmatch(before) else text
         case Flag():
             if text not in ("true", "false"):
-                raise WrittenWrong("write true or false")
+                raise WritingError("write true or false")
             return text == "true"
         case Text() | Choice():
             return text
@@ -129,7 +129,7 @@ def value_of(typed: str, path: Path, before: str) -> Any:
     try:
         return tomllib.loads(f"x = {text}")["x"]
     except tomllib.TOMLDecodeError:
-        raise WrittenWrong(f"write it as in the file, {_example(spec)}") from None
+        raise WritingError(f"write it as in the file, {_example(spec)}") from None
 
 
 def spec_of(path: Path) -> Spec | None:
@@ -185,7 +185,7 @@ def index_of(text: str) -> SpanIndex:
 
 def _number(text: str) -> int | float:
     if not _NUMBER.fullmatch(text):
-        raise WrittenWrong("write a plain number" if text else "write a number")
+        raise WritingError("write a plain number" if text else "write a number")
     return int(text) if re.fullmatch(r"[+-]?[0-9]+", text) else float(text)
 
 

@@ -213,6 +213,7 @@ def item_drop(item: Table, mass: float, place: Table, terms: Terms, key: str = "
     them at design flow.
     """
     density = place["density"]
+    terms = (*terms[:2], density)  # a head is that of the fluid in the leg
     share = mass / item.get("parallel", 1)
     volume = share / density
     if "k" in item:
@@ -250,6 +251,7 @@ def table_of(device: Table) -> tuple[str, list[tuple[float, float]]] | None:
 
 def base_drop(device: Table, mass: float, place: Table, terms: Terms) -> float:
     """The larger of the drop fully open at design flow and the least drop."""
+    terms = (*terms[:2], place["density"])
     least = measure(device["least_drop"], "pressure", *terms) if "least_drop" in device else 0.0
     table = table_of(device)
     if table is None:

@@ -128,7 +128,7 @@ def system_of(net: Table, name: str) -> System:
     """The system that a section, with its device, stands in."""
     section = net["sections"][name]
     if section["main"] == "out":
-        guards = guards_on(net, climb(net["parent"], (name, "out"))[1:])
+        guards = guards_on(net, climb(net["parent"], (name, "out"))[:0:-1])
         return guards[-1] if guards else (section["source"], "out")
     out, back = net["paths"][section["serves"][0]]
     for guard in reversed(guards_on(net, out)):
@@ -226,8 +226,6 @@ def held(net: Table, member: str) -> float:
         section = net["sections"][way[0]]
         main = way[1] == section["main"]
         covered = any(is_behind(net, way, position, carrier, path) for carrier in carriers)
-        if on_terminal and not net["gas"] and section["main"] == way[1] == "back":
-            covered = covered or net["users"][way] == [member]
         if covered:
             total += net["weight"][way] - (section["static"] if main else 0.0)
         elif main and holds(section["device"], "differential"):

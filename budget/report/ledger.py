@@ -1,0 +1,282 @@
+"""The tables of a report: the run as an indented ledger, its terminals, its balancing devices, its fittings."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+
+from budget.catalogue.provenance import how_known
+from budget.description import Description, Item, Run
+from budget.network import Budget, DeviceResult, ItemResult, RunResult, SectionResult, TerminalResult
+from budget.report.figures import Figures, plain_number
+from budget.report.plain import plain
+from budget.report.table import Column, table, wrapped
+from budget.report.tree import hang
+from budget.units import Dimension
+
+DEEPEST_INDENT = 20
+"""Levels; a row that hangs deeper says its level in brackets."""
+
+INDEX = "index"
+"""The sign of the index circuit, a word so that it can be heard as well."""
+
+_LEGEND = (
+    "sum: along the largest circuit through the row, from the source, devices fully open. diff.: what is available at "
+    "the connection of the row. margin: what could be added there before the index circuit moves. vel. and grad.: of "
+    "the supply leg where there are two. Of a terminal, sum is its whole circuit and drop its own."
+)
+
+
+def ledger(description: Description, budget: Budget, figures: Figures) -> list[str]:
+    """Return the run as an indented tree, a row for each source, item, section, terminal and run-out."""
+    pressure = figures.unit(Dimension.PRESSURE)
+    columns = [
+        Column("", left=True),
+        Column("size", left=True),
+        Column("length", figures.unit(Dimension.LENGTH)),
+        Column("flow", figures.unit(Dimension.FLOW)),
+        Column("vel.", figures.unit(Dimension.VELOCITY)),
+        Column("grad.", figures.unit(Dimension.GRADIENT)),
+        Column("drop", pressure),
+        Column("sum", pressure),
+        Column("diff.", pressure),
+        Column("margin", pressure),
+        Column("", left=True),
+    ]
+    return [
+        *table(columns, _Rows(description, budget, figures).all()),
+        *wrapped(_LEGEND, "  ", "  "),
+    ]
+
+
+class _Rows:
+    """The rows of the ledger."""
+
+    def __init__(self, description: Description, budget: Budget, figures: Figures) -> None:
+        self.description, self.budget, self.figures = description, budget, figures
+        tree = tuple(hang(description))
+        self.tree = tree
+        self.step = "  " if max((one.depth for one in tree), default=0) <= 6 else " "
+
+    def all(self) -> Iterator[tuple[str, ...]]:
+        for id_, depth in self.tree:
+            if id_ in self.description.sources:
+                yield from self._source(id_, depth)
+            elif id_ in self.description.sections:
+                yield from self._section(id_, depth)
+            elif id_ in self.description.terminals:
+                yield from self._terminal(id_, depth)
+
+    def _source(self, id_: str, depth: int) -> Iterator[tuple[str, ...]]:
+        source, result = self.description.sources[id_], self.budget.sources.get(id_)
+        flow = self.figures.flow(result.flow, result.mass_flow) if result else ""
+        yield self._row(self._name(id_, depth), flow=flow)
+        density = result.fluid.density if result else None
+        yield from self._items(source.items, result.items if result else (), depth, density)
+
+    def _section(self, id_: str, depth: int) -> Iterator[tuple[str, ...]]:
+        section, result = self.description.sections[id_], self.budget.sections.get(id_)
+        cells = self._run(section.run, result.run if result else None)
+        density = self._density(result)
+        if result is not None:
+            cells["sum"] = self.figures.pressure(result.cumulative, density)
+            cells["differential"] = self.figures.pressure(result.differential, density)
+            cells["margin"] = self.figures.pressure(result.margin, density)
+            cells["index"] = INDEX if result.index else ""
+            cells["drop"] = self.figures.pressure(result.run.drop, density)
+        yield self._row(self._name(id_, depth), **cells)
+        yield from self._items(section.items, result.items if result else (), depth, density)
+
+    def _terminal(self, id_: str, depth: int) -> Iterator[tuple[str, ...]]:
+        terminal, result = self.description.terminals[id_], self.budget.terminals.get(id_)
+        density = self._density(result)
+        cells = {}
+        if result is not None:
+            cells = {
+                "flow": self.figures.flow(result.flow, result.mass_flow),
+                "drop": self.figures.pressure(result.drop, density),
+                "sum": self.figures.pressure(result.circuit, density),
+                "differential": self.figures.pressure(result.differential, density),
+                "margin": self.figures.pressure(result.margin, density),
+                "index": INDEX if result.index else "",
+            }
+        yield self._row(self._name(id_, depth), **cells)
+        if terminal.run is not None:
+            cells = self._run(terminal.run, result.run_out if result else None)
+            if result is not None and result.run_out is not None:
+                cells["drop"] = self.figures.pressure(result.run_out.drop, density)
+            yield self._row(self._indented("- run-out", depth + 1), **cells)
+        yield from self._items(terminal.items, result.items if result else (), depth, density)
+
+    def _items(
+        self, items: tuple[Item, ...], results: tuple[ItemResult, ...], depth: int, density: float | None
+    ) -> Iterator[tuple[str, ...]]:
+        for place, item in enumerate(items):
+            sizes = [f"{name} {plain_number(v)}" for name, v in (("Kv", item.kv), ("k", item.k)) if v is not None]
+            drop = results[place].drop if place < len(results) else None
+            yield self._row(
+                self._indented(f"- {plain(item.name)}", depth + 1),
+                size="".join(sizes),
+                length=self.figures.text(item.equivalent_length, Dimension.LENGTH) if item.equivalent_length else "",
+                drop=self.figures.pressure(drop, density),
+            )
+
+    def _run(self, run: Run, result: RunResult | None) -> dict[str, str]:
+        cells = {
+            "size": plain(run.geometry.label) if run.geometry else "-",
+            "length": self.figures.text(run.length, Dimension.LENGTH),
+        }
+        if result is not None and result.legs:
+            leg = result.legs[0]
+            cells["flow"] = self.figures.flow(result.flow, result.mass_flow)
+            cells["velocity"] = self.figures.text(leg.velocity, Dimension.VELOCITY)
+            cells["gradient"] = self.figures.text(leg.gradient, Dimension.GRADIENT)
+        return cells
+
+    def _density(self, result: SectionResult | TerminalResult | None) -> float | None:
+        return self.budget.sources[result.source].fluid.density if result is not None else None
+
+    def _name(self, id_: str, depth: int) -> str:
+        return self._indented(plain(id_), depth)
+
+    def _indented(self, text: str, depth: int) -> str:
+        if depth > DEEPEST_INDENT:
+            return f"{self.step * DEEPEST_INDENT}[{depth}] {text}"
+        return self.step * depth + text
+
+    @staticmethod
+    def _row(
+        name: str,
+        *,
+        size: str = "",
+        length: str = "",
+        flow: str = "",
+        velocity: str = "",
+        gradient: str = "",
+        drop: str = "",
+        sum: str = "",  # noqa: A002 - the column's name
+        differential: str = "",
+        margin: str = "",
+        index: str = "",
+    ) -> tuple[str, ...]:
+        return (name, size, length, flow, velocity, gradient, drop, sum, differential, margin, index)
+
+
+def terminals(budget: Budget, figures: Figures) -> list[str]:
+    """Return the circuit of every terminal: what it is made of, its margin, what remains, its authority."""
+    pressure = figures.unit(Dimension.PRESSURE)
+    columns = [
+        Column("terminal", left=True),
+        Column("flow", figures.unit(Dimension.FLOW)),
+        Column("own", pressure),
+        Column("items", pressure, optional=True),
+        Column("run-out", pressure, optional=True),
+        Column("static", pressure, optional=True),
+        Column("circuit", pressure),
+        Column("margin", pressure),
+        Column("excess", pressure),
+        Column("authority", optional=True),
+        Column("low", optional=True),
+        Column("", left=True),
+    ]
+    rows = []
+    for result in budget.terminals.values():
+        density = budget.sources[result.source].fluid.density
+        values = (
+            result.drop,
+            result.items_drop if result.items else None,
+            result.run_out.drop if result.run_out else None,
+            result.static or None,
+            result.circuit,
+            result.margin,
+            result.excess,
+        )
+        rows.append((
+            plain(result.id),
+            figures.flow(result.flow, result.mass_flow),
+            *(figures.pressure(value, density) for value in values),
+            plain_number(result.authority, 2),
+            plain_number(result.authority_low, 2),
+            INDEX if result.index else "",
+        ))  # fmt: skip
+    return table(columns, rows) if rows else []
+
+
+def devices(budget: Budget, figures: Figures) -> list[str]:
+    """Return every balancing device: where it stands, its drop, its opening, its setting, its signal."""
+    pressure = figures.unit(Dimension.PRESSURE)
+    columns = [
+        Column("stands on", left=True),
+        Column("device", left=True),
+        Column("holds", left=True, optional=True),
+        Column("open", pressure),
+        Column("takes up", pressure),
+        Column("drop", pressure),
+        Column("Kv", optional=True),
+        Column("k", optional=True),
+        Column("setting"),
+        Column("signal", pressure, optional=True),
+    ]
+    rows = []
+    for id_, device, density in _devices(budget):
+        rows.append((
+            plain(id_),
+            plain(device.name),
+            _held(device, figures, density),
+            *(figures.pressure(value, density) for value in (device.base, device.take_up, device.drop)),
+            plain_number(device.kv),
+            plain_number(device.k),
+            plain_number(device.setting),
+            figures.pressure(device.signal, density),
+        ))  # fmt: skip
+    return table(columns, rows) if rows else []
+
+
+def _devices(budget: Budget) -> Iterator[tuple[str, DeviceResult, float]]:
+    carriers: Iterable[SectionResult | TerminalResult] = (*budget.sections.values(), *budget.terminals.values())
+    for result in carriers:
+        if result.device is not None:
+            yield result.id, result.device, budget.sources[result.source].fluid.density
+
+
+def _held(device: DeviceResult, figures: Figures, density: float) -> str:
+    if device.set_point is None:
+        return device.holds or ""
+    return f"{device.holds} {figures.pressure(device.set_point, density, unit=True)}"
+
+
+def fittings(budget: Budget, figures: Figures) -> list[str]:
+    """Return every fitting of the supply leg with its loss coefficient, and where the coefficients come from."""
+    columns = [
+        Column("stands on", left=True),
+        Column("count"),
+        Column("fitting", left=True),
+        Column("K of one"),
+        Column("loss", figures.unit(Dimension.PRESSURE)),
+        Column("method", left=True),
+    ]
+    rows, origins = [], {}
+    for id_, run, density in _runs(budget):
+        for loss in run.legs[0].losses if run.legs else ():
+            rows.append((
+                plain(id_),
+                str(loss.count),
+                plain(loss.name),
+                plain_number(loss.k),
+                figures.pressure(loss.drop, density),
+                plain(loss.method),
+            ))  # fmt: skip
+            known = how_known(loss.known_from) if loss.known_from else ""
+            origin = "; ".join(filter(None, (plain(loss.source), plain(known))))
+            origins[f"{plain(loss.name)}, {plain(loss.method)}: {origin or 'no source stated'}"] = None
+    if not rows:
+        return []
+    said = [line for origin in origins for line in wrapped(origin, "  ", "    ")]
+    return [*table(columns, rows), *said]
+
+
+def _runs(budget: Budget) -> Iterator[tuple[str, RunResult, float]]:
+    for section in budget.sections.values():
+        yield section.id, section.run, budget.sources[section.source].fluid.density
+    for terminal in budget.terminals.values():
+        if terminal.run_out is not None:
+            yield terminal.id, terminal.run_out, budget.sources[terminal.source].fluid.density

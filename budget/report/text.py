@@ -1,0 +1,177 @@
+"""A run's whole budget as plain text: it reads well in a terminal, in a diff and aloud."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Sequence
+
+from budget.catalogue import CATALOGUE_VERSION
+from budget.description import Description, Level
+from budget.network import HEADINGS, Budget, SourceResult
+from budget.report.caution import CAUTION
+from budget.report.figures import NONE, Figures, plain_number
+from budget.report.ledger import devices, fittings, ledger, terminals
+from budget.report.located import Located
+from budget.report.plain import plain
+from budget.report.table import Column, labelled, table, wrapped
+from budget.units import Dimension, to_unit
+
+
+def text_report(description: Description, budget: Budget, findings: Iterable[Located]) -> str:
+    """Return the report of a run: title block, summaries, ledger, terminals, devices, fittings, findings, caution."""
+    figures = Figures(description)
+    parts = [_title_block(description)]
+    parts += [_summary(description, result, figures, budget) for result in budget.sources.values()]
+    parts += [
+        _part("Ledger", ledger(description, budget, figures)),
+        _part("Terminals", terminals(budget, figures)),
+        _part("Balancing devices", devices(budget, figures)),
+        _part("Fittings", fittings(budget, figures)),
+        _part("Titles and notes", list(_remarks(description))),
+        _part("Findings", list(_findings(findings))),
+        _part("Caution", wrapped(CAUTION, "  ", "  ")),
+    ]
+    return "\n\n".join("\n".join(lines) for lines in parts if lines) + "\n"
+
+
+def finding_line(file: str, finding: Located) -> str:
+    """Return a finding as one line: file:line:column: level code: message."""
+    place = f"{plain(file)}:{finding.line}:{finding.column}"
+    return f"{place}: {finding.level.value} {finding.code}: {plain(finding.message)}"
+
+
+def source_line(file: str, description: Description, result: SourceResult) -> str:
+    """Return what a source must deliver as one line: required, duty, in hand, index terminal."""
+    figures = Figures(description)
+    density = result.fluid.density
+    said = [f"required {figures.pressure(result.required, density, unit=True)}"]
+    said.append(f"duty {figures.pressure(result.duty, density, unit=True)}")
+    if result.available is not None:
+        said.append(f"available {figures.pressure(result.available, density, unit=True)}")
+    if result.in_hand is not None:
+        said.append(f"in hand {figures.pressure(result.in_hand, density, unit=True)}")
+    said.append(f"index {', '.join(map(plain, result.index)) or NONE}")
+    return f"{plain(file)}: {plain(result.id)}: {', '.join(said)}"
+
+
+def _part(title: str, lines: Sequence[str]) -> list[str]:
+    return [title, *lines] if lines else []
+
+
+def _title_block(description: Description) -> list[str]:
+    design = description.design
+    lines = wrapped(plain(design.title) or "Untitled run")
+    pairs = [("number", plain(design.number)), ("revision", plain(design.revision)), ("note", plain(design.note))]
+    pairs += [("computed by", f"budget {_version()}, catalogue {CATALOGUE_VERSION}")]
+    return [*lines, *labelled(pairs)]
+
+
+def _version() -> str:
+    from budget import __version__
+
+    return __version__
+
+
+def _summary(description: Description, result: SourceResult, figures: Figures, budget: Budget) -> list[str]:
+    source = description.sources[result.id]
+    density = result.fluid.density
+
+    def pressure(value: float | None) -> str:
+        return "" if value is None else figures.pressure(value, density, unit=True)
+
+    duty_flow = result.mass_flow * (result.duty_flow / result.flow) if result.flow else result.mass_flow
+    pairs = [
+        ("circuit", {"closed": "liquid, closed", "open": "liquid, open", "air": "gas"}[result.kind]),
+        ("fluid", _fluid(result, figures)),
+        ("flow", figures.flow(result.flow, result.mass_flow, unit=True)),
+        ("required", pressure(result.required)),
+        ("discharge", pressure(result.discharge_required)),
+        ("suction", pressure(result.suction_required)),
+        ("static", pressure(result.static) if result.static else ""),
+        ("reserve", pressure(result.reserve)),
+        ("duty", f"{pressure(result.duty)} at {figures.flow(result.duty_flow, duty_flow, unit=True)}"),
+        ("available", pressure(result.available) or "not stated"),
+        ("in hand", pressure(result.in_hand)),
+        ("fan static", pressure(result.static_pressure) if result.kind == "air" else ""),
+        ("external total", pressure(result.external_total)),
+        ("external static", pressure(result.external_static)),
+        ("hydraulic power", _power(result.hydraulic_power, description)),
+        ("shaft power", _power(result.shaft_power, description)),
+        ("electrical power", _power(result.electrical_power, description)),
+        ("specific power", "" if result.sfp is None else f"{plain_number(result.sfp, 4)} W/(m3/s)"),
+        ("index terminal", ", ".join(map(plain, result.index)) or NONE),
+        ("index circuit", "; ".join(_circuit(budget, result.id, terminal) for terminal in result.index)),
+    ]
+    title = f": {plain(source.title)}" if source.title else ""
+    return [f"Source {plain(result.id)}{title}", *labelled(pairs), "", *_spent(result, figures)]
+
+
+def _fluid(result: SourceResult, figures: Figures) -> str:
+    fluid = result.fluid
+    density, viscosity = Dimension.DENSITY, Dimension.VISCOSITY
+
+    def leg(rho: float, mu: float) -> str:
+        return f"{figures.text(rho, density, unit=True)}, {figures.text(mu, viscosity, unit=True)}"
+
+    supply, back = leg(fluid.density, fluid.viscosity), leg(fluid.return_density, fluid.return_viscosity)
+    return f"{plain(fluid.name)}, {supply}" + (f"; return {back}" if back != supply else "")
+
+
+def _power(value: float | None, description: Description) -> str:
+    if value is None:
+        return ""
+    unit = description.display.get("power", "W" if description.design.units == "SI" else "hp")
+    return f"{plain_number(to_unit(value, unit, Dimension.POWER), 4)} {unit}"
+
+
+def _circuit(budget: Budget, source: str, terminal: str) -> str:
+    path = budget.terminals[terminal].path
+    return ", ".join(map(plain, (source, *path, terminal))) if not path else _around(source, path, terminal, budget)
+
+
+def _around(source: str, path: Sequence[str], terminal: str, budget: Budget) -> str:
+    """Put the terminal where the path turns: behind the sections that lead to it, before those that lead back."""
+    outward = sum(budget.sections[id_].run.legs[0].leg in ("supply", "discharge") for id_ in dict.fromkeys(path))
+    steps = [*path[:outward], terminal, *path[outward:]]
+    return ", ".join(map(plain, [source, *steps] if outward else [*steps, source]))
+
+
+def _spent(result: SourceResult, figures: Figures) -> Iterator[str]:
+    density = result.fluid.density
+    columns = [
+        Column("spent under", left=True),
+        Column("spent", figures.unit(Dimension.PRESSURE)),
+        Column("budget", figures.unit(Dimension.PRESSURE), optional=True),
+        Column("left", figures.unit(Dimension.PRESSURE), optional=True),
+    ]
+    rows = []
+    for heading in HEADINGS:
+        spent, allowed = result.spent.get(heading, 0.0), result.budget.get(heading)
+        if spent == 0.0 and allowed is None:
+            continue
+        left = None if allowed is None else allowed - spent
+        rows.append((heading, *(figures.pressure(value, density) for value in (spent, allowed, left))))
+    rows.append(("required", figures.pressure(result.required, density), "", ""))
+    yield from table(columns, rows)
+
+
+def _remarks(description: Description) -> Iterator[str]:
+    for id_ in description.order:
+        part = description.sources.get(id_) or description.sections.get(id_) or description.terminals.get(id_)
+        if part is None:
+            continue
+        said = [plain(text) for text in (part.title, part.location, part.note) if text]
+        if said:
+            yield from wrapped(f"{plain(id_)}: {'; '.join(said)}", "  ", "    ")
+
+
+def _findings(findings: Iterable[Located]) -> Iterator[str]:
+    """Spell findings, the gravest first; the place is a key, for a line number would change with every other line."""
+    found = list(findings)
+    if not found:
+        yield "  none"
+    for level in Level:
+        for finding in found:
+            if finding.level is level:
+                place = ".".join(filter(None, (finding.table, finding.key)))
+                text = f"{level.value} {finding.code}: {plain(place)}: {plain(finding.message)}"
+                yield from wrapped(text, "  ", "    ")

@@ -1,0 +1,67 @@
+"""Whatever stands in a file is shown as plain text that shifts nothing."""
+
+import unicodedata
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+from rich.cells import cell_len
+from rich.segment import Segment
+from textual.color import Color
+
+from budget.screens.safe import ascii_only, clip, fit, harmless, plain, steady, width_of
+from budget.screens.toolkit import AsciiFilter, SafeFilter
+
+PAYLOADS = [
+    "\x1b]52;c;aGVsbG8=\x07",
+    "\x1b[2J",
+    "\x9b31m",
+    "a\x00b",
+    "a\x7fb",
+    "\u202eabc",
+    "\u2066abc\u2069",
+    "\u200b",
+    "\ufeff",
+    "line\nbreak\r\ttab",
+]
+
+
+@pytest.mark.parametrize("text", PAYLOADS)
+def test_controls_and_direction_marks_never_pass(text: str) -> None:
+    for made in (plain(text), steady(text), harmless(text), ascii_only(harmless(text))):
+        assert all(c.isprintable() or c == "\xa0" or unicodedata.category(c) == "Zs" for c in made)
+
+
+def test_letters_of_any_script_stay() -> None:
+    assert plain("Zuluft Küche Ø250") == "Zuluft Küche Ø250"
+    assert plain("給水 Вентиль") == "給水 Вентиль"
+    assert steady("給水 Вентиль") == "給水 Вентиль"
+
+
+def test_a_decomposed_letter_is_put_together_and_a_mark_that_can_t_be_is_replaced() -> None:
+    assert steady("Ku\u0308che") == "Küche"
+    assert steady("q\u0308") == "q?"
+    assert steady("👩\u200d🔧") == "???"
+
+
+@given(st.text())
+def test_the_filter_keeps_the_width_that_was_counted(text: str) -> None:
+    assert cell_len(harmless(text)) == cell_len(text)
+    shown = ascii_only(harmless(text))
+    assert shown.isascii()
+    assert len(shown) == cell_len(harmless(text))
+
+
+@given(st.text(), st.integers(0, 40))
+def test_a_clipped_text_fits(text: str, width: int) -> None:
+    safe = plain(text)
+    assert width_of(clip(safe, width)) <= width
+    assert width_of(fit(safe, width)) == width
+
+
+def test_filters_leave_control_segments_of_the_toolkit_alone() -> None:
+    black = Color(0, 0, 0)
+    told = SafeFilter().apply([Segment("a\x1b[2Jb")], black)
+    assert [segment.text for segment in told] == ["a[2Jb"]
+    shown = AsciiFilter().apply([Segment("»█░ 12 é")], black)
+    assert [segment.text for segment in shown] == [">#- 12 e"]
