@@ -43,7 +43,7 @@ def _object(one: Opened) -> dict[str, object]:
 
 
 def _print(one: Opened) -> None:
-    from budget.report.text import finding_line, source_line
+    from budget.report.lines import finding_line, source_line
 
     for finding in one.findings:
         print(finding_line(one.name, finding))

@@ -14,7 +14,8 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Print the report; return the status that the findings ask for."""
-    from budget.report.text import finding_line, text_report
+    from budget.report.lines import finding_line
+    from budget.report.text import text_report
 
     one = open_run(options.file)
     if one.snapshot is None:

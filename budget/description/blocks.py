@@ -88,9 +88,11 @@ def cut_blocks(index: SpanIndex, blocks: Sequence[Table]) -> list[Splice]:
 def move_blocks(index: SpanIndex, path: Path, target: Path, *, behind: bool) -> str:
     """Return the text with a table and its sub-tables behind or before the blocks of another, each as it was."""
     text, moved = index.text, blocks_under(index, path)
+    if target[: len(path)] == path:
+        return text
     goal = [table for table in blocks_under(index, target) if table not in moved]
     if not moved or not goal:
-        raise EditError(f"there is no table {show(target if moved else path)} to move")
+        raise EditError(f"there is no table {show(target if moved else path)} with a header of its own")
     spans = [_block_of(index, table) for table in moved]
     place = _block_of(index, goal[-1]).end if behind else _block_of(index, goal[0]).start
     together = all(one.end == other.start for one, other in pairwise(spans))

@@ -22,7 +22,8 @@ INDEX = "index"
 _LEGEND = (
     "sum: along the largest circuit through the row, from the source, devices fully open. diff.: what is available at "
     "the connection of the row. margin: what could be added there before the index circuit moves. vel. and grad.: of "
-    "the supply leg where there are two. Of a terminal, sum is its whole circuit and drop its own."
+    "the supply leg where there are two. drop: both legs with what stands on them; of a terminal and of a device, its "
+    "own. Of a terminal, sum is its whole circuit."
 )
 
 
@@ -85,6 +86,7 @@ class _Rows:
             cells["drop"] = self.figures.pressure(result.run.drop, density)
         yield self._row(self._name(id_, depth), **cells)
         yield from self._items(section.items, result.items if result else (), depth, density)
+        yield from self._device(result.device if result else None, depth, density)
 
     def _terminal(self, id_: str, depth: int) -> Iterator[tuple[str, ...]]:
         terminal, result = self.description.terminals[id_], self.budget.terminals.get(id_)
@@ -106,6 +108,12 @@ class _Rows:
                 cells["drop"] = self.figures.pressure(result.run_out.drop, density)
             yield self._row(self._indented("- run-out", depth + 1), **cells)
         yield from self._items(terminal.items, result.items if result else (), depth, density)
+        yield from self._device(result.device if result else None, depth, density)
+
+    def _device(self, device: DeviceResult | None, depth: int, density: float | None) -> Iterator[tuple[str, ...]]:
+        if device is not None:
+            name = self._indented(f"- {plain(device.name)}", depth + 1)
+            yield self._row(name, drop=self.figures.pressure(device.base, density))
 
     def _items(
         self, items: tuple[Item, ...], results: tuple[ItemResult, ...], depth: int, density: float | None

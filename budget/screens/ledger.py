@@ -156,7 +156,7 @@ class Ledger(Lines):
         yield " " * MARK, "heading"
         for placed in self.placed:
             column = placed.column
-            text = column.title if roomy or column.left else column.short
+            text = column.title if roomy else column.short
             yield _aligned(clip(text, placed.width - 1), placed), "heading"
 
     def _units(self) -> Iterator[Piece]:

@@ -96,7 +96,7 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
             values["to"] = sibling.to
     else:
         values |= _first_terminal(description)
-    after = _last_path(text, sibling.path if sibling and sibling.id == row.id else row.path)
+    after = _last_path(text, sibling.path if sibling else row.path)
     return Change(AddTable(path, values, after=after), f"add terminal {id_}", path)
 
 

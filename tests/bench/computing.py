@@ -1,0 +1,52 @@
+"""Computing 10,000 sections against the friction factor alone on the same legs."""
+
+from __future__ import annotations
+
+import random
+
+from budget.description import describe, read_text
+from budget.network import compute, lay_out
+from budget.physics.friction import friction_factor
+from tests.bench.timing import best
+
+SECTIONS = 10_000
+SIZES = ("DN15", "DN20", "DN25", "DN32", "DN40", "DN50", "DN65", "DN80", "DN100")
+
+
+def building(sections: int = SECTIONS, seed: int = 1) -> str:
+    """Return a paired heating run: ten risers, three branches at every joint, a terminal at every end."""
+    rng = random.Random(seed)
+    lines = [
+        "format = 1",
+        '[fluid]\nname = "water"\ntemperature = 70\nreturn_temperature = 50',
+        '[defaults]\npipe = "steel"\npaired = true\ntakeoff = "none"',
+        '[pipe.steel]\ncatalogue = "steel EN 10255 medium"',
+        "[source.P1]",
+    ]
+    first_end = sections
+    for number in range(sections):
+        parent = "P1" if number < 10 else f"S{(number - 10) // 3}"
+        depth_left = max(len(str(sections)) - len(str(number)), 0)
+        size = SIZES[min(2 * depth_left + rng.randrange(2), len(SIZES) - 1)]
+        lines.append(
+            f'[section.S{number}]\nfrom = "{parent}"\nsize = "{size}"\nlength = {rng.uniform(1, 20):.2f}\n'
+            'fittings = { "elbow 90" = 2, "gate valve" = 1 }'
+        )
+        if 10 + 3 * number >= sections:
+            first_end = min(first_end, number)
+    for number in range(first_end, sections):
+        lines.append(f'[terminal.T{number}]\nfrom = "S{number}"\nflow = {rng.uniform(0.02, 0.1):.3f}\ndrop = 5')
+    return "\n".join(lines)
+
+
+def report() -> str:
+    """Return the ratio, and the times behind it."""
+    layout = lay_out(describe(read_text(building())))
+    drops = compute(layout).drops
+    legs = layout.legs
+    alone = best(lambda: friction_factor(drops.reynolds, legs.roughness / legs.diameter, legs.laminar))
+    whole = best(lambda: compute(layout))
+    return (
+        f"computing {SECTIONS:,} sections ({len(legs):,} legs, {len(layout.terminals):,} terminals) / friction factor alone: "
+        f"{whole / alone:.1f} (at most 20; {whole * 1e3:.1f} ms / {alone * 1e3:.2f} ms)"
+    )
