@@ -51,6 +51,10 @@ def take(source: SourceText, revision: int = 0, before: Snapshot | None = None) 
     return Snapshot(source.text, description, budget, located, revision, source.data is not None)
 
 
+def read_file(path: FilePath) -> tuple[SourceText, Stamp]:
+    """X."""
+
+
 class Document:
     """A run that is open for editing. It is the only place where anything changes."""
 
@@ -68,7 +72,7 @@ class Document:
     def open(cls, path: FilePath) -> Document:
         """Open a file. Raises StorageError where it can't be read."""
         content, stamp = load(path)
-        return cls(read_bytes(content), path, stamp)
+        return cls(_text_of(content, path), path, stamp)
 
     @classmethod
     def of(cls, text: str, path: FilePath | None = None) -> Document:
@@ -98,11 +102,16 @@ class Document:
 
     def undo(self) -> object | None:
         """Take the last step back; return the mark that it was made with."""
-        return self._travel(self._history.undo())
+        mark = self._history.mark if self.can_undo else None
+        self._travel(self._history.undo())
+        return mark
 
     def redo(self) -> object | None:
         """Take the step forward again; return the mark that it was made with."""
-        return self._travel(self._history.redo())
+        if not self.can_redo:
+            return None
+        self._travel(self._history.redo())
+        return self._history.mark
 
     @property
     def can_undo(self) -> bool:
@@ -128,10 +137,10 @@ class Document:
         self._stamp = save(target, self.snapshot.text.encode("utf-8"), self._stamp if same else None)
         self.path, self._saved = target, self.snapshot.text
 
-    def _travel(self, history: History) -> object | None:
-        self._history = history
-        self._show(history.text)
-        return history.mark
+    def _travel(self, history: History) -> None:
+        if history is not self._history:
+            self._history = history
+            self._show(history.text)
 
     def _show(self, text: str) -> None:
         self.snapshot = take(read_text(text), self.snapshot.revision + 1, self.snapshot)

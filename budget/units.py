@@ -138,8 +138,7 @@ def bare_unit(dimension: Dimension, system: Literal["SI", "IP"], *, gas: bool, s
     """
     if small and dimension is Dimension.LENGTH:
         return "mm" if system == "SI" else "in"
-    liquid, of_gas = _BARE[system][dimension]
-    return of_gas if gas else liquid
+    return _BARE[dimension][(0 if system == "SI" else 2) + gas]
 
 
 def basis_of(unit: str, dimension: Dimension) -> Basis:
@@ -343,37 +342,20 @@ _SPELLINGS: Mapping[Dimension, Mapping[str, _Unit]] = {
     for dimension, units in _UNITS.items()
 }
 
-_BARE: Mapping[str, Mapping[Dimension, tuple[str, str]]] = {  # for a liquid, for a gas
-    "SI": {
-        Dimension.LENGTH: ("m", "m"),
-        Dimension.FLOW: ("L/s", "L/s"),
-        Dimension.PRESSURE: ("kPa", "Pa"),
-        Dimension.GRADIENT: ("Pa/m", "Pa/m"),
-        Dimension.VELOCITY: ("m/s", "m/s"),
-        Dimension.POWER: ("kW", "kW"),
-        Dimension.TEMPERATURE: ("degC", "degC"),
-        Dimension.DIFFERENCE: ("K", "K"),
-        Dimension.DENSITY: ("kg/m3", "kg/m3"),
-        Dimension.VISCOSITY: ("mPa s", "mPa s"),
-        Dimension.SPECIFIC_HEAT: ("kJ/(kg K)", "kJ/(kg K)"),
-        Dimension.ANGLE: ("deg", "deg"),
-        Dimension.FRACTION: ("", ""),
-    },
-    "IP": {
-        Dimension.LENGTH: ("ft", "ft"),
-        Dimension.FLOW: ("gpm", "cfm"),
-        Dimension.PRESSURE: ("ftH2O", "inH2O"),
-        Dimension.GRADIENT: ("ftH2O/100ft", "inH2O/100ft"),
-        Dimension.VELOCITY: ("ft/s", "fpm"),
-        Dimension.POWER: ("MBH", "MBH"),
-        Dimension.TEMPERATURE: ("degF", "degF"),
-        Dimension.DIFFERENCE: ("delta_degF", "delta_degF"),
-        Dimension.DENSITY: ("lb/ft3", "lb/ft3"),
-        Dimension.VISCOSITY: ("cP", "cP"),
-        Dimension.SPECIFIC_HEAT: ("Btu/(lb degF)", "Btu/(lb degF)"),
-        Dimension.ANGLE: ("deg", "deg"),
-        Dimension.FRACTION: ("", ""),
-    },
+_BARE: Mapping[Dimension, tuple[str, str, str, str]] = {  # SI for a liquid and a gas, IP for a liquid and a gas
+    Dimension.LENGTH: ("m", "m", "ft", "ft"),
+    Dimension.FLOW: ("L/s", "L/s", "gpm", "cfm"),
+    Dimension.PRESSURE: ("kPa", "Pa", "ftH2O", "inH2O"),
+    Dimension.GRADIENT: ("Pa/m", "Pa/m", "ftH2O/100ft", "inH2O/100ft"),
+    Dimension.VELOCITY: ("m/s", "m/s", "ft/s", "fpm"),
+    Dimension.POWER: ("kW", "kW", "MBH", "MBH"),
+    Dimension.TEMPERATURE: ("degC", "degC", "degF", "degF"),
+    Dimension.DIFFERENCE: ("K", "K", "delta_degF", "delta_degF"),
+    Dimension.DENSITY: ("kg/m3", "kg/m3", "lb/ft3", "lb/ft3"),
+    Dimension.VISCOSITY: ("mPa s", "mPa s", "cP", "cP"),
+    Dimension.SPECIFIC_HEAT: ("kJ/(kg K)", "kJ/(kg K)", "Btu/(lb degF)", "Btu/(lb degF)"),
+    Dimension.ANGLE: ("deg", "deg", "deg", "deg"),
+    Dimension.FRACTION: ("", "", "", ""),
 }
 
 # A number, then nothing or what starts as a unit does; anything else after a number is refused by name.
@@ -460,9 +442,7 @@ def _wrong_unit(text: str, number: str, spelling: str, dimension: Dimension) -> 
 
 _COMMA = re.compile(r"\s*([+-]?[0-9]+),([0-9]+)(?![0-9,.])(.*)", re.DOTALL)
 _THOUSANDS = re.compile(r"\s*([+-]?[0-9]{1,3}(?:,[0-9]{3})+(?:\.[0-9]+)?)(?![0-9,])(.*)", re.DOTALL)
-_FRACTION = re.compile(
-    r"\s*([+-]?)(?:([0-9]{1,9})(?:-|\s+))?([0-9]{1,9})/([0-9]{1,9})(?![0-9/])(.*)", re.DOTALL
-)
+_FRACTION = re.compile(r"\s*([+-]?)(?:([0-9]{1,9})(?:-|\s+))?([0-9]{1,9})/([0-9]{1,9})(?![0-9/])(.*)", re.DOTALL)
 _NAMED = re.compile(r"\s*[+-]?(nan|inf(?:inity)?)(?![a-z])", re.IGNORECASE)
 _HEXADECIMAL = re.compile(r"\s*[+-]?0(?:x[0-9a-f]|o[0-7]|b[01])", re.IGNORECASE)
 _UNDERSCORE = re.compile(r"\s*([+-]?[0-9]+(?:_[0-9]+)+(?:\.[0-9]+)?)(?![0-9_])(.*)", re.DOTALL)

@@ -97,9 +97,7 @@ def registry() -> Registry:
 
 
 @pytest.mark.parametrize(("dimension", "unit"), ROWS, ids=str)
-def test_every_factor_agrees_with_an_independent_library(
-    registry: Registry, dimension: Dimension, unit: str
-) -> None:
+def test_every_factor_agrees_with_an_independent_library(registry: Registry, dimension: Dimension, unit: str) -> None:
     basis = basis_of(unit, dimension)
     base = PINT_BASE_OF_BASIS.get(basis, PINT_BASE[dimension])
     for number in (0.0, 1.0, 37.25):
@@ -306,9 +304,7 @@ def test_what_is_spelled_reads_back(row: tuple[Dimension, str], value: float) ->
     assert parse(text, dimension).value == pytest.approx(value, rel=1.01e-12)
 
 
-@given(
-    st.sampled_from(ROWS), st.integers(min_value=1, max_value=99_999), st.integers(min_value=-4, max_value=4)
-)
+@given(st.sampled_from(ROWS), st.integers(min_value=1, max_value=99_999), st.integers(min_value=-4, max_value=4))
 def test_a_short_number_stays_short(row: tuple[Dimension, str], digits: int, power: int) -> None:
     dimension, unit = row
     number = float(f"{digits}e{power}")
@@ -332,9 +328,7 @@ def test_a_short_number_stays_short(row: tuple[Dimension, str], digits: int, pow
         (1.0, "ft", Dimension.LENGTH, 4, "3.281 ft"),
     ],
 )
-def test_how_a_value_is_spelled(
-    value: float, unit: str, dimension: Dimension, digits: int | None, text: str
-) -> None:
+def test_how_a_value_is_spelled(value: float, unit: str, dimension: Dimension, digits: int | None, text: str) -> None:
     assert spell(value, unit, dimension, digits) == text
 
 

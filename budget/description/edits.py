@@ -178,6 +178,8 @@ _Step = SetValue | Unset | AddTable | RemoveTable | MoveTable | CopyTable | Rena
 
 
 def _effect(data: Toml, step: _Step) -> Toml:
+    if not step.path:
+        raise EditError("a key is needed, nothing was named")
     match step:
         case SetValue(path, value):
             return effects.set_value(data, path, plain(value))
@@ -335,8 +337,9 @@ class _Writing:
 def _differences(path: Path, old: Toml, new: Toml) -> Iterator[_Step]:
     """Run through the edits that make a new table, or list of tables, out of an old one."""
     if isinstance(old, dict):
-        for key in old.keys() - new.keys():
-            yield Unset((*path, key))
+        for key in old:
+            if key not in new:
+                yield Unset((*path, key))
         for key, value in new.items():
             if key not in old or type(old[key]) is not type(value) or old[key] != value:
                 yield SetValue((*path, key), value)

@@ -18,8 +18,6 @@ def get(data: Toml, path: Path) -> Toml:
 
 def set_value(data: Toml, path: Path, value: Toml) -> Toml:
     """Put a value at a path, with the tables on the way to it; a list may grow by one."""
-    if not path:
-        raise EditError("a key is needed, nothing was named")
     return _set(data, path, value, 0)
 
 
@@ -57,10 +55,11 @@ def insert(data: Toml, path: Path, value: Toml) -> Toml:
     """Put a value at a key that is free, or into a list at a position: what stands there moves up."""
     position = path[-1]
     if isinstance(position, int):
-        found = get(data, path[:-1])
+        found = _find(data, path[:-1])
+        found = [] if found is None else found
         if not isinstance(found, list) or not 0 <= position <= len(found):
             raise EditError(f"there is no room for {show(path)}")
-        return _change(data, path[:-1], lambda node: [*node[:position], value, *node[position:]])
+        return set_value(data, path[:-1], [*found[:position], value, *found[position:]])
     if _find(data, path) is not None:
         raise EditError(f"{show(path)} exists already")
     return set_value(data, path, value)
@@ -138,9 +137,7 @@ def _set(node: Toml, path: Path, value: Toml, size: int) -> Toml:
         if not isinstance(node, list):
             raise EditError(f"{show(path[:size])} is not a list")
         if not 0 <= part <= len(node):
-            raise EditError(
-                f"{show(path[:size])} has {len(node)} elements, so there is no {show(path[: size + 1])}"
-            )
+            raise EditError(f"{show(path[:size])} has {len(node)} elements, so there is no {show(path[: size + 1])}")
         inner = node[part] if part < len(node) else None
         return [*node[:part], _set(inner, path, value, size + 1), *node[part + 1 :]]
     if not isinstance(node, dict):

@@ -98,7 +98,7 @@ def _add(index: SpanIndex, around: Path, path: Path, value: Toml) -> list[Splice
         (table, statement)
         for table in index.all_tables()
         for statement in table.statements
-        if statement[2][:size] == around
+        if len(table.path) < size and statement[2][:size] == around
     ]
     if beside:  # in a table that only dotted keys make
         table, statement = beside[-1]

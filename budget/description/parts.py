@@ -25,6 +25,9 @@ def read_source(reading: Reading, id_: str, values: dict[str, Any], path: Path, 
     """Read a pump or a fan."""
     items = _items(scope, values, path)
     for item in items:
+        if item.control:
+            text = "a control item stands on a section or terminal; remove control"
+            reading.wrong("contradiction", text, (*item.path, "control"))
         for key in ("k", "equivalent_length"):
             if getattr(item, key) is not None:
                 reading.wrong(
@@ -37,6 +40,12 @@ def read_source(reading: Reading, id_: str, values: dict[str, Any], path: Path, 
         reading.wrong("contradiction", "a gas has no open circuit; remove open", (*path, "open"))
     if values.get("controls") == "differential" and "set_point" not in values:
         reading.wrong("missing", "it controls a differential; state its set_point", (*path, "set_point"))
+    for key, owner in (("set_point", 'controls = "differential"'), ("sensor", 'controls = "differential"')):
+        if key in values and values.get("controls") != "differential":
+            reading.wrong("contradiction", f"{key} belongs to {owner}; state that, or remove it", (*path, key))
+    for key in ("curve_density", "curve_is"):
+        if key in values and "curve" not in values:
+            reading.wrong("contradiction", f"{key} without a curve; state curve, or remove it", (*path, key))
     known = Source.__dataclass_fields__
     kept = {key: value for key, value in values.items() if key in known and key not in ("item", "outlet")}
     return Source(id=id_, path=path, items=items, outlet=outlet, **kept)
@@ -47,8 +56,7 @@ def read_section(reading: Reading, id_: str, values: dict[str, Any], path: Path,
     if "from" in values and "to" in values:
         reading.wrong("contradiction", "from and to are both stated; a section has one of them", (*path, "to"))
         values.pop("to")
-    if "from" not in values and "to" not in values:
-        reading.wrong("missing", "neither from nor to is stated; name what it hangs on", (*path, "from"))
+    _check_connected(reading, values, path)
     run = _run(scope, values, path)
     return Section(
         id=id_,
@@ -69,26 +77,28 @@ def read_terminal(reading: Reading, id_: str, values: dict[str, Any], path: Path
     """Read a terminal, with its run-out where it has a size or bore."""
     _one_of(reading, values, ("flow", "load"), path)
     _one_of(reading, values, ("drop", "static_drop"), path)
-    if "from" not in values and "to" not in values:
-        reading.wrong("missing", "neither from nor to is stated; name what it hangs on", (*path, "from"))
+    _check_connected(reading, values, path)
     for key in ("at", "exponent"):
         if key in values and "drop" not in values and "static_drop" not in values:
             reading.wrong("contradiction", f"{key} without a drop; state drop, or remove it", (*path, key))
     neck = read_duct_size(reading, values["neck"], (*path, "neck"), remark=False) if "neck" in values else None
     if "static_drop" in values and "neck" not in values:
         reading.wrong("missing", "static_drop needs the neck at which it was stated", (*path, "static_drop"))
-    if "static_drop" in values and not reading.gas:
-        reading.wrong("contradiction", "static_drop belongs to air terminals; state drop", (*path, "static_drop"))
+    for key in ("static_drop", "neck"):
+        if key in values and not reading.gas:
+            reading.wrong("contradiction", f"{key} belongs to air terminals; remove it, state drop", (*path, key))
     run = None
     if "size" in values or "bore" in values:
         run = _run(scope, values, path)
     else:
+        sized = reading.faulty((*path, "size")) or reading.faulty((*path, "bore"))
         for key in values:
-            if key in _RUN_OUT_KEYS:
+            if key in _RUN_OUT_KEYS and not sized:
                 reading.wrong("missing", f"{key} describes a run-out, which needs a size; state size", (*path, key))
         _check_junction_keys(scope, values, path)
     items = _items(scope, values, path)
-    if not items and not {"drop", "static_drop", "outlet_pressure"} & values.keys():
+    drops = ("drop", "static_drop", "outlet_pressure")
+    if not items and not any(key in values or reading.faulty((*path, key)) for key in drops):
         reading.findings.append(
             warning("no-drop", "the terminal has no drop; its own pressure drop counts as nothing", path)
         )
@@ -112,7 +122,7 @@ def read_terminal(reading: Reading, id_: str, values: dict[str, Any], path: Path
 def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
     reading, defaults = scope.reading, scope.defaults
     line = scope.line_of(values, path)
-    if "length" not in values and not _found_at(reading, (*path, "length")):
+    if "length" not in values and not reading.faulty((*path, "length")):
         reading.wrong("missing", 'the length is not stated; write length = "12 m"', (*path, "length"))
     if "compression" in values and not (line and line.flexible):
         reading.wrong("contradiction", "compression belongs to flexible duct; remove it", (*path, "compression"))
@@ -137,10 +147,6 @@ def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
     )
 
 
-def _found_at(reading: Reading, path: Path) -> bool:
-    return any(finding.path == path for finding in reading.findings)
-
-
 def _geometry(scope: Scope, values: Mapping[str, Any], line: Line | None, path: Path) -> Geometry | None:
     reading = scope.reading
     if "size" in values and "bore" in values:
@@ -152,7 +158,7 @@ def _geometry(scope: Scope, values: Mapping[str, Any], line: Line | None, path: 
         bore = values["bore"]
         return Geometry("round", bore, bore, bore, f"{bore * 1000:g} mm bore")
     if "size" not in values:
-        if not _found_at(reading, (*path, "bore")):
+        if not (reading.faulty((*path, "bore")) or reading.faulty((*path, "size"))):
             reading.wrong("missing", "the size is not stated; write size (or bore, for a pipe)", (*path, "size"))
         return None
     if line is None:
@@ -176,15 +182,12 @@ def _fittings(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Fitt
         where: Path = (*path, "fitting", place_, "kind")
         if "kind" not in use:
             scope.reading.wrong("missing", "the fitting has no kind; state kind", where[:-1])
-        scope.reading.findings.append(
-            error("later", "a fitting with parameters can't be computed yet; its loss is not counted", where)
-        )
+        scope.reading.later("a fitting with parameters", where)
     return tuple(found)
 
 
 def _check_junction_keys(scope: Scope, values: Mapping[str, Any], path: Path) -> None:
     """Junction and transition losses are not computed yet: say so at the key, and find what contradicts them."""
-    later: list[tuple[Path, str]] = []
     takeoff = values.get("takeoff", scope.defaults.get("takeoff"))
     if takeoff in ("straight", "branch"):
         tees = [name for name in values.get("fittings", {}) if name.startswith("tee")]
@@ -195,18 +198,15 @@ def _check_junction_keys(scope: Scope, values: Mapping[str, Any], path: Path) ->
                 f"takeoff {takeoff!r} and the fitting {tees[0]!r} would count the junction twice; keep one",
                 (*path, "fittings", tees[0]),
             )
-        later.append((where, "the loss of a junction"))
+        scope.reading.later("the loss of a junction", where)
     if "transition" in values:
         value = values["transition"]
         if value != "abrupt":
             angle = Measure(Dimension.ANGLE, 0.0, 180.0, above=True)
             scope.reading.value(value, angle, (*path, "transition"))
-        later.append(((*path, "transition"), "the loss of a transition"))
+        scope.reading.later("the loss of a transition", (*path, "transition"))
     if "leakage" in values:
-        later.append(((*path, "leakage"), "leakage"))
-    for where, what in later:
-        if not any(f.code == "later" and f.path == where for f in scope.reading.findings):
-            scope.reading.findings.append(error("later", f"{what} can't be computed yet; it is not counted", where))
+        scope.reading.later("leakage", (*path, "leakage"))
 
 
 def _items(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Item, ...]:
@@ -223,7 +223,7 @@ def _items(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Item, .
 
 def _item(reading: Reading, entry: Mapping[str, Any], path: Path) -> Item:
     forms = [key for key in _ITEM_FORMS if key in entry]
-    if not forms and not any(f.path[: len(path)] == path for f in reading.findings):
+    if not forms and not reading.faulty(path):
         reading.wrong("missing", "the item has no drop; state k, kv, cv, drop, clean and final, or equivalent_length", path)
     if len(forms) > 1:
         reading.wrong("contradiction", f"{' and '.join(forms)} are both stated; keep one", (*path, forms[1]))
@@ -245,6 +245,11 @@ def _item(reading: Reading, entry: Mapping[str, Any], path: Path) -> Item:
     if "cv" in forms:
         kept["kv"] = entry["cv"] / CV_PER_KV
     return Item(path=path, **kept)
+
+
+def _check_connected(reading: Reading, values: Mapping[str, Any], path: Path) -> None:
+    if not any(key in values or reading.faulty((*path, key)) for key in ("from", "to")):
+        reading.wrong("missing", "neither from nor to is stated; name what it hangs on", (*path, "from"))
 
 
 def _one_of(reading: Reading, values: dict[str, Any], keys: tuple[str, str], path: Path) -> None:

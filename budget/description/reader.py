@@ -8,7 +8,7 @@ from collections.abc import Callable, Mapping
 from typing import Any
 
 from budget.catalogue import fitting_names
-from budget.description.finding import Finding, Path, error, warning
+from budget.description.finding import Finding, Path, dotted, error, warning
 from budget.description.lines import read_lines
 from budget.description.model import (
     Description,
@@ -59,6 +59,7 @@ def describe(source: Source) -> Description:
         order=_order(source, data),
     )
     _check_ids(reading, source, data)
+    _check_sensors(reading, description)
     _read_later(reading, data, description)
     if not data.get("source"):
         reading.wrong("missing", "the run has no source; add [source.P1], the pump or fan", ("source",))
@@ -73,12 +74,13 @@ def _check_top(reading: Reading, data: Mapping[str, Any]) -> None:
     for key in data:
         if key not in TOP:
             code = "unknown-table" if isinstance(data[key], dict | list) else "unknown-key"
-            reading.wrong(code, f"{key!r} is not a table of this format; {nearest(key, TOP)}", (key,))
+            what = "a table of this format" if code == "unknown-table" else "a key that stands before the tables"
+            reading.wrong(code, f"{key!r} is not {what}; {nearest(key, TOP)}", (key,))
     stated = data.get("format")
     if stated is None:
         reading.wrong("format", f"the format is not stated; write format = {FORMAT} as the first line", ())
     elif stated != FORMAT or isinstance(stated, bool):
-        reading.wrong("format", f"format {stated!r} is not known here; write format = {FORMAT}", ("format",))
+        reading.wrong("format", f"format {str(stated)[:20]} is not known here; write format = {FORMAT}", ("format",))
     elif next(iter(data)) != "format":
         reading.findings.append(warning("format", "format should be the first line; move it up", ("format",)))
 
@@ -102,7 +104,7 @@ def _keyed(
     for id_, entry in entries.items():
         path: Path = (table, id_)
         if not isinstance(entry, dict):
-            reading.wrong("type", f"{table}.{id_} must be a table; write [{table}.ID], or correct the key", path)
+            reading.wrong("type", f"{id_!r} must be a table; write [{dotted(path)}], or correct the key", path)
             continue
         values = reading.table(entry, KEYED[table], path)
         built[id_] = build(reading, id_, values, path, *context)
@@ -152,6 +154,7 @@ def _check_fluid(reading: Reading, fluid: Fluid, stated: Mapping[str, Any]) -> N
             idle(key, "a custom fluid")
     if fluid.name and fluid.name != "air":
         idle("humidity", "air")
+        idle("altitude", "air")
 
 
 def _display(reading: Reading, data: Mapping[str, Any]) -> dict[str, str]:
@@ -173,7 +176,7 @@ def _limits(values: dict[str, Any]) -> Limits:
 
 
 def _own_fitting(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> OwnFitting:
-    if "k" not in values and not any(f.path[:3] == (*path, "k") for f in reading.findings):
+    if "k" not in values and not reading.faulty((*path, "k")):
         reading.wrong("missing", f"the fitting {id_!r} has no loss coefficient; write k = 0.75", path)
     if id_ in fitting_names():
         reading.wrong(
@@ -190,15 +193,18 @@ def _device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> D
     if "cv" in values:
         kv = tuple((setting, cv / CV_PER_KV) for setting, cv in values["cv"])
     holds = values.get("holds")
-    if not tables and holds is None:
+    if not tables and holds is None and not any(reading.faulty((*path, key)) for key in ("kv", "cv", "k", "holds")):
         reading.wrong("missing", f"the device {id_!r} has no setting table; write kv, cv, k or holds", path)
-    if holds is not None and values.get("least_drop") is None and not tables:
+    if holds is not None and "least_drop" not in values and not tables and not reading.faulty(path):
         reading.findings.append(
             warning("no-drop", f"the device {id_!r} has no least_drop; its base drop counts as nothing", path)
         )
     for key, owner in (("greatest_drop", "flow"), ("set_point", "differential")):
         if key in values and holds != owner:
             reading.wrong("contradiction", f'{key} belongs to holds = "{owner}"; remove it', (*path, key))
+    least, greatest = values.get("least_drop"), values.get("greatest_drop")
+    if least and greatest and least.basis is greatest.basis and greatest.value < least.value:
+        reading.wrong("contradiction", "greatest_drop is below least_drop; correct one", (*path, "greatest_drop"))
     for key in tables:
         curve = [second for _, second in values[key]]
         steps = [later - earlier for earlier, later in zip(curve, curve[1:], strict=False)]
@@ -244,32 +250,39 @@ def _check_ids(reading: Reading, source: Source, data: Mapping[str, Any]) -> Non
             seen.setdefault(id_, path)
 
 
+def _check_sensors(reading: Reading, description: Description) -> None:
+    known = [*description.sections, *description.terminals]
+    for source in description.sources.values():
+        if source.sensor is not None and source.sensor not in known:
+            text = f"{source.sensor!r} is neither a section nor a terminal; {nearest(source.sensor, known)}"
+            reading.wrong("dangling", text, (*source.path, "sensor"))
+
+
 def _read_later(reading: Reading, data: Mapping[str, Any], description: Description) -> None:
     """Say of every table that is read but not computed yet that it is not."""
-
-    def later(path: Path, what: str) -> None:
-        reading.findings.append(error("later", f"{what} can't be computed yet; the figures are without it", path))
 
     if "library" in data:
         library = data["library"]
         if not isinstance(library, list) or not all(isinstance(name, str) for name in library):
             reading.wrong("type", 'library must be a list of paths; write ["../office/valves.toml"]', ("library",))
-        later(("library",), "a library")
+        reading.later("a library", ("library",))
     sizing = _single(reading, data, "sizing")
     if sizing or "sizing" in data:
-        later(("sizing",), "sizing")
-    known = {*description.sources, *description.sections, *description.terminals}
+        reading.later("sizing", ("sizing",))
+    known = dict.fromkeys(description.order)
     for id_, link in _keyed(reading, data, "link", lambda _r, _i, values, _p: values).items():
         for key in ("from", "to"):
             if key not in link:
                 reading.wrong("missing", f"{key} is not stated; name the section that the link joins", ("link", id_))
             elif link[key] not in description.sections:
-                reading.wrong("dangling", f"{link[key]!r} is not a section", ("link", id_, key))
-        later(("link", id_), "a link")
+                hint = nearest(link[key], description.sections)
+                reading.wrong("dangling", f"{link[key]!r} is not a section; {hint}", ("link", id_, key))
+        reading.later("a link", ("link", id_))
     for id_, case in _keyed(reading, data, "case", lambda _r, _i, values, _p: values).items():
         named = [(("off", place), name) for place, name in enumerate(case.get("off", ()))]
         named += [((key, name), name) for key in ("share", "stroke", "source") for name in case.get(key, {})]
         for where, name in named:
             if name not in known:
-                reading.wrong("dangling", f"{name!r} is not an ID of this run", ("case", id_, *where))
-        later(("case", id_), "a case")
+                hint = nearest(name, known)
+                reading.wrong("dangling", f"{name!r} is not an ID of this run; {hint}", ("case", id_, *where))
+        reading.later("a case", ("case", id_))

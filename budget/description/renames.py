@@ -93,7 +93,7 @@ def _check(data: Mapping[str, Toml], kind: str, old: str, new: str) -> None:
         raise EditError(f"there is nothing of the kind {render_key(kind)}; it may be {', '.join(KINDS)}")
     names = _table(data, kind)
     if old not in names:
-        nearest = difflib.get_close_matches(old, names, n=1)
+        nearest = difflib.get_close_matches(old, names, n=1, cutoff=0.5)
         hint = f"; did you mean {render_key(nearest[0])}?" if nearest else ""
         raise EditError(f"there is no {kind} {render_key(old)}{hint}")
     if not new or not new.isprintable():

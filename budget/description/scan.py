@@ -45,12 +45,8 @@ class Scan:
 
     tables: list[Table] = field(default_factory=list)
     entries: dict[Path, Entry] = field(default_factory=dict)
-    dotted: dict[Path, list[tuple[int, int]]] = field(
-        default_factory=dict
-    )  # names in dotted keys, but the last
-    starts: dict[Path, int] = field(
-        default_factory=dict
-    )  # where a dotted key begins, by the path of its value
+    dotted: dict[Path, list[tuple[int, int]]] = field(default_factory=dict)  # names in dotted keys, but the last
+    starts: dict[Path, int] = field(default_factory=dict)  # where a dotted key begins, by the path of its value
     unread: dict[Path, int] = field(default_factory=dict)  # values in brackets not looked into yet
 
 

@@ -74,7 +74,11 @@ class Scope:
                 (*path, "balance"),
             )
             return None
-        if "setting" in values and not (device.kv or device.k):
+        table = device.kv or device.k
+        if "setting" in values and table and not table[0][0] <= values["setting"] <= table[-1][0]:
+            text = f"the table of {name!r} goes from {table[0][0]:g} to {table[-1][0]:g}; correct the setting"
+            self.reading.wrong("range", text, (*path, "setting"))
+        if "setting" in values and not table:
             self.reading.wrong("contradiction", f"{name!r} has no setting; remove setting", (*path, "setting"))
         return str(name)
 

@@ -11,12 +11,13 @@ from budget.description.model import Geometry, Line
 from budget.description.values import Reading, nearest
 from budget.units import Dimension, UnitError, bare, bare_unit, parse
 
+_BARE = re.compile(r"\s*[0-9]+(\.[0-9]*)?\s*", re.ASCII)
 _RECTANGLE = re.compile(r"\s*(oval\s+)?([0-9.]+)\s*[x×X]\s*([0-9.]+)\s*(mm|in|cm|m)?\s*", re.ASCII)
 
 
-def read_pipe_size(reading: Reading, value: Any, line: Line, path: Path) -> Geometry | None:
+def read_pipe_size(reading: Reading, value: str | float, line: Line, path: Path) -> Geometry | None:
     """Find a size in the pipe's line; an error lists the nearest three where the line lacks it."""
-    text = value if isinstance(value, str) else str(value)
+    text = _with_unit(value, reading)
     if line.own_sizes:
         return _own_size(reading, text, line, path)
     listed = pipe_line(line.catalogue) if line.catalogue else None
@@ -30,6 +31,14 @@ def read_pipe_size(reading: Reading, value: Any, line: Line, path: Path) -> Geom
         reading.wrong("unknown-size", f"{text!r} is not a size of {listed.name}; the nearest are {near}", path)
         return None
     return Geometry("round", found.bore, found.bore, found.nominal, found.written)
+
+
+def _with_unit(value: str | float, reading: Reading) -> str:
+    """Return a size as text; a bare number is in mm, in an IP design a nominal size in inches."""
+    text = value if isinstance(value, str) else f"{value:g}"
+    if _BARE.fullmatch(text) is None:
+        return text
+    return f"NPS {text.strip()}" if reading.units == "IP" else f"{text.strip()} mm"
 
 
 def _own_size(reading: Reading, text: str, line: Line, path: Path) -> Geometry | None:

@@ -18,6 +18,7 @@ DEEPEST = 32
 """Levels of nesting; a run has five."""
 
 _PLACE = re.compile(r"\(at line (\d+), column (\d+)\)|\(at end of document\)")
+_DIGITS = re.compile(r"[0-9][0-9_]{4000}")
 _OPENERS = re.compile(r"[\[{]{33}")
 
 
@@ -72,7 +73,9 @@ def read_text(text: str) -> Source:
     except (RecursionError, ValueError) as wrong:
         code = "nesting" if isinstance(wrong, RecursionError) else "syntax"
         what = "values are nested too deep" if code == "nesting" else "a number has too many digits"
-        return _refused(code, f"{what}; a run needs neither", text)
+        digits = _DIGITS.search(text) if code == "syntax" else None
+        place = _line_column(text, digits.start()) if digits else (1, 1)
+        return _refused(code, f"{what}; a run needs neither", text, place)
     if _depth(data) > DEEPEST:
         return _refused("nesting", f"tables are nested more than {DEEPEST} deep; a run needs five levels", text)
     return Source(text, data)
@@ -84,7 +87,8 @@ def _syntax(text: str, message: str) -> Source:
     if found is not None and found.group(1):
         place = (int(found.group(1)), int(found.group(2)))
     what = _PLACE.sub("", message).strip()
-    line = text.splitlines()[place[0] - 1] if place[0] <= len(text.splitlines()) else ""
+    lines = text.split("\n")
+    line = lines[place[0] - 1] if place[0] <= len(lines) else ""
     if "twice" in what or "Cannot overwrite" in what or "immutable" in what:
         return _refused("duplicate-id", f"{line.strip()[:60]!r} stands twice; rename or remove one", text, place)
     hint = "correct the line"

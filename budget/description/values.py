@@ -4,7 +4,9 @@ from __future__ import annotations
 
 import difflib
 import math
-from collections.abc import Iterable, Mapping
+import re
+import sys
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -28,6 +30,8 @@ from budget.units import Dimension, Quantity, UnitError, bare, bare_unit, parse,
 KEEPS_BASIS = frozenset({Dimension.FLOW, Dimension.PRESSURE, Dimension.VISCOSITY})
 """Dimensions that can be stated on another basis (mass, head, kinematic) and stay quantities until it is known."""
 
+_NUMERAL = re.compile(r"[+-]?[0-9]{1,20}(\.[0-9]{1,20})?")
+
 _KINDS: dict[type, str] = {str: "a text", bool: "true or false", int: "a whole number", float: "a number", list: "a list", dict: "a table"}
 
 
@@ -38,6 +42,9 @@ class Reading:
     units: Any = "SI"
     gas: bool = False
     findings: list[Finding] = field(default_factory=list)
+    _faulty: set[Path] = field(default_factory=set)
+    """Where errors stand, and what stands around them."""
+    _later: set[Path] = field(default_factory=set)
 
     def table(self, data: Any, keys: Mapping[str, Spec], path: Path, kind: str = "") -> dict[str, Any]:
         """Read a table with known keys; a key that could not be read is left out."""
@@ -75,15 +82,26 @@ class Reading:
             case Inline(inner):
                 return self._inline(value, inner, path)
             case Table(keys):
-                return self.table(value, keys, path)
+                return self.table(value, keys, path, ".".join(map(str, path)))
             case Array(keys):
                 return self._array(value, keys, path)
             case Size():
-                return value
+                return self._size(value, path)
 
     def wrong(self, code: str, message: str, path: Path) -> None:
         """Keep an error."""
         self.findings.append(error(code, message, path))
+        self._faulty.update(path[:size] for size in range(1, len(path) + 1))
+
+    def faulty(self, path: Path) -> bool:
+        """Whether an error has been found at a place, or within it."""
+        return path in self._faulty
+
+    def later(self, what: str, path: Path) -> None:
+        """Say once of each place that what stands there is read, but not computed yet."""
+        if path not in self._later:
+            self._later.add(path)
+            self.findings.append(error("later", f"{what} can't be computed yet; remove it for now", path))
 
     def unknown_key(self, key: str, known: Iterable[str], path: Path, kind: str = "") -> None:
         """Say that a key is not known here, and which known one is nearest."""
@@ -93,7 +111,13 @@ class Reading:
     def _typed(self, value: Any, kind: type, path: Path) -> Any:
         if type(value) is kind:
             return value
-        self.wrong("type", f"{_what(value)} where {_KINDS[kind]} was due; write {_example(kind)}", path)
+        self.wrong("type", f"{_what(value)} where {_KINDS[kind]} was due; write {_example(kind, value)}", path)
+        return None
+
+    def _size(self, value: Any, path: Path) -> str | int | float | None:
+        if isinstance(value, str) or (isinstance(value, int | float) and not isinstance(value, bool)):
+            return value
+        self.wrong("type", f'{_what(value)} where a size was due; write a text such as "DN40" or "600x300"', path)
         return None
 
     def _choice(self, value: Any, words: tuple[str, ...], path: Path) -> str | None:
@@ -105,8 +129,13 @@ class Reading:
 
     def _number(self, value: Any, spec: Number, path: Path) -> float | int | None:
         if isinstance(value, bool) or not isinstance(value, int | float):
-            kind = "a whole number" if spec.whole else "a plain number"
-            self.wrong("type", f"{_what(value)} where {kind} was due; write it without quotes", path)
+            kind, example = ("a whole number", "2") if spec.whole else ("a plain number", "2.5")
+            text = isinstance(value, str) and _NUMERAL.fullmatch(value) is not None
+            remedy = f"write {value} without quotes" if text else f"write one such as {example}"
+            self.wrong("type", f"{_what(value)} where {kind} was due; {remedy}", path)
+            return None
+        if _huge(value):
+            self.wrong("range", f"{_what(value)} is out of range; {_bounds(spec, _plain)}", path)
             return None
         if not math.isfinite(value):
             self.wrong("not-finite", f"{value} is not a finite number; write the number itself", path)
@@ -115,7 +144,7 @@ class Reading:
             self.wrong("type", f"{value} where a whole number was due; write {round(value)}", path)
             return None
         if self._outside(float(value), spec):
-            self.wrong("range", f"{value:g} is out of range; {_bounds(spec, lambda bound: f'{bound:g}')}", path)
+            self.wrong("range", f"{value:g} is out of range; {_bounds(spec, _plain)}", path)
             return None
         return int(value) if spec.whole else float(value)
 
@@ -124,13 +153,13 @@ class Reading:
         try:
             if isinstance(value, str):
                 quantity = parse(value, spec.dimension, default_unit=unit)
-            elif isinstance(value, int | float):
+            elif isinstance(value, int | float) and not isinstance(value, bool):
                 quantity = bare(value, spec.dimension, unit)
             else:
                 self.wrong("type", f"{_what(value)} where a quantity was due; write a text such as \"1 {unit}\"", path)
                 return None
         except UnitError as refused:
-            self.wrong(refused.code, str(refused), path)
+            self.wrong("range" if _huge(value) else refused.code, str(refused), path)
             return None
         if self._outside(quantity.value, spec):
             bounds = _bounds(spec, lambda bound: spell(bound, unit, spec.dimension, 6))
@@ -139,7 +168,7 @@ class Reading:
         return quantity if spec.dimension in KEEPS_BASIS else quantity.value
 
     def _pairs(self, value: Any, spec: Pairs, path: Path) -> tuple[tuple[Any, Any], ...] | None:
-        if not isinstance(value, list) or not value:
+        if value == [] or not isinstance(value, list):
             self.wrong("type", f"{_what(value)} where a list of pairs was due; write [[1, 2], [3, 4]]", path)
             return None
         pairs = []
@@ -195,7 +224,16 @@ def nearest(word: str, known: Iterable[str], count: int = 1) -> str:
     return f"known are {shown}"
 
 
-def _bounds(spec: Number | Measure, spelled: Any) -> str:
+def _huge(value: float) -> bool:
+    """Whether a whole number is too large to be a float."""
+    return isinstance(value, int) and abs(value) > sys.float_info.max
+
+
+def _plain(number: float) -> str:
+    return f"{number:g}"
+
+
+def _bounds(spec: Number | Measure, spelled: Callable[[float], str]) -> str:
     parts = []
     if math.isfinite(spec.low):
         parts.append(("above " if spec.above else "at least ") + spelled(spec.low))
@@ -209,10 +247,16 @@ def _what(value: Any) -> str:
         return f"the text {value[:40]!r}" + ("..." if len(value) > 40 else "")
     if isinstance(value, bool):
         return str(value).lower()
+    if isinstance(value, int) and _huge(value):
+        return "a number of hundreds of digits"
     if isinstance(value, int | float):
         return f"the number {value}"
+    if value == []:
+        return "an empty list"
     return _KINDS.get(type(value), "a date or time")
 
 
-def _example(kind: type) -> str:
-    return "true or false without quotes" if kind is bool else 'it in quotes: "..."'
+def _example(kind: type, value: Any) -> str:
+    if kind is bool:
+        return "true or false without quotes"
+    return f'"{value}" in quotes' if isinstance(value, int | float) else 'a text in quotes: "..."'

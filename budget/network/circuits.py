@@ -187,7 +187,7 @@ def _index(layout: Layout, in_zone: Floats, largest: Floats, held: Floats) -> tu
         if zone.outer < 0:
             marked[number] = True
         elif marked[zone.outer]:
-            marked[number] = held[number] >= largest[zone.outer] * (1.0 - TIE)
+            marked[number] = held[number] >= largest[zone.outer] - TIE * abs(largest[zone.outer])
     terminals = layout.terminals
     with np.errstate(invalid="ignore"):
         tied = in_zone >= largest[terminals.zone] - TIE * np.abs(largest[terminals.zone])

@@ -5,6 +5,8 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
+import numpy as np
+
 from budget.network.arrays import Layout
 from budget.network.circuits import Circuits, find_circuits
 from budget.network.hydraulics import Hydraulics, flow_and_drops
@@ -59,6 +61,7 @@ class Computed:
 
 def compute(layout: Layout) -> Computed:
     """Compute a run that was laid out: flows, drops, circuits, margins and take-up, on whole arrays."""
-    drops = flow_and_drops(layout)
-    circuits = find_circuits(layout, drops)
-    return Computed(layout, drops, circuits, take_up(layout, drops, circuits))
+    with np.errstate(all="ignore"):  # what can't be computed is NaN on purpose
+        drops = flow_and_drops(layout)
+        circuits = find_circuits(layout, drops)
+        return Computed(layout, drops, circuits, take_up(layout, drops, circuits))

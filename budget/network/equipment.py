@@ -7,7 +7,18 @@ from collections import defaultdict
 
 import numpy as np
 
-from budget.description import Description, Device, Finding, Item, Path, Quantity, Section, Terminal, error
+from budget.description import (
+    Description,
+    Device,
+    Finding,
+    Item,
+    Path,
+    Quantity,
+    Section,
+    Source,
+    Terminal,
+    error,
+)
 from budget.network import results
 from budget.network.arrays import DeviceUse, Floats, Ints, Items, Terminals
 from budget.network.media import Media, pascals, volume
@@ -46,17 +57,17 @@ class EquipmentRows:
         for id_, legs in self.topology.section_legs.items():
             section = self.description.sections[id_]
             density = self._leg_density(legs[0])
-            for item in section.items:
+            for item in self._items_of(section):
                 self._add(item, legs[0], density, legs[0], math.nan)
         for number, id_ in enumerate(self.terminals.ids):
             terminal = self.description.terminals[id_]
             reference, neck = self._terminal_reference(terminal, number)
-            for item in terminal.items:
+            for item in self._items_of(terminal):
                 self._need_reference(item, reference, neck)
                 density = float(self.terminals.density[number])
                 self._add(item, self._first_terminal + number, density, reference, neck)
         for number, source in enumerate(self.description.sources.values()):
-            for item in source.items:
+            for item in self._items_of(source):
                 self._add(item, self._first_source + number, self.media[number].supply.density, -1, math.nan)
         rows = self._numbers
 
@@ -133,6 +144,15 @@ class EquipmentRows:
             open_k=min((k for _, k in device.k), default=math.nan),
             zone=-1,
         )
+
+    def _items_of(self, owner: Section | Terminal | Source) -> tuple[Item, ...]:
+        """Return what stands in line on an owner; where its list could not be read, one item of unknown drop."""
+        place: Path = (*owner.path, "item")
+        if "item" in self.broken.get(owner.path, set()) and any(
+            finding.path == place and finding.level == "error" for finding in self.description.findings
+        ):
+            return (Item(place, "item"),)
+        return owner.items
 
     def _leg_density(self, leg: int) -> float:
         found = self.topology.legs[leg]

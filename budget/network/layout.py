@@ -69,7 +69,8 @@ def _broken(description: Description) -> Broken:
     return broken
 
 
-_RUN_KEYS = {"pipe", "duct", "size", "bore", "length", "fittings", "compression", "fitting_method"}
+_GEOMETRY_KEYS = {"pipe", "duct", "size", "bore"}
+_LOSS_KEYS = {"fittings", "fitting_method"}
 
 
 def _legs(
@@ -98,23 +99,26 @@ def _legs(
                 else:
                     text = "rise counts in an open liquid circuit only; remove it, or open the source"
                     findings.append(error("rise", text, (*section.path, "rise")))
+        bad = broken.get(owner.path, set())
+        if not leg.run_out and leg.first and "rise" in bad:
+            rise[number] = math.nan
         medium = media[leg.source].supply if leg.outward else media[leg.source].back
         columns["density"][number], columns["viscosity"][number] = medium.density, medium.viscosity
         columns["length"][number] = math.nan if run.length is None else run.length
         rough = run.line.roughness if run.line else None
-        columns["roughness"][number] = math.nan if rough is None else rough
+        columns["roughness"][number] = math.nan if rough is None or "compression" in bad else rough
         if run.diversity is not None:
             columns["diversity"][number] = run.diversity
         if run.line is not None and run.line.flexible:
             compression[number] = run.compression
-        geometries.append(run.geometry)
+        geometries.append(None if bad & _GEOMETRY_KEYS else run.geometry)
         key = (owner.path, leg.run_out)
         if key not in known_losses:
             known_losses[key] = _losses(description, run, findings)
         losses.append(known_losses[key])
         constant[number] = sum(loss.count * loss.constant for loss in losses[-1])
         per_reynolds[number] = sum(loss.count * loss.per_reynolds for loss in losses[-1])
-        if broken.get(owner.path, set()) & _RUN_KEYS:
+        if bad & _LOSS_KEYS:
             constant[number] = math.nan
     area, diameter, laminar = _cross_sections(geometries)
     stretch = np.where(compression > 0.0, shapes.flexible_factor(compression, diameter), 1.0)
@@ -194,7 +198,8 @@ def _hydraulic_diameter(geometry: Geometry) -> float:
     return float(make(geometry.width, geometry.height).hydraulic_diameter)
 
 
-_TERMINAL_KEYS = {"drop", "at", "exponent", "static_drop", "neck", "outlet_pressure", "rise", "item"}
+_TERMINAL_DROP_KEYS = {"drop", "at", "exponent", "static_drop", "neck"}
+_FLOW_KEYS = {"flow", "load"}
 
 
 def _terminals(
@@ -209,9 +214,15 @@ def _terminals(
     rows: dict[str, list[float]] = defaultdict(list)
     flags: dict[str, list[bool]] = defaultdict(list)
     places: dict[str, list[int]] = defaultdict(list)
-    sides = {(topology.terminal_source[id_], id_ in topology.outward): 0 for id_ in ids}
+    sides: dict[tuple[int, bool], int] = defaultdict(int)
+    """Number of terminals on each side of each source."""
+    stated_sides: set[tuple[int, bool]] = set()
     for id_ in ids:
-        sides[topology.terminal_source[id_], id_ in topology.outward] += 1
+        side = topology.terminal_source[id_], id_ in topology.outward
+        sides[side] += 1
+        terminal = description.terminals[id_]
+        if terminal.flow is not None or terminal.load is not None or broken.get(terminal.path, set()) & _FLOW_KEYS:
+            stated_sides.add(side)
     for id_ in ids:
         terminal = description.terminals[id_]
         source = topology.terminal_source[id_]
@@ -220,14 +231,13 @@ def _terminals(
         own = supply if discharge else media[source].back
         bad = broken.get(terminal.path, set())
         mass = _mass(description, media[source], id_, findings)
-        other = sides.get((source, not discharge), 0)
-        lone = topology.kinds[source] == "air" and sides[source, discharge] == 1 and other > 0
-        unstated = terminal.flow is None and terminal.load is None
-        flags["lone"].append(lone and unstated and not bad & {"flow", "load"})
-        if unstated and not flags["lone"][-1] and not bad & {"flow", "load"}:
+        alone = topology.kinds[source] == "air" and sides[source, discharge] == 1
+        unstated = terminal.flow is None and terminal.load is None and not bad & _FLOW_KEYS
+        flags["lone"].append(unstated and alone and (source, not discharge) in stated_sides)
+        if unstated and not flags["lone"][-1]:
             findings.append(error("no-flow", "the terminal has no flow; state flow or load", terminal.path))
         flags["discharge"].append(discharge)
-        flags["broken"].append(bool(bad & _TERMINAL_KEYS))
+        flags["broken"].append(bool(bad & _TERMINAL_DROP_KEYS))
         places["source"].append(source)
         places["zone"].append(zone[id_])
         places["out"].append(topology.outward.get(id_, AT_SOURCE))
@@ -239,8 +249,9 @@ def _terminals(
         rows["exponent"].append(terminal.exponent)
         rows["static_drop"].append(_pascals(terminal.static_drop, own.density, math.nan))
         rows["neck"].append(neck_area(terminal.neck))
-        rows["rise"].append(terminal.rise)
-        rows["outlet"].append(_pascals(terminal.outlet_pressure, own.density, 0.0))
+        rows["rise"].append(math.nan if "rise" in bad else terminal.rise)
+        outlet = _pascals(terminal.outlet_pressure, own.density, 0.0)
+        rows["outlet"].append(math.nan if "outlet_pressure" in bad else outlet)
         if topology.kinds[source] != "open":
             for key, stated in (("rise", terminal.rise != 0.0), ("outlet_pressure", terminal.outlet_pressure)):
                 if stated:

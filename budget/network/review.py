@@ -49,7 +49,7 @@ def _sources(run: Computed) -> Iterator[Finding]:
             if over > SMALL:
                 yield warning(
                     "heading",
-                    f"{heading} of {source.id} takes {{0}}, {{1}} above its budget",
+                    f"{heading} of {_plain(source.id)} takes {{0}}, {{1}} above its budget",
                     ("budget", heading),
                     (result.spent[heading], "pressure"),
                     (over, "pressure"),
@@ -83,7 +83,7 @@ def _zones(run: Computed) -> Iterator[Finding]:
         use = run.layout.devices[zone.device]
         yield error(
             "set-point",
-            f"the set point of {use.device.name!r}, {{0}}, is below the largest circuit behind it, {{1}}; raise it",
+            f"the set point of {_plain(repr(use.device.name))}, {{0}}, is below the largest circuit behind it, {{1}}; raise it",
             ("device", use.device.name, "set_point"),
             (zone.set_point, "pressure"),
             (largest, "pressure"),
@@ -269,7 +269,7 @@ def _devices(run: Computed) -> Iterator[Finding]:
         if table and use.device.holds is None and adjusted.setting is None and not math.isnan(drop):
             yield warning(
                 "device-range",
-                f"{use.device.name!r} can't be set to drop {{0}}: outside its setting table; choose another size",
+                f"{_plain(repr(use.device.name))} can't be set to drop {{0}}: outside its setting table; choose another size",
                 path,
                 (drop, "pressure"),
             )
@@ -320,20 +320,21 @@ def accept(findings: tuple[Finding, ...], description: Description) -> tuple[Fin
     }
     if not accepted:
         return findings
-    used = set()
+    used: set[tuple[Path, str]] = set()
     settled = []
     for finding in findings:
         key = (finding.path[:2], finding.code)
-        if finding.level == "warning" and key in accepted:
+        if finding.level != "error" and key in accepted:
             used.add(key)
-            finding = note(
-                finding.code, f"{finding.message} (accepted: {_plain(accepted[key])})", finding.path, *finding.figures
-            )
+            reason = _plain(accepted[key]) if finding.figures else accepted[key]
+            message = f"{finding.message} (accepted: {reason})"
+            finding = note(finding.code, message, finding.path, *finding.figures)
         settled.append(finding)
-    for path, code in accepted.keys() - used:
+    for path, code in (key for key in accepted if key not in used):
         settled.append(note("accept-unused", f"{code!r} was accepted here and does not occur", (*path, "accept", code)))
     return tuple(settled)
 
 
-def _plain(reason: str) -> str:
-    return reason.replace("{", "{{").replace("}", "}}")
+def _plain(text: str) -> str:
+    """Return a text of the file's own as a part of a sentence with figures."""
+    return text.replace("{", "{{").replace("}", "}}")

@@ -144,7 +144,11 @@ class _Rooting:
                 "wrong-connection", id_, f"{target!r} is on the way back; fluid can't reach {id_!r} from it", key
             )
             return None
-        if key == "to" and other.from_ is not None and not _has_return(known, other):
+        if key == "to" and other.from_ is not None and known.fluid.gas:
+            text = f"{target!r} is on the discharge side; to needs the suction side"
+            self._wrong("wrong-connection", id_, text, key)
+            return None
+        if key == "to" and other.from_ is not None and not other.run.paired:
             self._wrong("unpaired", id_, f"{target!r} has no return leg to discharge into; make it paired", key)
             return None
         return target
@@ -153,10 +157,6 @@ class _Rooting:
         section = self.description.sections[id_]
         key = key or ("from" if section.from_ is not None else "to")
         self.topology.findings.append(error(code, message, (*section.path, key)))
-
-
-def _has_return(description: Description, section: Section) -> bool:
-    return section.run.paired and section.from_ is not None and not description.fluid.gas
 
 
 def _add_section_legs(description: Description, topology: Topology, rooted: dict[str, int], id_: str) -> None:

@@ -20,11 +20,17 @@ INDEX = "index"
 """The sign of the index circuit, a word so that it can be heard as well."""
 
 _LEGEND = (
-    "sum: along the largest circuit through the row, from the source, devices fully open. diff.: what is available at "
+    "sum: along the largest circuit through the row, from the source, with static heads, devices fully open. diff.: what is available at "
     "the connection of the row. margin: what could be added there before the index circuit moves. vel. and grad.: of "
     "the supply leg where there are two. drop: both legs with what stands on them; of a terminal and of a device, its "
     "own. Of a terminal, sum is its whole circuit."
 )
+
+_LEGEND_OF_TERMINALS = (
+    "own: the drop of the terminal itself. circuit: from the source to the terminal and back, devices fully open. "
+    "excess: what no device takes up. authority: of its control item at design flow; low: when all others are shut."
+)
+_LEGEND_OF_DEVICES = "open: the drop fully open at design flow, or the least drop where that is more. drop: as set."
 
 
 def ledger(description: Description, budget: Budget, figures: Figures) -> list[str]:
@@ -206,7 +212,7 @@ def terminals(budget: Budget, figures: Figures) -> list[str]:
             plain_number(result.authority_low, 2),
             INDEX if result.index else "",
         ))  # fmt: skip
-    return table(columns, rows) if rows else []
+    return [*table(columns, rows), *wrapped(_LEGEND_OF_TERMINALS, "  ", "  ")] if rows else []
 
 
 def devices(budget: Budget, figures: Figures) -> list[str]:
@@ -236,7 +242,7 @@ def devices(budget: Budget, figures: Figures) -> list[str]:
             plain_number(device.setting),
             figures.pressure(device.signal, density),
         ))  # fmt: skip
-    return table(columns, rows) if rows else []
+    return [*table(columns, rows), *wrapped(_LEGEND_OF_DEVICES, "  ", "  ")] if rows else []
 
 
 def _devices(budget: Budget) -> Iterator[tuple[str, DeviceResult, float]]:

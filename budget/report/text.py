@@ -79,7 +79,7 @@ def _summary(description: Description, result: SourceResult, figures: Figures, b
         ("electrical power", _power(result.electrical_power, description)),
         ("specific power", "" if result.sfp is None else f"{plain_number(result.sfp, 4)} W/(m3/s)"),
         ("index terminal", ", ".join(map(plain, result.index)) or NONE),
-        ("index circuit", "; ".join(_circuit(budget, result.id, terminal) for terminal in result.index)),
+        ("index circuit", "; ".join(_circuit(description, budget, result.id, terminal) for terminal in result.index)),
     ]
     title = f": {plain(source.title)}" if source.title else ""
     return [f"Source {plain(result.id)}{title}", *labelled(pairs), "", *_spent(result, figures)]
@@ -103,16 +103,16 @@ def _power(value: float | None, description: Description) -> str:
     return f"{plain_number(to_unit(value, unit, Dimension.POWER), 4)} {unit}"
 
 
-def _circuit(budget: Budget, source: str, terminal: str) -> str:
-    path = budget.terminals[terminal].path
-    return ", ".join(map(plain, (source, *path, terminal))) if not path else _around(source, path, terminal, budget)
-
-
-def _around(source: str, path: Sequence[str], terminal: str, budget: Budget) -> str:
-    """Put the terminal where the path turns: behind the sections that lead to it, before those that lead back."""
-    outward = sum(budget.sections[id_].run.legs[0].leg in ("supply", "discharge") for id_ in dict.fromkeys(path))
+def _circuit(description: Description, budget: Budget, source: str, terminal: str) -> str:
+    """Name what an index circuit runs through, from the source's outlet to its inlet."""
+    part, path = description.terminals[terminal], budget.terminals[terminal].path
+    outward, above = 0, part.from_
+    while above in description.sections:
+        outward += 1
+        above = description.sections[above].from_
     steps = [*path[:outward], terminal, *path[outward:]]
-    return ", ".join(map(plain, [source, *steps] if outward else [*steps, source]))
+    steps = [*steps, source] if part.from_ is None else [source, *steps]
+    return ", ".join(map(plain, steps))
 
 
 def _spent(result: SourceResult, figures: Figures) -> Iterator[str]:

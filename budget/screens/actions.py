@@ -83,7 +83,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("quit", "Quit", ("ctrl+q",), (*EVERYWHERE, "list", "entry")),
     Action("choose", "Take what is marked", ("enter",), ("list", "findings"), "take", 1),
     Action("leave", "Leave things as they were", ("escape", "ctrl+c"), ("list", "entry"), "leave", 3),
-    Action("accept", "Enter what is written", ("enter",), ("entry",), "enter", 1),
+    Action("accept", "Enter what is written", ("enter",), ("entry",), "take", 1),
     Action("accept_next", "Enter it and edit the next cell", ("tab",), ("entry",), "next cell", 2),
     Action("accept_previous", "Enter it and edit the cell before", ("shift+tab",), ("entry",)),
     Action("pick_instead", "Pick from a list instead", ("down",), ("entry",), "pick"),

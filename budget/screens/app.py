@@ -25,7 +25,7 @@ from budget.screens.ledger import Ledger, Mark
 from budget.screens.rows import View
 from budget.screens.safe import plain
 from budget.screens.themes import Theme
-from budget.screens.toolkit import AsciiFilter, SafeFilter, widget_theme
+from budget.screens.toolkit import AsciiFilter, FrugalScreen, SafeFilter, widget_theme
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -52,6 +52,8 @@ class BudgetApp(App[int], inherit_bindings=False):
     #middle > * { width: 1fr; height: 1fr; }
     #middle > #beside { width: 40%; }
     #foot { height: 2; }
+    #text { border: none; padding: 0; }
+    #text:focus { border: none; }
     """
 
     def __init__(
@@ -79,6 +81,10 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.choosers: dict[str, Chooser] = {}
         self._text: TextScreen | None = None
         self._manual: ManualScreen | None = None
+
+    def get_default_screen(self) -> FrugalScreen:
+        """Paint on a screen that sends no more than it must."""
+        return FrugalScreen()
 
     def compose(self) -> ComposeResult:
         """Budget line, ledger, foot."""
@@ -164,17 +170,14 @@ class BudgetApp(App[int], inherit_bindings=False):
         """Show a snapshot; with the one before it, by how much the required pressure changed."""
         view = View(snapshot)
         self.ledger.show(view)
-        source = self.ledger.source
-        if before is not None:
-            old, new = before.budget.sources.get(source), snapshot.budget.sources.get(source)
-            figures = Figures(snapshot.description)
-            changed = figures.change(old.required, new.required) if old is not None and new is not None else ""
-            self.change = (source, changed)
-        self._show_budget(view)
+        change = _change(before, snapshot, self.ledger.source) if before is not None else self.change
+        if snapshot is self.document.snapshot:
+            self.change = change
+        self._show_budget(view, change)
 
-    def _show_budget(self, view: View) -> None:
+    def _show_budget(self, view: View, change: tuple[str, str]) -> None:
         source = self.ledger.source
-        changed = self.change[1] if self.change[0] == source else ""
+        changed = change[1] if change[0] == source else ""
         self.budget_line.show(view, source, changed, modified=self.document.dirty)
 
     def apply(self, edit: Edit, label: str, path: Path | None = None) -> None:
@@ -194,7 +197,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         """Tell at the foot what is under the cursor, and which keys work here."""
         self.foot.tell(self.place, turning.about(self))
         if self.ledger.source != self.budget_line.source:
-            self._show_budget(self.ledger.view)
+            self._show_budget(self.ledger.view, self.change)
         if self.entry is None:
             turning.follow(self)
 
@@ -250,3 +253,11 @@ class BudgetApp(App[int], inherit_bindings=False):
         if self.at == "list":
             return turning.write(self, event.key, event.character)
         return False
+
+
+def _change(before: Snapshot, after: Snapshot, source: str) -> tuple[str, str]:
+    """Return a source and by how much what it requires changed, spelled."""
+    old, new = before.budget.sources.get(source), after.budget.sources.get(source)
+    if old is None or new is None:
+        return source, ""
+    return source, Figures(after.description).change(old.required, new.required)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
 
@@ -15,6 +16,7 @@ HEAD = 2
 """Lines above the entries: what the list is and the filter, and the headings."""
 
 _WIDEST = 34
+_FIGURE = re.compile(r"-|-?[0-9.]+(e[+-]?[0-9]+)?!?|")
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,15 +114,15 @@ class Chooser(Lines):
         """Spell the title, the headings, or an entry."""
         if y == 0:
             return self._title(width)
-        widths = self._widths(width)
+        widths, right = self._shape(width)
         if y == 1:
-            return self._cells(self.offer.heads, widths, "heading")
+            return self._cells(self.offer.heads, widths, right, "heading")
         place = self.top + y - HEAD
         if place >= len(self.kept):
             return ((f" {self.offer.empty}", "faint"),) if place == 0 else ()
         choice = self.kept[place]
         roles = f"{choice.role} cursor" if place == self.cursor and not self.passive else choice.role
-        return self._cells(self._all_cells(choice), widths, roles)
+        return self._cells(self._all_cells(choice), widths, right, roles)
 
     def _title(self, width: int) -> Iterator[Piece]:
         yield clip(f" {self.offer.title}  ", width), "title"
@@ -129,13 +131,17 @@ class Chooser(Lines):
         if not self.passive:
             yield f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}", "faint"
 
-    def _cells(self, cells: Sequence[str], widths: Sequence[int], roles: str) -> Iterator[Piece]:
+    @staticmethod
+    def _cells(cells: Sequence[str], widths: Sequence[int], right: Sequence[bool], roles: str) -> Iterator[Piece]:
         yield " ", roles
-        for text, width in zip(cells, widths, strict=False):
-            yield fit(clip(text, max(0, width - 2)), width), roles
+        for text, width, ranged_right in zip(cells, widths, right, strict=False):
+            yield fit(clip(text, max(0, width - 2)), width - 2, right=ranged_right) + "  ", roles
 
-    def _widths(self, width: int) -> list[int]:
-        """Return the width of each column: that of its widest text in view, the last takes what remains."""
+    def _shape(self, width: int) -> tuple[list[int], list[bool]]:
+        """Return the width of each column, that of its widest text in view, and whether it holds figures.
+
+        The last takes what remains.
+        """
         view = [self.offer.heads, *(self._all_cells(choice) for choice in self.kept[self.top : self.top + self.page])]
         columns = max((len(cells) for cells in view), default=1)
         widths = [
@@ -143,7 +149,11 @@ class Chooser(Lines):
             for column in range(columns)
         ]
         widths[-1:] = [max(8, width - 1 - sum(widths[:-1]))]
-        return widths
+        right = [
+            column + 1 < columns and all(_FIGURE.fullmatch(cells[column]) for cells in view[1:] if column < len(cells))
+            for column in range(columns)
+        ]
+        return widths, right
 
     def _all_cells(self, choice: Choice) -> tuple[str, ...]:
         if self.offer.more is None:

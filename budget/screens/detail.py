@@ -105,7 +105,7 @@ class _Computed:
             if value is not None:
                 yield Line(f"  {label}", self.figures.text(value, Dimension.POWER, unit=True))
         if result.sfp is not None:
-            yield Line("  specific fan power", f"{plain_number(result.sfp)} W/(m3/s)")
+            yield Line("  specific power", f"{plain_number(result.sfp)} W/(m3/s)")
         yield Line("spent, of its budget", "", "heading")
         for heading, value in result.spent.items():
             limit = result.budget.get(heading)

@@ -45,8 +45,12 @@ class Foot(Lines):
         self.repaint()
 
     def line(self, y: int, width: int) -> Iterable[Piece]:
-        """Spell the message, or the keys."""
-        return self._first(width) if y == 0 else self._keys(width)
+        """Spell the message or the field, and below it the keys, or what is wrong with what was written."""
+        if y == 0:
+            return self._first(width)
+        if self.field is not None and self.message:
+            return ((clip(f" {self.message}", width), self.role),)
+        return self._keys(width)
 
     def _first(self, width: int) -> Iterator[Piece]:
         if self.field is None:
@@ -55,10 +59,7 @@ class Foot(Lines):
             return
         label = clip(f" {self.label} ", width // 2)
         yield label, "heading"
-        room = width - width_of(label)
-        need = room if not self.message else min(room, max(16, width_of(self.field.text) + 2))
-        yield from field_pieces(self.field, need)
-        yield clip(f" {self.message}", room - need), self.role
+        yield from field_pieces(self.field, width - width_of(label))
 
     def _keys(self, width: int) -> Iterator[Piece]:
         taken = 0

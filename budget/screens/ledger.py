@@ -170,15 +170,16 @@ class Ledger(Lines):
             yield _aligned(clip(unit, placed.width - 1), placed), "faint"
 
     def _row(self, row: Row, *, current: bool) -> Iterator[Piece]:
-        base = "row" if current else ""
-        yield (INDEX_SIGN if self._on_index(row) else " "), f"index {base}"
+        yield (INDEX_SIGN if self._on_index(row) else " "), "index"
         cells = self.view.cells(row)
         for placed in self.placed:
             key = placed.column.key
             cell = cells.get(key, EMPTY)
-            roles = f"{cell.role} {base}"
+            roles = cell.role
             if current and key == self.column:
                 roles = f"{cell.role} cursor"
+            elif current and key == "id":
+                roles = f"{cell.role} row"
             text = self._indented(row, cell.text, placed.width - 1) if key == "id" else cell.text
             yield _aligned(_fitting(text, placed), placed, cell.sign or " "), roles
 
@@ -203,7 +204,7 @@ class Ledger(Lines):
             left.append((text, roles))
             x += width_of(text)
         yield from left
-        yield " " * (start - x), "row"
+        yield " " * (start - x), ""
         yield from field_pieces(field, need)
         x = start + need
         if self.problem:
@@ -267,7 +268,7 @@ def _behind(pieces: list[Piece], start: int) -> Iterator[Piece]:
     for text, roles in pieces:
         if x >= start:
             if not begun:
-                yield " " * (x - start), "row"
+                yield " " * (x - start), ""
                 begun = True
             yield text, roles
         x += width_of(text)

@@ -18,6 +18,10 @@ Piece = tuple[str, str]
 """A text and the role of its style; roles are joined by a space, the later one wins."""
 
 
+GAP = 6
+"""Cells between two changes that are sent rather than skipped."""
+
+
 class Lines(Widget):
     """Lines of text that a subclass spells in `line`; `repaint` sends what differs from what is on the screen."""
 
@@ -49,14 +53,13 @@ class Lines(Widget):
         for y in range(self.size.height):
             new = self._spell(y)
             old = self._painted.get(y)
-            if old is None or old.cell_length != new.cell_length:
-                span = (0, self.size.width)
-            elif old == new:
+            if old == new:
                 continue
-            else:
-                span = differing(old, new)
             self._painted[y] = new
-            self.refresh(Region(span[0], y, span[1] - span[0], 1))
+            spans = [(0, self.size.width)]
+            if old is not None and old.cell_length == new.cell_length:
+                spans = differing(old, new)
+            self.refresh(*(Region(first, y, last - first, 1) for first, last in spans))
 
     def wear(self, theme: Theme) -> None:
         """Put on another theme."""
@@ -87,18 +90,26 @@ class Lines(Widget):
         return Strip(segments).adjust_cell_length(width, self.style_of(""))
 
 
-def differing(old: Strip, new: Strip) -> tuple[int, int]:
-    """Return the first cell in which two lines of one length differ, and the one behind the last."""
+def differing(old: Strip, new: Strip) -> list[tuple[int, int]]:
+    """Return the spans of cells in which two lines of one length differ: first cell, and the one behind the last.
+
+    Spans that almost touch are one: to place the cursor costs as much as a few cells do.
+    """
     before, after = _cells(old), _cells(new)
-    length = min(len(before), len(after))
-    first = next((x for x in range(length) if before[x] != after[x]), length)
-    last = next((x for x in range(length - 1, first - 1, -1) if before[x] != after[x]), first)
-    while first > 0 and not after[first][0]:
-        first -= 1
-    end = last + 1
-    while end < len(after) and not after[end][0]:
-        end += 1
-    return first, end
+    spans: list[tuple[int, int]] = []
+    for x in range(len(after)):
+        if x < len(before) and before[x] == after[x]:
+            continue
+        first, last = x, x + 1
+        while first > 0 and not after[first][0]:
+            first -= 1
+        while last < len(after) and not after[last][0]:
+            last += 1
+        if spans and first - spans[-1][1] <= GAP:
+            spans[-1] = (spans[-1][0], max(last, spans[-1][1]))
+        else:
+            spans.append((first, last))
+    return spans
 
 
 def _cells(strip: Strip) -> list[tuple[str, Style | None]]:

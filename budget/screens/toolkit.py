@@ -1,17 +1,53 @@
-"""What the toolkit gets from us: filters for whatever any widget paints, and the theme for its own widgets."""
+"""What the toolkit gets from us: a screen that sends no more than it must, filters for whatever any widget paints,
+and the theme for its own widgets.
+"""
 
 from __future__ import annotations
 
 from dataclasses import replace
 
+from rich.console import Console
+from rich.control import Control
 from rich.segment import Segment
+from textual._compositor import ChopsUpdate, Compositor
 from textual.color import Color
 from textual.filter import LineFilter
+from textual.screen import Screen
 from textual.theme import BUILTIN_THEMES
 from textual.theme import Theme as WidgetTheme
 
 from budget.screens.safe import ascii_only, harmless
 from budget.screens.themes import Theme, hex_of
+
+
+class FrugalScreen(Screen[None]):
+    """A screen that sends the cells that were asked for and none to their left."""
+
+    def __init__(self) -> None:
+        """Make it with its own compositor."""
+        super().__init__(id="_default")
+        self._compositor = _FrugalCompositor()
+
+
+class _FrugalCompositor(Compositor):
+    def render_partial_update(self) -> ChopsUpdate | None:
+        update = super().render_partial_update()
+        return _FrugalUpdate(update.chops, update.spans, update.chop_ends) if update is not None else None
+
+
+class _FrugalUpdate(ChopsUpdate):
+    """The toolkit's own update begins each span at the left edge of everything that changed on the screen."""
+
+    def render_segments(self, console: Console) -> str:
+        sent: list[str] = []
+        for y, first, last in self.spans:
+            for end, (x, strip) in zip(self.chop_ends[y], self.chops[y].items(), strict=False):
+                if strip is None or x >= last or end <= first:
+                    continue
+                left = max(x, first)
+                sent.append(Control.move_to(left, y).segment.text)
+                sent.append(strip.crop(left - x, min(end, last) - x).render(console))
+        return "".join(sent)
 
 
 class SafeFilter(LineFilter):

@@ -53,8 +53,9 @@ def save(path: Path, content: bytes, stamp: Stamp | None) -> Stamp:
     The bytes must be TOML. Raises ChangedOnDisk where other bytes are on disk by now, StorageError where it can't be
     written; the old file is untouched then.
     """
-    if read_bytes(content).data is None:
-        raise StorageError(f"{path} was not written: the text is not TOML")
+    source = read_bytes(content)
+    if source.data is None:
+        raise StorageError(f"{path} was not written: {source.findings[0].message}")
     target = _real(path)
     if stamp is not None:
         _check_unchanged(target, stamp)
@@ -85,8 +86,12 @@ def _real(path: Path) -> Path:
         target = path.resolve()
     except (OSError, RuntimeError) as wrong:
         raise StorageError(f"{path} could not be followed: a loop of symbolic links") from wrong
+    if target.is_symlink():
+        raise StorageError(f"{path} could not be followed: a loop of symbolic links")
     if target.exists() and not target.is_file():
         raise StorageError(f"{path} is not a regular file; save under another name")
+    if target.exists() and not os.access(target, os.W_OK):
+        raise StorageError(f"{path} is not writable; save under another name")
     return target
 
 
@@ -112,8 +117,10 @@ def _must_stay(target: Path) -> bool:
     if not target.exists():
         return False
     status = target.stat()
-    foreign = hasattr(os, "geteuid") and os.geteuid() not in (0, status.st_uid)
-    return status.st_nlink > 1 or foreign or not os.access(target.parent, os.W_OK | os.X_OK)
+    keeps_owner = os.geteuid() == 0 or (
+        os.geteuid() == status.st_uid and status.st_gid in {os.getegid(), *os.getgroups()}
+    )
+    return status.st_nlink > 1 or not keeps_owner or not os.access(target.parent, os.W_OK | os.X_OK)
 
 
 def _replace(target: Path, content: bytes) -> None:
@@ -122,10 +129,10 @@ def _replace(target: Path, content: bytes) -> None:
         try:
             _write(handle, content)
             if target.exists():
-                status = target.stat()
-                os.fchmod(handle, stat.S_IMODE(status.st_mode))
-                if (status.st_uid, status.st_gid) != (os.geteuid(), os.getegid()):
+                status, own = target.stat(), os.fstat(handle)
+                if (status.st_uid, status.st_gid) != (own.st_uid, own.st_gid):
                     os.fchown(handle, status.st_uid, status.st_gid)
+                os.fchmod(handle, stat.S_IMODE(status.st_mode))
             else:
                 os.fchmod(handle, 0o666 & ~_umask())
             os.fsync(handle)
@@ -139,15 +146,31 @@ def _replace(target: Path, content: bytes) -> None:
 
 
 def _write_in_place(target: Path, content: bytes) -> None:
-    handle = os.open(target, os.O_WRONLY)
+    """Write over a file's bytes; where that fails the old ones, which have their space, are put back."""
+    handle = os.open(target, os.O_RDWR)
     try:
-        if hasattr(os, "posix_fallocate") and content:
-            os.posix_fallocate(handle, 0, len(content))
-        _write(handle, content)
-        os.ftruncate(handle, len(content))
-        os.fsync(handle)
+        old = _read(handle)
+        try:
+            if hasattr(os, "posix_fallocate") and content:
+                os.posix_fallocate(handle, 0, len(content))
+            _overwrite(handle, content)
+        except BaseException:
+            _overwrite(handle, old)
+            raise
     finally:
         os.close(handle)
+
+
+def _read(handle: int) -> bytes:
+    with os.fdopen(os.dup(handle), "rb") as stream:
+        return stream.read()
+
+
+def _overwrite(handle: int, content: bytes) -> None:
+    os.lseek(handle, 0, os.SEEK_SET)
+    _write(handle, content)
+    os.ftruncate(handle, len(content))
+    os.fsync(handle)
 
 
 def _write(handle: int, content: bytes) -> None:

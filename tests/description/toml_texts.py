@@ -14,9 +14,7 @@ NAMES = st.one_of(
     st.text(alphabet="ab é.\"'\\#[]{}=,\t", max_size=4),
 )
 STRINGS = st.one_of(
-    st.sampled_from(
-        ["", "12.4 m", "DN40", "# no comment", "]", "}", 'a"b', "it's", "\\", "a\nb", "\x1b", "'''"]
-    ),
+    st.sampled_from(["", "12.4 m", "DN40", "# no comment", "]", "}", 'a"b', "it's", "\\", "a\nb", "\x1b", "'''"]),
     st.text(alphabet="ab\"'\\\n\té\u2028#,]}=\x7f\u0000😀", max_size=8),
 )
 SCALARS = st.one_of(
@@ -113,14 +111,10 @@ class _Writer:
     def statement(self, names: tuple[str, ...], value: Any) -> str:
         sign = self.one_of("=", " = ", "   =\t")
         text = self.indent() + self.key(names) + sign + self.value(value)
-        return self.gap() + text + self.one_of(*COMMENTS) + self.newline
+        return str(self.gap() + text + self.one_of(*COMMENTS) + self.newline)
 
     def gap(self) -> str:
-        return str(
-            self.one_of(
-                "", "", "", self.newline, f"# [a]{self.newline}", f"{self.newline}  # é{self.newline}"
-            )
-        )
+        return str(self.one_of("", "", "", self.newline, f"# [a]{self.newline}", f"{self.newline}  # é{self.newline}"))
 
     def indent(self) -> str:
         return str(self.one_of("", "", "  ", "\t"))

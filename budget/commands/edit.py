@@ -1,0 +1,21 @@
+"""`budget edit`: a run in the terminal app."""
+
+from __future__ import annotations
+
+import argparse
+
+
+def add_arguments(parser: argparse.ArgumentParser) -> None:
+    """Take a file, and how it is shown."""
+    parser.add_argument("file", metavar="FILE", help="a run's file")
+    parser.add_argument("--ascii", action="store_true", help="draw with plain characters, for a terminal without UTF-8")
+    parser.add_argument("--mouse", action="store_true", help="let the mouse work in the app")
+
+
+def run(options: argparse.Namespace) -> int:
+    """Open the app; return its exit status."""
+    from pathlib import Path
+
+    from budget import screens
+
+    return screens.run(Path(options.file), ascii=options.ascii, mouse=options.mouse) or 0

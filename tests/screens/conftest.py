@@ -1,0 +1,97 @@
+"""An app without a terminal, on a run small enough to check by hand."""
+
+from __future__ import annotations
+
+import asyncio
+from collections.abc import Awaitable, Callable
+from pathlib import Path
+
+import pytest
+from textual.pilot import Pilot
+
+from budget.document import Document
+from budget.screens.app import BudgetApp
+from budget.screens.config import Config
+from budget.screens.lines import Lines
+from budget.screens.themes import terminal_theme
+
+EXAMPLES = Path(__file__).parents[2] / "examples"
+SMALL = (EXAMPLES / "first-look.toml").read_text()
+
+
+class Hands:
+    """Presses keys and reads the screen."""
+
+    def __init__(self, app: BudgetApp, pilot: Pilot[int]) -> None:
+        self.app, self.pilot = app, pilot
+
+    async def press(self, *keys: str) -> None:
+        """Press keys by name."""
+        await self.pilot.press(*keys)
+        await self.pilot.pause()
+
+    async def type(self, text: str) -> None:
+        """Type letters."""
+        await self.pilot.press(*(NAMES.get(c, c) for c in text))
+        await self.pilot.pause()
+
+    async def at(self, id_: str, column: str = "length") -> None:
+        """Put the cursor on a row and column."""
+        row = next(row for row in self.app.ledger.rows if row.id == id_ and row.kind != "item")
+        self.app.ledger.go_to(row.path, column)
+        self.app.tell()
+        await self.pilot.pause()
+
+    def lines(self, widget: Lines | None = None) -> list[str]:
+        """What a widget shows, the ledger where none is named."""
+        shown = widget or self.app.front
+        return [
+            "".join(segment.text for segment in shown.render_line(y)).rstrip() for y in range(shown.size.height)
+        ]
+
+    def row(self, id_: str) -> str:
+        """The line of the ledger that begins with an ID."""
+        return next(line for line in self.lines(self.app.ledger) if line.lstrip("» ").split(" ")[0] == id_)
+
+    @property
+    def foot(self) -> str:
+        """What is said at the foot."""
+        return self.lines(self.app.foot)[0].strip()
+
+    @property
+    def budget(self) -> str:
+        """What the budget line says."""
+        return "\n".join(self.lines(self.app.budget_line))
+
+    @property
+    def text(self) -> str:
+        """The document's text."""
+        return self.app.document.snapshot.text
+
+
+NAMES = {
+    " ": "space", ".": "full_stop", '"': "quotation_mark", "=": "equals_sign", "-": "minus", "/": "slash",
+    "{": "left_curly_bracket", "}": "right_curly_bracket", "_": "underscore", ",": "comma", "%": "percent_sign",
+}  # fmt: skip
+
+Play = Callable[[Hands], Awaitable[None]]
+Stage = Callable[..., None]
+
+
+@pytest.fixture
+def play(tmp_path: Path) -> Stage:
+    """Run a play of key presses on the app without a terminal."""
+
+    def run(act: Play, text: str = SMALL, *, size: tuple[int, int] = (80, 24), ascii_only: bool = False) -> None:
+        path = tmp_path / "run.toml"
+        path.write_text(text, encoding="utf-8", newline="")
+
+        async def stage() -> None:
+            app = BudgetApp(Document.open(path), Config(), terminal_theme(), ascii_only=ascii_only, notes=())
+            async with app.run_test(size=size) as pilot:
+                await pilot.pause()
+                await act(Hands(app, pilot))
+
+        asyncio.run(stage())
+
+    return run
