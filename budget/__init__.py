@@ -14,10 +14,11 @@ Everything is in SI base units. `read` never raises for what stands in a file: `
 from __future__ import annotations
 
 import dataclasses
+import os
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from budget.description import Description, Finding, Level, describe, read_bytes, read_text
+from budget.description import Description, Finding, Level, describe, read_text
 from budget.description.edits import (
     AddTable,
     CopyTable,
@@ -33,7 +34,8 @@ from budget.description.edits import (
     apply_to_text,
 )
 from budget.network import Budget, SectionResult, SourceResult, TerminalResult, evaluate
-from budget.storage import ChangedOnDisk, Stamp, StorageError
+from budget.storage import ChangedOnDisk, Stamp, StorageError, load_text
+from budget.storage import save as write
 
 if TYPE_CHECKING:
     import pint
@@ -79,15 +81,14 @@ class Run:
     description: Description
     stamp: Stamp | None = None
     """What was on disk when it was read; None for a text that was not read from a file."""
+    path: Path | None = None
+    """The file that it was read from."""
 
 
 def read(path: str | Path) -> Run:
-    """Read a run's file. Raises StorageError where the file itself can't be read."""
-    from budget.storage import load
-
-    content, stamp = load(Path(path))
-    source = read_bytes(content)
-    return Run(source.text, describe(source), stamp)
+    """Read a run's file. Raises StorageError where the file itself can't be read, or holds no text."""
+    source, stamp = load_text(Path(path))
+    return Run(source.text, describe(source), stamp, _real(path))
 
 
 def reads(text: str) -> Run:
@@ -98,7 +99,7 @@ def reads(text: str) -> Run:
 def apply(run: Run, edit: Edit) -> Run:
     """Return the run with an edit made to its text, and nothing else changed. Raises EditError."""
     text = apply_to_text(run.text, edit)
-    return Run(text, describe(read_text(text)), run.stamp)
+    return dataclasses.replace(run, text=text, description=describe(read_text(text)))
 
 
 def save(run: Run, path: str | Path, *, over: bool = False) -> Run:
@@ -107,18 +108,21 @@ def save(run: Run, path: str | Path, *, over: bool = False) -> Run:
     A run that was read from a file is not written over what somebody else has put there since, unless `over`: then
     ChangedOnDisk is raised. Raises StorageError where it can't be written.
     """
-    from budget.storage import save as write
-
-    stamp = write(Path(path), run.text.encode("utf-8"), None if over else run.stamp)
-    return dataclasses.replace(run, stamp=stamp)
+    same = _real(path) == run.path
+    stamp = write(Path(path), run.text.encode("utf-8"), run.stamp if same and not over else None)
+    return dataclasses.replace(run, stamp=stamp, path=_real(path))
 
 
 def quantity(value: float, dimension: str) -> pint.Quantity[Any]:
     """Return a result in SI as a pint quantity: `quantity(section.run.drop, "pressure")`. Needs pint installed."""
-    import pint
+    import pint  # noqa: PLC0415 - slow, and few need it
 
-    registry = pint.get_application_registry()
-    return registry.Quantity(value, _SI_UNITS[dimension])
+    return pint.Quantity(value, _SI_UNITS[dimension])
+
+
+def _real(path: str | Path) -> Path:
+    """Return where a path leads; unlike `Path.resolve` this never raises."""
+    return Path(os.path.realpath(path))
 
 
 _SI_UNITS = {

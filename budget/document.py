@@ -7,12 +7,12 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path as FilePath
 
-from budget.description import Description, Finding, Level, SourceText, describe, read_bytes, read_text
+from budget.description import Description, Finding, Level, SourceText, describe, read_text
 from budget.description.edits import Edit, apply_to_text
 from budget.description.history import History
 from budget.network import Budget, evaluate
 from budget.report.located import Located, locate
-from budget.storage import Stamp, load, save
+from budget.storage import Stamp, load_text, save
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,10 +51,6 @@ def take(source: SourceText, revision: int = 0, before: Snapshot | None = None) 
     return Snapshot(source.text, description, budget, located, revision, source.data is not None)
 
 
-def read_file(path: FilePath) -> tuple[SourceText, Stamp]:
-    """X."""
-
-
 class Document:
     """A run that is open for editing. It is the only place where anything changes."""
 
@@ -71,8 +67,8 @@ class Document:
     @classmethod
     def open(cls, path: FilePath) -> Document:
         """Open a file. Raises StorageError where it can't be read."""
-        content, stamp = load(path)
-        return cls(_text_of(content, path), path, stamp)
+        source, stamp = load_text(path)
+        return cls(source, path, stamp)
 
     @classmethod
     def of(cls, text: str, path: FilePath | None = None) -> Document:

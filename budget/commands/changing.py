@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterator, Mapping
 from pathlib import Path as FilePath
 from typing import Any
 
-from budget.commands import OK, REFUSED, say
+from budget.commands.dispatch import OK, REFUSED, say
 from budget.commands.opening import STDIN, Opened, open_run, opened
 from budget.description import Level, Path, read_text
 from budget.description.edits import Edit, EditError, apply_to_text, dotted

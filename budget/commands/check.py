@@ -3,8 +3,13 @@
 from __future__ import annotations
 
 import argparse
+import json
 
+from budget import __version__
 from budget.commands.opening import Opened, open_run
+from budget.description import Description
+from budget.report.json import results
+from budget.report.lines import finding_line, source_line
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -25,26 +30,18 @@ def run(options: argparse.Namespace) -> int:
         else:
             _print(one)
     if options.json:
-        import json
-
         # ASCII alone: whatever stands in a file is spelled out, and the output does not depend on the terminal.
         print(json.dumps(objects[0] if len(objects) == 1 else {"files": objects}))
     return status
 
 
 def _object(one: Opened) -> dict[str, object]:
-    from budget import __version__
-    from budget.description import Description
-    from budget.report.json import results
-
     if one.snapshot is None:
         return results(__version__, one.name, Description(), None, one.findings)
     return results(__version__, one.name, one.snapshot.description, one.snapshot.budget, one.findings)
 
 
 def _print(one: Opened) -> None:
-    from budget.report.lines import finding_line, source_line
-
     for finding in one.findings:
         print(finding_line(one.name, finding))
     if one.snapshot is not None:

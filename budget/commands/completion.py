@@ -8,6 +8,8 @@ import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
+from budget.commands.dispatch import COMMANDS, parser_of
+
 SHELLS = ("bash", "zsh", "fish")
 
 _BARE = re.compile(r"[A-Za-z0-9-]+")
@@ -37,8 +39,6 @@ def run(options: argparse.Namespace) -> int:
 
 def gather() -> dict[str, Completion]:
     """Read off every command's parser what can follow it."""
-    from budget.commands import COMMANDS, parser_of
-
     found = {}
     for name, command in COMMANDS.items():
         module = importlib.import_module(f"budget.commands.{name}")
@@ -75,7 +75,7 @@ def bash(commands: Mapping[str, Completion]) -> str:
             lines.append(f"        2:{name}:*) offer={_lines(one.words)} ;;")
     lines += [
         "    esac",
-        "    if [ -n \"$offer\" ]; then",
+        '    if [ -n "$offer" ]; then',
         '        COMPREPLY=($(compgen -W "$offer" -- "$word"))',
         '        COMPREPLY=("${COMPREPLY[@]// /\\\\ }")',
         "    else",

@@ -4,6 +4,10 @@ from __future__ import annotations
 
 import argparse
 
+from budget.commands.dispatch import OK, REFUSED
+from budget.report.plain import plain
+from budget.screens.config import config_path, load_config
+
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take what to do."""
@@ -14,10 +18,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Print the path, or the problems; 2 where there are any."""
-    from budget.commands import OK, REFUSED
-    from budget.report.plain import plain
-    from budget.screens.config import config_path, load_config
-
     path = config_path()
     if options.path:
         print(path)
@@ -26,5 +26,5 @@ def run(options: argparse.Namespace) -> int:
     for problem in problems:
         print(plain(problem))
     if not problems:
-        print(f"{path}: nothing is wrong with it" if path.exists() else f"{path}: there is no such file, the defaults stand")
+        print(f"{path}: {'nothing is wrong with it' if path.exists() else 'there is no such file, the defaults stand'}")
     return REFUSED if problems else OK

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+from pathlib import Path
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -14,8 +15,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Open the app; return its exit status."""
-    from pathlib import Path
-
-    from budget import screens
+    from budget import screens  # noqa: PLC0415 - help and completion must not wait for the app
 
     return screens.run(Path(options.file), ascii=options.ascii, mouse=options.mouse) or 0

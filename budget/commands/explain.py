@@ -4,6 +4,9 @@ from __future__ import annotations
 
 import argparse
 
+from budget.commands.dispatch import OK, REFUSED, say
+from budget.description import CODES, nearest
+
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take a code."""
@@ -12,13 +15,10 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Print the level and the meaning of a code; 2 where there is no such code."""
-    from budget.commands import OK, REFUSED, say
-    from budget.description import CODES, nearest
-
     if options.code is None:
         width = max(map(len, CODES))
-        for name, code in CODES.items():
-            print(f"{name:{width}}  {code.level:7}  {code.meaning}")
+        for name, (level, meaning) in CODES.items():
+            print(f"{name:{width}}  {level:7}  {meaning}")
         return OK
     code = CODES.get(options.code)
     if code is None:
@@ -30,6 +30,4 @@ def run(options: argparse.Namespace) -> int:
 
 def completions() -> tuple[str, ...]:
     """Return what may stand for the code."""
-    from budget.description import CODES
-
     return tuple(CODES)

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 import argparse
-from typing import TYPE_CHECKING
 
-if TYPE_CHECKING:
-    from budget.catalogue.listing import Row
+from budget.catalogue.listing import Row, aligned, rows
+from budget.commands.dispatch import OK, REFUSED, say
+from budget.description import nearest
+from budget.units import Basis, factors
 
 KINDS = ("pipes", "ducts", "fittings", "fluids", "limits", "units")
 
@@ -19,9 +20,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Print the list; 2 where there is no such name."""
-    from budget.catalogue.listing import aligned, rows
-    from budget.commands import OK, REFUSED, say
-
     try:
         found = _units(options.name) if options.kind == "units" else rows(options.kind, options.name)
     except LookupError as wrong:
@@ -34,10 +32,6 @@ def run(options: argparse.Namespace) -> int:
 
 def _units(name: str | None) -> list[Row]:
     """List units: all, those of a dimension, or the one that is spelled so."""
-    from budget.catalogue.listing import Row
-    from budget.description import nearest
-    from budget.units import Basis, factors
-
     every = factors()
     wanted = (name or "").strip().lower()
     found = [

@@ -4,6 +4,10 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Mapping
+from importlib.resources import files
+
+from budget.commands.dispatch import OK, REFUSED, say
+from budget.description import nearest
 
 TOPICS = (
     "start",
@@ -30,9 +34,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Print a page, or the list of pages; 2 where there is no such topic."""
-    from budget.commands import OK, REFUSED, say
-    from budget.description import nearest
-
     if options.topic is None:
         width = max(map(len, TOPICS)) + 2
         for topic, title in titles().items():
@@ -58,6 +59,4 @@ def titles() -> Mapping[str, str]:
 
 def page(topic: str) -> str:
     """Return the Markdown of a topic."""
-    from importlib.resources import files
-
     return files("budget").joinpath("manual", f"{topic}.md").read_text(encoding="utf-8")

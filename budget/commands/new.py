@@ -7,7 +7,7 @@ import sys
 from collections.abc import Sequence
 from pathlib import Path
 
-from budget.commands import OK, REFUSED, say
+from budget.commands.dispatch import OK, REFUSED, say
 from budget.commands.starts import FLUIDS, KINDS, start
 
 FLUID_NAMES = tuple(dict.fromkeys(name for names in FLUIDS.values() for name in names))

@@ -6,7 +6,7 @@ import sys
 from dataclasses import dataclass
 from pathlib import Path
 
-from budget.commands import OK, REFUSED, WARNINGS
+from budget.commands.dispatch import OK, REFUSED, WARNINGS
 from budget.description import Level, SourceText, read_bytes
 from budget.description.source import LARGEST_FILE
 from budget.document import Snapshot, take

@@ -5,6 +5,8 @@ from __future__ import annotations
 import argparse
 
 from budget.commands.opening import open_run
+from budget.report.lines import finding_line
+from budget.report.text import text_report
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -14,9 +16,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Print the report; return the status that the findings ask for."""
-    from budget.report.lines import finding_line
-    from budget.report.text import text_report
-
     one = open_run(options.file)
     if one.snapshot is None:
         for finding in one.findings:

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 import argparse
 
+from budget.commands.changing import change
 from budget.description import Path
+from budget.description.edits import Edit, EditError, Literal, SetValue
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -18,8 +20,6 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Set the key; return 0, or 2 where it was refused and the file is as it was."""
-    from budget.commands.changing import change
-    from budget.description.edits import Edit, SetValue
 
     def make(path: Path) -> Edit:
         return SetValue(path, _value(options.value))
@@ -28,8 +28,6 @@ def run(options: argparse.Namespace) -> int:
 
 
 def _value(text: str) -> object:
-    from budget.description.edits import EditError, Literal
-
     literal = Literal(text)
     try:
         literal.value()

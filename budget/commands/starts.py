@@ -32,7 +32,9 @@ def start(kind: str, fluid: str, units: Units) -> str:
     if fluid.endswith("glycol"):
         stated += '\nconcentration = "30 %"\nconcentration_by = "volume"'
     text = _HEAD + _RUNS[kind]
-    text = text.replace("@CAUTION@", textwrap.fill(CAUTION, 100, initial_indent="# ", subsequent_indent="# "))
+    text = text.replace("@WATER@\n", _WATER).replace(
+        "@CAUTION@", textwrap.fill(CAUTION, 100, initial_indent="# ", subsequent_indent="# ")
+    )
     text = text.replace("@FLUID@", stated).replace("@KIND@", kind).replace("@UNITS@", units)
     return _CHOICE.sub(r"\1" if units == "SI" else r"\2", text)
 
@@ -70,7 +72,7 @@ catalogue = "<steel EN 10255 medium|steel ASME B36.10 schedule 40>"
 _HEATING = """\
 temperature = "<70 degC|160 degF>"
 return_temperature = "<50 degC|125 degF>"
-""" + _WATER + """
+@WATER@
 [device."balancing valve"]    # [setting, flow coefficient], from the maker's sheet
 <kv|cv> = [[0.5, <0.2|0.23>], [1, <0.4|0.46>], [2, <1.1|1.27>], [3, <2.4|2.8>], [4, <4.0|4.6>]]
 least_drop = "<1 kPa|0.3 ftH2O>"
@@ -123,7 +125,7 @@ balance = "balancing valve"
 _CHILLED = """\
 temperature = "<6 degC|43 degF>"
 return_temperature = "<12 degC|54 degF>"
-""" + _WATER + """
+@WATER@
 [device."balancing valve"]    # [setting, flow coefficient], from the maker's sheet
 <kv|cv> = [[0.5, <0.6|0.7>], [1, <1.2|1.4>], [2, <3.0|3.5>], [3, <5.6|6.5>], [4, <8.5|9.8>]]
 least_drop = "<1 kPa|0.3 ftH2O>"

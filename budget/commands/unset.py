@@ -4,6 +4,9 @@ from __future__ import annotations
 
 import argparse
 
+from budget.commands.changing import change
+from budget.description.edits import Unset
+
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take the file and the key."""
@@ -13,7 +16,4 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(options: argparse.Namespace) -> int:
     """Take the key out; return 0, or 2 where it was refused and the file is as it was."""
-    from budget.commands.changing import change
-    from budget.description.edits import Unset
-
     return change(options.file, options.key, Unset)

@@ -87,7 +87,7 @@ def agree(expected: Toml, found: Toml, emptied: frozenset[Path], path: Path = ()
             if key not in expected:
                 return False
             if key not in found:
-                if expected[key] not in ({}, []) or inner not in emptied:
+                if not _is_hollow(expected[key], emptied, inner):
                     return False
             elif not agree(expected[key], found[key], emptied, inner):
                 return False
@@ -98,6 +98,14 @@ def agree(expected: Toml, found: Toml, emptied: frozenset[Path], path: Path = ()
             for position, (one, other) in enumerate(zip(expected, found, strict=True))
         )
     return _is_nan(expected) and _is_nan(found)
+
+
+def _is_hollow(value: Toml, emptied: frozenset[Path], path: Path) -> bool:
+    """Tell whether an edit has left nothing of a table but empty tables."""
+    if not isinstance(value, dict | list) or path not in emptied:
+        return False
+    inner = value.items() if isinstance(value, dict) else enumerate(value)
+    return all(_is_hollow(one, emptied, (*path, key)) for key, one in inner)
 
 
 def _is_nan(value: Toml) -> bool:

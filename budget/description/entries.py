@@ -153,8 +153,8 @@ def _first_line(index: SpanIndex, line: str, newline: str) -> Splice:
     """Put the first key of the file itself above the first header and its comment."""
     text, tables = index.text, index.all_tables()
     if len(tables) == 1:
-        opening = newline if text and not text.endswith("\n") else ""
-        return Splice(len(text), len(text), opening + line + newline)
+        without = bool(text) and not text.endswith("\n")
+        return Splice(len(text), len(text), newline + line if without else line + newline)
     start = index.block_start(tables[1])
     return Splice(start, start, line + newline + newline)
 

@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from typing import Any
 
 from budget.description.codes import CODES
-from budget.description.finding import Path, error, warning
+from budget.description.finding import Path, warning
 from budget.description.model import FittingCount, Geometry, Item, Line, Run, Section, Source, Terminal
 from budget.description.schema import RUN, Measure
 from budget.description.scope import Scope
@@ -14,7 +14,6 @@ from budget.description.sizes import read_duct_size, read_pipe_size
 from budget.description.values import Reading, nearest
 from budget.physics.fittings import CV_PER_KV
 from budget.units import Dimension
-
 
 _ITEM_FORMS = ("k", "kv", "cv", "drop", "equivalent_length", "clean")
 _TEXTS = ("title", "note", "location")
@@ -79,11 +78,11 @@ def read_terminal(reading: Reading, id_: str, values: dict[str, Any], path: Path
     _one_of(reading, values, ("drop", "static_drop"), path)
     _check_connected(reading, values, path)
     for key in ("at", "exponent"):
-        if key in values and "drop" not in values and "static_drop" not in values:
+        if key in values and not any(k in values or reading.faulty((*path, k)) for k in ("drop", "static_drop")):
             reading.wrong("contradiction", f"{key} without a drop; state drop, or remove it", (*path, key))
     neck = read_duct_size(reading, values["neck"], (*path, "neck"), remark=False) if "neck" in values else None
     if "static_drop" in values and "neck" not in values:
-        reading.wrong("missing", "static_drop needs the neck at which it was stated", (*path, "static_drop"))
+        reading.wrong("missing", "static_drop holds at a neck; state neck", (*path, "static_drop"))
     for key in ("static_drop", "neck"):
         if key in values and not reading.gas:
             reading.wrong("contradiction", f"{key} belongs to air terminals; remove it, state drop", (*path, key))
@@ -179,10 +178,11 @@ def _fittings(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Fitt
                 "unknown-fitting", f"{name!r} is not a fitting known here; {scope.nearest_fitting(name)}", place
             )
     for place_, use in enumerate(values.get("fitting", ())):
-        where: Path = (*path, "fitting", place_, "kind")
-        if "kind" not in use:
-            scope.reading.wrong("missing", "the fitting has no kind; state kind", where[:-1])
-        scope.reading.later("a fitting with parameters", where)
+        where: Path = (*path, "fitting", place_)
+        if "kind" in use:
+            scope.reading.later("a fitting with parameters", (*where, "kind"))
+        elif not scope.reading.faulty((*where, "kind")):
+            scope.reading.wrong("missing", 'the fitting has no kind; write kind = "..."', where)
     return tuple(found)
 
 
@@ -232,7 +232,7 @@ def _item(reading: Reading, entry: Mapping[str, Any], path: Path) -> Item:
         missing = "final" if "clean" in entry else "clean"
         reading.wrong("missing", f"a filter needs clean and final; state {missing}", (*path, missing))
     for key, owners in (("at", ("drop", "clean")), ("exponent", ("drop", "clean")), ("tested_density", ("drop", "clean")), ("state", ("clean",))):
-        if key in entry and not set(forms) & set(owners):
+        if key in entry and not set(forms) & set(owners) and not reading.faulty(path):
             reading.wrong("contradiction", f"{key} without {owners[0]}; remove it", (*path, key))
     for key in ("characteristic", "rangeability"):
         if key in entry and "control" not in entry:
@@ -259,12 +259,16 @@ def _one_of(reading: Reading, values: dict[str, Any], keys: tuple[str, str], pat
 
 
 def _accept(scope: Scope, values: Mapping[str, Any], path: Path) -> dict[str, str]:
-    accepted: dict[str, str] = values.get("accept", {})
-    for code in accepted:
+    accepted = {}
+    for code, reason in values.get("accept", {}).items():
+        place: Path = (*path, "accept", code)
         if code not in CODES:
-            scope.reading.wrong("unknown-code", f"{code!r} is not a finding code; {nearest(code, CODES, 3)}", (*path, "accept", code))
+            hint = nearest(code, CODES, 3)
+            scope.reading.wrong("unknown-code", f"{code!r} is not a finding code; {hint}", place)
         elif CODES[code].level == "error":
-            scope.reading.wrong("unknown-code", f"{code!r} is an error, which can't be accepted", (*path, "accept", code))
+            text = f"{code!r} is an error, which can't be accepted; mend it and remove this"
+            scope.reading.wrong("unknown-code", text, place)
+        else:
+            accepted[code] = reason
     return accepted
-
 

@@ -8,7 +8,7 @@ from collections.abc import Callable, Mapping
 from typing import Any
 
 from budget.catalogue import fitting_names
-from budget.description.finding import Finding, Path, dotted, error, warning
+from budget.description.finding import Finding, Path, dotted, warning
 from budget.description.lines import read_lines
 from budget.description.model import (
     Description,
@@ -19,10 +19,10 @@ from budget.description.model import (
     OwnFitting,
 )
 from budget.description.parts import read_section, read_source, read_terminal
-from budget.description.scope import Scope
 from budget.description.schema import FORMAT, KEYED, SINGLE, TOP
+from budget.description.scope import Scope
 from budget.description.source import Source
-from budget.description.values import Reading, nearest
+from budget.description.values import Reading, nearest, what_is
 from budget.physics.fittings import CV_PER_KV
 from budget.units import Dimension, UnitError, parse
 
@@ -80,7 +80,7 @@ def _check_top(reading: Reading, data: Mapping[str, Any]) -> None:
     if stated is None:
         reading.wrong("format", f"the format is not stated; write format = {FORMAT} as the first line", ())
     elif stated != FORMAT or isinstance(stated, bool):
-        reading.wrong("format", f"format {str(stated)[:20]} is not known here; write format = {FORMAT}", ("format",))
+        reading.wrong("format", f"{what_is(stated)} is no format known here; write format = {FORMAT}", ("format",))
     elif next(iter(data)) != "format":
         reading.findings.append(warning("format", "format should be the first line; move it up", ("format",)))
 
@@ -200,7 +200,7 @@ def _device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> D
             warning("no-drop", f"the device {id_!r} has no least_drop; its base drop counts as nothing", path)
         )
     for key, owner in (("greatest_drop", "flow"), ("set_point", "differential")):
-        if key in values and holds != owner:
+        if key in values and holds != owner and not reading.faulty((*path, "holds")):
             reading.wrong("contradiction", f'{key} belongs to holds = "{owner}"; remove it', (*path, key))
     least, greatest = values.get("least_drop"), values.get("greatest_drop")
     if least and greatest and least.basis is greatest.basis and greatest.value < least.value:

@@ -19,6 +19,9 @@ DEEPEST = 32
 
 _PLACE = re.compile(r"\(at line (\d+), column (\d+)\)|\(at end of document\)")
 _DIGITS = re.compile(r"[0-9][0-9_]{4000}")
+_NAME = r"(?>[\w-]++|\"[^\"\n]*+\"|'[^'\n]*+')"
+_DOTTED = re.compile(rf"(?<![\w-])(?:{_NAME}[ \t]*+\.[ \t]*+){{{DEEPEST + 1}}}{_NAME}")
+_BRACKETS = re.compile(r"""[\[{\]}]|#[^\n]*+|"(?:\\.|[^"\\\n])*+"|'[^'\n]*+'""")
 _OPENERS = re.compile(r"[\[{]{33}")
 
 
@@ -63,8 +66,8 @@ def read_bytes(content: bytes) -> Source:
 
 def read_text(text: str) -> Source:
     """Read a text; one that is not TOML has no data and one finding."""
-    if (deep := _OPENERS.search(text)) is not None:
-        message = f"brackets are nested more than {DEEPEST} deep; a run needs five levels"
+    if (deep := _OPENERS.search(text) or _DOTTED.search(text)) is not None:
+        message = f"brackets or dotted keys are nested more than {DEEPEST} deep; a run needs five levels"
         return _refused("nesting", message, text, _line_column(text, deep.start()))
     try:
         data = tomllib.loads(text)
@@ -74,10 +77,11 @@ def read_text(text: str) -> Source:
         code = "nesting" if isinstance(wrong, RecursionError) else "syntax"
         what = "values are nested too deep" if code == "nesting" else "a number has too many digits"
         digits = _DIGITS.search(text) if code == "syntax" else None
-        place = _line_column(text, digits.start()) if digits else (1, 1)
+        place = _line_column(text, digits.start()) if digits else _deepest_place(text)
         return _refused(code, f"{what}; a run needs neither", text, place)
     if _depth(data) > DEEPEST:
-        return _refused("nesting", f"tables are nested more than {DEEPEST} deep; a run needs five levels", text)
+        message = f"tables are nested more than {DEEPEST} deep; a run needs five levels"
+        return _refused("nesting", message, text, _deepest_place(text))
     return Source(text, data)
 
 
@@ -90,6 +94,7 @@ def _syntax(text: str, message: str) -> Source:
     lines = text.split("\n")
     line = lines[place[0] - 1] if place[0] <= len(lines) else ""
     if "twice" in what or "Cannot overwrite" in what or "immutable" in what:
+        place = (place[0], len(line) - len(line.lstrip()) + 1)
         return _refused("duplicate-id", f"{line.strip()[:60]!r} stands twice; rename or remove one", text, place)
     hint = "correct the line"
     if re.search(r"=\s*[0-9.]+,[0-9]", line):
@@ -106,6 +111,19 @@ def _refused(code: str, message: str, text: str, place: tuple[int, int] = (1, 1)
 def _line_column(text: str, offset: int) -> tuple[int, int]:
     before = text[:offset]
     return before.count("\n") + 1, offset - (before.rfind("\n") + 1) + 1
+
+
+def _deepest_place(text: str) -> tuple[int, int]:
+    """Return the place of the first bracket that is nested too deep, the first character where there is none."""
+    level = 0
+    for found in _BRACKETS.finditer(text):
+        if found.group() in "[{":
+            level += 1
+        elif found.group() in "]}":
+            level -= 1
+        if level > DEEPEST:
+            return _line_column(text, found.start())
+    return 1, 1
 
 
 def _depth(data: Any) -> int:

@@ -49,7 +49,7 @@ class Reading:
     def table(self, data: Any, keys: Mapping[str, Spec], path: Path, kind: str = "") -> dict[str, Any]:
         """Read a table with known keys; a key that could not be read is left out."""
         if not isinstance(data, dict):
-            self.wrong("type", f"{_what(data)} where a table was due; write [{'.'.join(map(str, path))}]", path)
+            self.wrong("type", f"{what_is(data)} where a table was due; write [{'.'.join(map(str, path))}]", path)
             return {}
         values: dict[str, Any] = {}
         for key, value in data.items():
@@ -111,13 +111,16 @@ class Reading:
     def _typed(self, value: Any, kind: type, path: Path) -> Any:
         if type(value) is kind:
             return value
-        self.wrong("type", f"{_what(value)} where {_KINDS[kind]} was due; write {_example(kind, value)}", path)
+        self.wrong("type", f"{what_is(value)} where {_KINDS[kind]} was due; write {_example(kind, value)}", path)
         return None
 
     def _size(self, value: Any, path: Path) -> str | int | float | None:
         if isinstance(value, str) or (isinstance(value, int | float) and not isinstance(value, bool)):
-            return value
-        self.wrong("type", f'{_what(value)} where a size was due; write a text such as "DN40" or "600x300"', path)
+            if not _huge(value):
+                return value
+            self.wrong("range", f"{what_is(value)} is no size; write the size itself", path)
+            return None
+        self.wrong("type", f'{what_is(value)} where a size was due; write a text such as "DN40" or "600x300"', path)
         return None
 
     def _choice(self, value: Any, words: tuple[str, ...], path: Path) -> str | None:
@@ -132,10 +135,10 @@ class Reading:
             kind, example = ("a whole number", "2") if spec.whole else ("a plain number", "2.5")
             text = isinstance(value, str) and _NUMERAL.fullmatch(value) is not None
             remedy = f"write {value} without quotes" if text else f"write one such as {example}"
-            self.wrong("type", f"{_what(value)} where {kind} was due; {remedy}", path)
+            self.wrong("type", f"{what_is(value)} where {kind} was due; {remedy}", path)
             return None
         if _huge(value):
-            self.wrong("range", f"{_what(value)} is out of range; {_bounds(spec, _plain)}", path)
+            self.wrong("range", f"{what_is(value)} is out of range; {_bounds(spec, _plain)}", path)
             return None
         if not math.isfinite(value):
             self.wrong("not-finite", f"{value} is not a finite number; write the number itself", path)
@@ -151,15 +154,18 @@ class Reading:
     def _measure(self, value: Any, spec: Measure, path: Path) -> Quantity | float | None:
         unit = bare_unit(spec.dimension, self.units, gas=self.gas, small=spec.small)
         try:
+            if _huge(value):
+                self.wrong("range", f"{what_is(value)} is out of range; write the quantity itself", path)
+                return None
             if isinstance(value, str):
                 quantity = parse(value, spec.dimension, default_unit=unit)
             elif isinstance(value, int | float) and not isinstance(value, bool):
                 quantity = bare(value, spec.dimension, unit)
             else:
-                self.wrong("type", f"{_what(value)} where a quantity was due; write a text such as \"1 {unit}\"", path)
+                self.wrong("type", f"{what_is(value)} where a quantity was due; write a text such as \"1 {unit}\"", path)
                 return None
         except UnitError as refused:
-            self.wrong("range" if _huge(value) else refused.code, str(refused), path)
+            self.wrong(refused.code, str(refused), path)
             return None
         if self._outside(quantity.value, spec):
             bounds = _bounds(spec, lambda bound: spell(bound, unit, spec.dimension, 6))
@@ -169,12 +175,12 @@ class Reading:
 
     def _pairs(self, value: Any, spec: Pairs, path: Path) -> tuple[tuple[Any, Any], ...] | None:
         if value == [] or not isinstance(value, list):
-            self.wrong("type", f"{_what(value)} where a list of pairs was due; write [[1, 2], [3, 4]]", path)
+            self.wrong("type", f"{what_is(value)} where a list of pairs was due; write [[1, 2], [3, 4]]", path)
             return None
         pairs = []
         for place, pair in enumerate(value):
             if not isinstance(pair, list) or len(pair) != 2:
-                self.wrong("type", f"{_what(pair)} where a pair was due; write [1, 2]", (*path, place))
+                self.wrong("type", f"{what_is(pair)} where a pair was due; write [1, 2]", (*path, place))
                 return None
             first = self.value(pair[0], spec.first, (*path, place, 0))
             second = self.value(pair[1], spec.second, (*path, place, 1))
@@ -189,20 +195,20 @@ class Reading:
 
     def _names(self, value: Any, path: Path) -> tuple[str, ...] | None:
         if not isinstance(value, list) or not all(isinstance(name, str) for name in value):
-            self.wrong("type", f'{_what(value)} where a list of IDs was due; write ["A", "B"]', path)
+            self.wrong("type", f'{what_is(value)} where a list of IDs was due; write ["A", "B"]', path)
             return None
         return tuple(value)
 
     def _inline(self, value: Any, spec: Spec, path: Path) -> dict[str, Any] | None:
         if not isinstance(value, dict):
-            self.wrong("type", f"{_what(value)} where a table was due; write {{ name = value }}", path)
+            self.wrong("type", f"{what_is(value)} where a table was due; write {{ name = value }}", path)
             return None
         found = {key: self.value(inner, spec, (*path, key)) for key, inner in value.items()}
         return {key: inner for key, inner in found.items() if inner is not None}
 
     def _array(self, value: Any, keys: Mapping[str, Spec], path: Path) -> tuple[dict[str, Any], ...] | None:
         if not isinstance(value, list):
-            self.wrong("type", f"{_what(value)} where tables were due; write [[{'.'.join(map(str, path))}]]", path)
+            self.wrong("type", f"{what_is(value)} where tables were due; write [[{'.'.join(map(str, path))}]]", path)
             return None
         return tuple(self.table(entry, keys, (*path, place), str(path[-1])) for place, entry in enumerate(value))
 
@@ -224,7 +230,7 @@ def nearest(word: str, known: Iterable[str], count: int = 1) -> str:
     return f"known are {shown}"
 
 
-def _huge(value: float) -> bool:
+def _huge(value: Any) -> bool:
     """Whether a whole number is too large to be a float."""
     return isinstance(value, int) and abs(value) > sys.float_info.max
 
@@ -242,12 +248,13 @@ def _bounds(spec: Number | Measure, spelled: Callable[[float], str]) -> str:
     return "it must be " + " and ".join(parts)
 
 
-def _what(value: Any) -> str:
+def what_is(value: Any) -> str:
+    """Name a value of the file in a message."""
     if isinstance(value, str):
         return f"the text {value[:40]!r}" + ("..." if len(value) > 40 else "")
     if isinstance(value, bool):
         return str(value).lower()
-    if isinstance(value, int) and _huge(value):
+    if _huge(value):
         return "a number of hundreds of digits"
     if isinstance(value, int | float):
         return f"the number {value}"
@@ -259,4 +266,5 @@ def _what(value: Any) -> str:
 def _example(kind: type, value: Any) -> str:
     if kind is bool:
         return "true or false without quotes"
-    return f'"{value}" in quotes' if isinstance(value, int | float) else 'a text in quotes: "..."'
+    number = isinstance(value, int | float) and not _huge(value)
+    return f'"{value}" in quotes' if number else 'a text in quotes: "..."'

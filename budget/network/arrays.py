@@ -4,16 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-import numpy as np
-from numpy.typing import NDArray
-
 from budget.description import Description, Device, Finding, Item
 from budget.network.media import Media
 from budget.network.topology import Topology
+from budget.physics.arrays import Array, Flags, Indices
 
-Floats = NDArray[np.float64]
-Ints = NDArray[np.int64]
-Bools = NDArray[np.bool_]
+Floats = Array
+Ints = Indices
+Bools = Flags
 
 
 @dataclass(frozen=True, slots=True)

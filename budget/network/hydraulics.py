@@ -5,12 +5,12 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
 from budget.network.arrays import Bools, Floats, Ints, Items, Layout, Legs
 from budget.network.equipment import DROP, KV, K
 from budget.network.equipment import LENGTH as EQUIVALENT
 from budget.network.media import GRAVITY
+from budget.physics.arrays import SmallIndices
 from budget.physics.fittings import valve_drop
 from budget.physics.friction import friction_factor, pressure_gradient, regime, reynolds
 from budget.physics.power import velocity_pressure
@@ -28,7 +28,7 @@ class Hydraulics:
     velocity: Floats
     velocity_pressure: Floats
     reynolds: Floats
-    regime: NDArray[np.int8]
+    regime: SmallIndices
     factor: Floats
     gradient: Floats
     friction: Floats

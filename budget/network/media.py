@@ -124,6 +124,7 @@ def _doubts(fluid: Fluid, source: Source, supply: float, back: float) -> Iterato
 
 
 def _doubts_at(fluid: Fluid, temperature: float, path: Path) -> Iterator[Finding]:
+    temperature = round(temperature, 6)  # -20 degC in kelvin comes out a rounding below 253.15
     celsius = temperature - fluids.ZERO_CELSIUS
     fraction = 0.0
     if fluid.name == "water":

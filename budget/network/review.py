@@ -80,11 +80,11 @@ def _zones(run: Computed) -> Iterator[Finding]:
         largest = float(run.circuits.largest[number])
         if zone.device < 0 or math.isnan(zone.set_point) or not zone.set_point < largest * (1.0 - 1e-9):
             continue
-        use = run.layout.devices[zone.device]
+        name = run.layout.devices[zone.device].device.name
         yield error(
             "set-point",
-            f"the set point of {_plain(repr(use.device.name))}, {{0}}, is below the largest circuit behind it, {{1}}; raise it",
-            ("device", use.device.name, "set_point"),
+            f"the set point of {_quoted(name)}, {{0}}, is below the largest circuit behind it, {{1}}; raise it",
+            ("device", name, "set_point"),
             (zone.set_point, "pressure"),
             (largest, "pressure"),
         )
@@ -269,7 +269,7 @@ def _devices(run: Computed) -> Iterator[Finding]:
         if table and use.device.holds is None and adjusted.setting is None and not math.isnan(drop):
             yield warning(
                 "device-range",
-                f"{_plain(repr(use.device.name))} can't be set to drop {{0}}: outside its setting table; choose another size",
+                f"{_quoted(use.device.name)} can't be set to drop {{0}}: outside its setting table; take another size",
                 path,
                 (drop, "pressure"),
             )
@@ -333,6 +333,10 @@ def accept(findings: tuple[Finding, ...], description: Description) -> tuple[Fin
     for path, code in (key for key in accepted if key not in used):
         settled.append(note("accept-unused", f"{code!r} was accepted here and does not occur", (*path, "accept", code)))
     return tuple(settled)
+
+
+def _quoted(name: str) -> str:
+    return _plain(repr(name))
 
 
 def _plain(text: str) -> str:

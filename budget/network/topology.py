@@ -322,13 +322,19 @@ class _Joining:
 
 
 def _find_idle(description: Description, topology: Topology, rooted: dict[str, int]) -> None:
-    """Find sections and sources that serve no terminal, and return legs that carry nothing."""
+    """Find sections and sources that serve no terminal, and return legs that carry nothing.
+
+    A terminal that could not be connected has a finding of its own: what it names is not idle.
+    """
+    lost = [terminal for id_, terminal in description.terminals.items() if id_ not in topology.terminal_source]
+    named = {target for terminal in lost for target in (terminal.from_, terminal.to) if target is not None}
+    ends = [*topology.outward.values(), *topology.back.values()]
+    ends += [topology.section_legs[id_][0] for id_ in named if id_ in topology.section_legs]
     used: set[int] = set()
-    for ends in (topology.outward, topology.back):
-        for leg in ends.values():
-            while leg >= 0 and leg not in used:
-                used.add(leg)
-                leg = topology.legs[leg].parent
+    for leg in ends:
+        while leg >= 0 and leg not in used:
+            used.add(leg)
+            leg = topology.legs[leg].parent
     served = {topology.legs[leg].owner for leg in used if not topology.legs[leg].run_out}
     for id_, section in description.sections.items():
         if id_ in rooted and id_ not in served:
@@ -341,9 +347,9 @@ def _find_idle(description: Description, topology: Topology, rooted: dict[str, i
             topology.findings.append(
                 note("return-unused", "its return leg carries nothing; it needs no pairing", (*section.path, "paired"))
             )
-    busy = set(topology.terminal_source.values())
-    for number, (_, source) in enumerate(description.sources.items()):
-        if number not in busy:
+    busy = {*topology.terminal_source.values(), *(rooted[id_] for id_ in named if id_ in rooted)}
+    for number, source in enumerate(description.sources.values()):
+        if number not in busy and source.id not in named:
             topology.findings.append(
                 error("no-terminal", f"{source.id!r} serves no terminal; hang one on it, or remove it", source.path)
             )

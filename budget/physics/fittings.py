@@ -3,9 +3,8 @@
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike
 
 INCH: Final = 0.0254
 """Metres in an inch, in which the 2-K and 3-K methods were published."""
@@ -58,9 +57,7 @@ def coefficient_at(constant: ArrayLike, per_reynolds: ArrayLike, re: ArrayLike) 
 def fitting_drop(k: ArrayLike, density: ArrayLike, velocity: ArrayLike) -> Array:
     """Total-pressure loss of a fitting, Pa: K rho v |v| / 2, in the direction of the velocity (m/s)."""
     v = np.asarray(velocity, dtype=np.float64)
-    return np.asarray(
-        0.5 * np.asarray(k, dtype=np.float64) * np.asarray(density, dtype=np.float64) * v * np.abs(v)
-    )
+    return np.asarray(0.5 * np.asarray(k, dtype=np.float64) * np.asarray(density, dtype=np.float64) * v * np.abs(v))
 
 
 def valve_drop(flow: ArrayLike, kv: ArrayLike, density: ArrayLike) -> Array:

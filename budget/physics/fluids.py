@@ -4,10 +4,9 @@ from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
 
+from budget.physics.arrays import Array, ArrayLike, Flags
 from budget.physics.glycols import POLYNOMIALS, Basis, Kind
-from budget.physics.smooth import Array
 
 ZERO_CELSIUS: Final = 273.15
 STANDARD_PRESSURE: Final = 101_325.0
@@ -32,7 +31,7 @@ class Validity:
     source: str
     known_from: str
 
-    def covers(self, temperature: ArrayLike, fraction: ArrayLike = 0.0) -> NDArray[np.bool_]:
+    def covers(self, temperature: ArrayLike, fraction: ArrayLike = 0.0) -> Flags:
         """Whether the correlation holds; the ends belong to the range. Beyond it one can compute too."""
         t, x = np.asarray(temperature, dtype=np.float64), np.asarray(fraction, dtype=np.float64)
         low, high = self.temperature
@@ -145,9 +144,7 @@ def humid_air(
     return FluidState(np.asarray(density), _mixture_viscosity(t, vapour / p), np.asarray(specific_heat))
 
 
-_KELL = np.array(
-    [999.83952, 16.945176, -7.9870401e-3, -46.170461e-6, 105.56302e-9, -280.54253e-12], dtype=np.float64
-)
+_KELL = np.array([999.83952, 16.945176, -7.9870401e-3, -46.170461e-6, 105.56302e-9, -280.54253e-12], dtype=np.float64)
 _WATER_HEAT = np.array([4215.6129, -250.14317, 577.96725, -608.97163, 361.0647, -79.665419], dtype=np.float64)
 
 _M_AIR, _M_VAPOUR = 28.966e-3, 18.015268e-3  # kg/mol

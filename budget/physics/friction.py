@@ -3,9 +3,9 @@
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
 
-from budget.physics.smooth import Array, smooth_step
+from budget.physics.arrays import Array, ArrayLike, SmallIndices
+from budget.physics.smooth import smooth_step
 
 LAMINAR_LIMIT: Final = 2300.0
 """Reynolds number below which flow is laminar."""
@@ -31,7 +31,7 @@ def reynolds(density: ArrayLike, velocity: ArrayLike, diameter: ArrayLike, visco
     return np.asarray(rho * np.abs(np.asarray(velocity, dtype=np.float64)) * d / mu)
 
 
-def regime(re: ArrayLike) -> NDArray[np.int8]:
+def regime(re: ArrayLike) -> SmallIndices:
     """Flow regime by Reynolds number, as an index into `REGIMES`.
 
     0 laminar below 2300, 1 transitional from 2300 to 4000 (ends included), 2 turbulent above 4000.
@@ -71,9 +71,7 @@ def colebrook(re: ArrayLike, relative_roughness: ArrayLike) -> Array:
     return np.asarray((0.25 * _TEN * _TEN) / (y * y))
 
 
-def friction_factor(
-    re: ArrayLike, relative_roughness: ArrayLike, laminar_constant: ArrayLike = ROUND
-) -> Array:
+def friction_factor(re: ArrayLike, relative_roughness: ArrayLike, laminar_constant: ArrayLike = ROUND) -> Array:
     """Darcy friction factor over all regimes, continuous together with its slope.
 
     Laminar C/Re below Re 2300, Colebrook-White above 4000; between them the two laws blended by
@@ -94,9 +92,7 @@ def friction_factor(
     return factor
 
 
-def pressure_gradient(
-    factor: ArrayLike, density: ArrayLike, velocity: ArrayLike, diameter: ArrayLike
-) -> Array:
+def pressure_gradient(factor: ArrayLike, density: ArrayLike, velocity: ArrayLike, diameter: ArrayLike) -> Array:
     """Friction loss per metre of straight leg, Pa/m: f/D rho v |v| / 2.
 
     `diameter` is the bore or the hydraulic diameter 4A/P in m, `velocity` the mean velocity flow/area in m/s.

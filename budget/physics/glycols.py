@@ -13,7 +13,7 @@ from typing import Final, Literal
 
 import numpy as np
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array
 
 Kind = Literal["propylene", "ethylene"]
 """Which glycol."""

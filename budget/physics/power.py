@@ -3,9 +3,8 @@
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike
 
 SFP_CLASSES: Final = (
     (300.0, "SFP 0"),
@@ -53,14 +52,10 @@ def velocity_pressure(density: ArrayLike, velocity: ArrayLike) -> Array:
 
 def fan_static_pressure(total: ArrayLike, outlet_velocity_pressure: ArrayLike) -> Array:
     """Fan static pressure, Pa: fan total less the velocity pressure at its outlet. Source: ISO 5801."""
-    return np.asarray(
-        np.asarray(total, dtype=np.float64) - np.asarray(outlet_velocity_pressure, dtype=np.float64)
-    )
+    return np.asarray(np.asarray(total, dtype=np.float64) - np.asarray(outlet_velocity_pressure, dtype=np.float64))
 
 
-def affinity(
-    flow: ArrayLike, pressure: ArrayLike, power: ArrayLike, ratio: ArrayLike
-) -> tuple[Array, Array, Array]:
+def affinity(flow: ArrayLike, pressure: ArrayLike, power: ArrayLike, ratio: ArrayLike) -> tuple[Array, Array, Array]:
     """Flow, pressure and power of a pump or fan at another speed: times r, r^2 and r^3, at equal efficiency.
 
     `ratio` is new over old speed; for a small trim of the impeller in its casing it is the ratio of

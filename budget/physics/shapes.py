@@ -4,10 +4,9 @@ from dataclasses import dataclass
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
+from budget.physics.arrays import Array, ArrayLike
 from budget.physics.friction import ROUND
-from budget.physics.smooth import Array
 
 FLEXIBLE_DIAMETERS: Final = (0.150, 0.250)
 """Diameters in m within which the compression factor of flexible duct was measured."""
@@ -36,9 +35,7 @@ class Shape:
 def circle(diameter: ArrayLike) -> Shape:
     """Round pipe or duct of inside `diameter` in m."""
     d = np.asarray(diameter, dtype=np.float64)
-    return Shape(
-        np.asarray(0.25 * np.pi * d * d), np.asarray(np.pi * d), d, np.asarray(np.full_like(d, ROUND))
-    )
+    return Shape(np.asarray(0.25 * np.pi * d * d), np.asarray(np.pi * d), d, np.asarray(np.full_like(d, ROUND)))
 
 
 def rectangle(width: ArrayLike, height: ArrayLike) -> Shape:

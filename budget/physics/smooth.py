@@ -1,9 +1,8 @@
 """Joining two laws without a step: the cubic blend."""
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
 
-Array = NDArray[np.float64]
+from budget.physics.arrays import Array, ArrayLike
 
 
 def smooth_step(value: ArrayLike, low: float, high: float) -> Array:

@@ -1,9 +1,8 @@
 """Air terminals: from the static pressure that makers print to the total pressure that a run must supply."""
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike
 
 
 def supply_total(static_drop: ArrayLike, neck_velocity_pressure: ArrayLike) -> Array:
@@ -11,9 +10,7 @@ def supply_total(static_drop: ArrayLike, neck_velocity_pressure: ArrayLike) -> A
 
     Both are given up to the room: the drop holds the exit loss.
     """
-    return np.asarray(
-        np.asarray(static_drop, dtype=np.float64) + np.asarray(neck_velocity_pressure, dtype=np.float64)
-    )
+    return np.asarray(np.asarray(static_drop, dtype=np.float64) + np.asarray(neck_velocity_pressure, dtype=np.float64))
 
 
 def extract_total(static_drop: ArrayLike, neck_velocity_pressure: ArrayLike) -> Array:
@@ -23,6 +20,5 @@ def extract_total(static_drop: ArrayLike, neck_velocity_pressure: ArrayLike) -> 
     printed static drop is then less than the velocity pressure of the neck, which cannot be.
     """
     return np.asarray(
-        np.abs(np.asarray(static_drop, dtype=np.float64))
-        - np.asarray(neck_velocity_pressure, dtype=np.float64)
+        np.abs(np.asarray(static_drop, dtype=np.float64)) - np.asarray(neck_velocity_pressure, dtype=np.float64)
     )

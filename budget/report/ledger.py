@@ -16,16 +16,19 @@ from budget.units import Dimension
 DEEPEST_INDENT = 20
 """Levels; a row that hangs deeper says its level in brackets."""
 
+NAME_ROOM = 25
+"""Columns that names of items and devices may take, indent and all, where the IDs need fewer; the item and device
+tables have them whole."""
+
 INDEX = "index"
 """The sign of the index circuit, a word so that it can be heard as well."""
 
 _LEGEND = (
-    "sum: along the largest circuit through the row, from the source, with static heads, devices fully open. diff.: what is available at "
-    "the connection of the row. margin: what could be added there before the index circuit moves. vel. and grad.: of "
-    "the supply leg where there are two. drop: both legs with what stands on them; of a terminal and of a device, its "
-    "own. Of a terminal, sum is its whole circuit."
+    "sum: along the largest circuit through the row, from the source, with static heads, devices fully open. diff.: "
+    "what is available at the connection of the row. margin: what could be added there before the index circuit moves. "
+    "vel. and grad.: of the supply leg where there are two. drop: both legs with what stands on them; of a terminal "
+    "and of a device, its own. Of a terminal, sum is its whole circuit."
 )
-
 _LEGEND_OF_TERMINALS = (
     "own: the drop of the terminal itself. circuit: from the source to the terminal and back, devices fully open. "
     "excess: what no device takes up. authority: of its control item at design flow; low: when all others are shut."
@@ -63,6 +66,8 @@ class _Rows:
         tree = tuple(hang(description))
         self.tree = tree
         self.step = "  " if max((one.depth for one in tree), default=0) <= 6 else " "
+        self.room = max((len(self._name(id_, depth)) for id_, depth in tree), default=0)
+        self.room = max(self.room, NAME_ROOM)
 
     def all(self) -> Iterator[tuple[str, ...]]:
         for id_, depth in self.tree:
@@ -112,14 +117,13 @@ class _Rows:
             cells = self._run(terminal.run, result.run_out if result else None)
             if result is not None and result.run_out is not None:
                 cells["drop"] = self.figures.pressure(result.run_out.drop, density)
-            yield self._row(self._indented("- run-out", depth + 1), **cells)
+            yield self._row(self._standing("run-out", depth), **cells)
         yield from self._items(terminal.items, result.items if result else (), depth, density)
         yield from self._device(result.device if result else None, depth, density)
 
     def _device(self, device: DeviceResult | None, depth: int, density: float | None) -> Iterator[tuple[str, ...]]:
         if device is not None:
-            name = self._indented(f"- {plain(device.name)}", depth + 1)
-            yield self._row(name, drop=self.figures.pressure(device.base, density))
+            yield self._row(self._standing(device.name, depth), drop=self.figures.pressure(device.base, density))
 
     def _items(
         self, items: tuple[Item, ...], results: tuple[ItemResult, ...], depth: int, density: float | None
@@ -128,7 +132,7 @@ class _Rows:
             sizes = [f"{name} {plain_number(v)}" for name, v in (("Kv", item.kv), ("k", item.k)) if v is not None]
             drop = results[place].drop if place < len(results) else None
             yield self._row(
-                self._indented(f"- {plain(item.name)}", depth + 1),
+                self._standing(item.name, depth),
                 size="".join(sizes),
                 length=self.figures.text(item.equivalent_length, Dimension.LENGTH) if item.equivalent_length else "",
                 drop=self.figures.pressure(drop, density),
@@ -151,6 +155,11 @@ class _Rows:
 
     def _name(self, id_: str, depth: int) -> str:
         return self._indented(plain(id_), depth)
+
+    def _standing(self, name: str, depth: int) -> str:
+        """Name what stands on a row, beneath it; a long name is cut."""
+        text = self._indented(f"- {plain(name)}", depth + 1)
+        return text if len(text) <= self.room else text[: self.room - 3].rstrip() + "..."
 
     def _indented(self, text: str, depth: int) -> str:
         if depth > DEEPEST_INDENT:
@@ -215,6 +224,30 @@ def terminals(budget: Budget, figures: Figures) -> list[str]:
     return [*table(columns, rows), *wrapped(_LEGEND_OF_TERMINALS, "  ", "  ")] if rows else []
 
 
+def items(budget: Budget, figures: Figures) -> list[str]:
+    """Return every item with its drop at design flow and the heading that it counts under."""
+    columns = [
+        Column("stands on", left=True),
+        Column("drop", figures.unit(Dimension.PRESSURE)),
+        Column("heading", left=True),
+        Column("item", left=True),
+    ]
+    rows = []
+    for id_, carried, density in _items(budget):
+        for item in carried:
+            name = plain(item.name) + (", inside" if item.inside else "")
+            rows.append((plain(id_), figures.pressure(item.drop, density), item.heading, name))
+    return table(columns, rows) if rows else []
+
+
+def _items(budget: Budget) -> Iterator[tuple[str, tuple[ItemResult, ...], float]]:
+    for source in budget.sources.values():
+        yield source.id, source.items, source.fluid.density
+    carriers: Iterable[SectionResult | TerminalResult] = (*budget.sections.values(), *budget.terminals.values())
+    for result in carriers:
+        yield result.id, result.items, budget.sources[result.source].fluid.density
+
+
 def devices(budget: Budget, figures: Figures) -> list[str]:
     """Return every balancing device: where it stands, its drop, its opening, its setting, its signal."""
     pressure = figures.unit(Dimension.PRESSURE)
@@ -268,7 +301,8 @@ def fittings(budget: Budget, figures: Figures) -> list[str]:
         Column("loss", figures.unit(Dimension.PRESSURE)),
         Column("method", left=True),
     ]
-    rows, origins = [], {}
+    rows: list[tuple[str, ...]] = []
+    origins: dict[str, None] = {}
     for id_, run, density in _runs(budget):
         for loss in run.legs[0].losses if run.legs else ():
             rows.append((

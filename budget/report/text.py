@@ -4,12 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
 
+from budget import __version__
 from budget.catalogue import CATALOGUE_VERSION
 from budget.description import Description, Level
 from budget.network import HEADINGS, Budget, SourceResult
 from budget.report.caution import CAUTION
 from budget.report.figures import NONE, Figures, plain_number
-from budget.report.ledger import devices, fittings, ledger, terminals
+from budget.report.ledger import devices, fittings, items, ledger, terminals
 from budget.report.located import Located
 from budget.report.plain import plain
 from budget.report.table import Column, labelled, table, wrapped
@@ -24,6 +25,7 @@ def text_report(description: Description, budget: Budget, findings: Iterable[Loc
     parts += [
         _part("Ledger", ledger(description, budget, figures)),
         _part("Terminals", terminals(budget, figures)),
+        _part("Items", items(budget, figures)),
         _part("Balancing devices", devices(budget, figures)),
         _part("Fittings", fittings(budget, figures)),
         _part("Titles and notes", list(_remarks(description))),
@@ -41,14 +43,8 @@ def _title_block(description: Description) -> list[str]:
     design = description.design
     lines = wrapped(plain(design.title) or "Untitled run")
     pairs = [("number", plain(design.number)), ("revision", plain(design.revision)), ("note", plain(design.note))]
-    pairs += [("computed by", f"budget {_version()}, catalogue {CATALOGUE_VERSION}")]
+    pairs += [("computed by", f"budget {__version__}, catalogue {CATALOGUE_VERSION}")]
     return [*lines, *labelled(pairs)]
-
-
-def _version() -> str:
-    from budget import __version__
-
-    return __version__
 
 
 def _summary(description: Description, result: SourceResult, figures: Figures, budget: Budget) -> list[str]:
@@ -107,7 +103,7 @@ def _circuit(description: Description, budget: Budget, source: str, terminal: st
     """Name what an index circuit runs through, from the source's outlet to its inlet."""
     part, path = description.terminals[terminal], budget.terminals[terminal].path
     outward, above = 0, part.from_
-    while above in description.sections:
+    while above is not None and above in description.sections:
         outward += 1
         above = description.sections[above].from_
     steps = [*path[:outward], terminal, *path[outward:]]

@@ -79,6 +79,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("commands", "Command list", ("colon", "ctrl+p"), EVERYWHERE, "commands", 6),
     Action("back", "Back to the ledger", ("escape",), ("ledger", "detail", "findings", "manual", "text"), "back"),
     Action("save", "Save", ("ctrl+s",), EVERYWHERE, "save"),
+    Action("save_as", "Save under another name", (), SCREENS),
     Action("suspend", "Suspend to the shell", ("ctrl+z",), SCREENS),
     Action("quit", "Quit", ("ctrl+q",), (*EVERYWHERE, "list", "entry")),
     Action("choose", "Take what is marked", ("enter",), ("list", "findings"), "take", 1),

@@ -120,11 +120,10 @@ class BudgetApp(App[int], inherit_bindings=False):
         if place == "list" and self.at != "list":
             self.returns_to = self.at
         self.at = place
-        if place not in ("text", "manual"):
-            self.screen.set_focus(None)
         for widget in self.middle.children:
             if widget.id != "beside":
                 widget.display = widget.id == place
+        self.screen.set_focus({"text": self._text, "manual": self._manual}.get(place))
         self.tell()
 
     @property

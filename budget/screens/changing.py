@@ -1,4 +1,4 @@
-"""Changing the run: its shape, one step back and forth, and saving it."""
+"""Changing the run: its shape, and one step back and forth."""
 
 from __future__ import annotations
 
@@ -11,7 +11,6 @@ from budget.screens import shaping
 from budget.screens.chooser import Choice, Offer
 from budget.screens.ledger import Mark
 from budget.screens.safe import plain
-from budget.storage import StorageError
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -74,18 +73,6 @@ def redo(app: BudgetApp) -> None:
     before = document.snapshot
     document.redo()
     _return_to(app, document.history.mark, before, f"redone: {document.history.label}")
-
-
-def save(app: BudgetApp) -> bool:
-    """Write the run to its file; False, with the reason, where it could not be."""
-    try:
-        app.document.save()
-    except StorageError as refused:
-        app.say(plain(str(refused)), "error")
-        return False
-    app.show(app.document.snapshot)
-    app.say(f"saved {plain(str(app.document.path))}")
-    return True
 
 
 def _return_to(app: BudgetApp, mark: object, before: Snapshot, message: str) -> None:

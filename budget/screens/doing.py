@@ -57,6 +57,7 @@ DOINGS: Mapping[str, Doing] = {
     "undo": changing.undo,
     "redo": changing.redo,
     "save": turning.save,
+    "save_as": turning.save_as,
     "show_ledger": lambda app: app.turn_to("ledger"),
     "show_detail": turning.show_detail,
     "show_findings": turning.show_findings,

@@ -198,7 +198,8 @@ def rename(app: BudgetApp) -> None:
         if text != row.id:
             app.apply(edit(text), f"rename {row.id} to {text}", path=(row.path[0], text))
 
-    begin(app, Entry(f"new ID of {plain(row.id)}", Field.holding(row.id), attempt, take, in_cell=app.ledger.column == "id"))
+    in_cell = app.ledger.column == "id"
+    begin(app, Entry(f"new ID of {plain(row.id)}", Field.holding(row.id), attempt, take, in_cell))
 
 
 def next_cell(app: BudgetApp, step: int) -> None:

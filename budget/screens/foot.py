@@ -64,7 +64,7 @@ class Foot(Lines):
     def _keys(self, width: int) -> Iterator[Piece]:
         taken = 0
         for action in FOOTER[self.place]:
-            key = self.keymap.shown(action)
+            key = self.keymap.shown(action, place=self.place)
             text = BY_ID[action].short or BY_ID[action].title.lower()
             need = width_of(key) + width_of(text) + 4
             if not key or taken + need > width:

@@ -22,6 +22,9 @@ SAME_IN_A_TERMINAL: Mapping[str, str] = {
 }
 """Keys that a plain terminal can't tell apart."""
 
+WRITTEN_IN: tuple[Place, ...] = ("entry", "list", "text")
+"""Places where a letter or sign is written, not a command."""
+
 _SIGNS: Mapping[str, str] = {
     "/": "slash", "?": "question_mark", ":": "colon", "=": "equals_sign", "+": "plus", "-": "minus",
     "[": "left_square_bracket", "]": "right_square_bracket", "{": "left_curly_bracket",
@@ -51,9 +54,10 @@ class Keymap:
         """Return what a key does at a place, or None."""
         return self.actions.get(place, {}).get(key)
 
-    def shown(self, action: str, count: int = 1) -> str:
-        """Spell the first keys of an action as a footer shows them: `^s`, `Enter`, `?`."""
-        return " ".join(spelled(key) for key in self.keys[action][:count])
+    def shown(self, action: str, count: int = 1, place: Place = "ledger") -> str:
+        """Spell the first keys of an action that work at a place as a footer shows them: `^s`, `Enter`, `?`."""
+        keys = [key for key in self.keys[action] if place not in WRITTEN_IN or not _is_sign(key)]
+        return " ".join(spelled(key) for key in keys[:count])
 
 
 @dataclass(slots=True)

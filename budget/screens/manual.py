@@ -47,4 +47,3 @@ class ManualScreen(VerticalScroll):
         text = (resources.files("budget") / "manual" / name).read_text("utf-8")
         self.page.update(text)
         self.scroll_home(animate=False)
-        self.focus()

@@ -62,9 +62,9 @@ def sizes(app: BudgetApp, table: Path) -> Offer | None:
     duct = run.line.kind == "duct"
     known = sizes_of(run.line, snapshot.description.design.units)
     now = run.geometry.label if run.geometry else ""
+    bores = [figures.text(bore, Dimension.LENGTH, small=True) for _, bore in known]
     choices = [
-        Choice((plain(size), plain(bore and figures.text(bore, Dimension.LENGTH, small=True))), size, _mark(size == now))
-        for size, bore in known
+        Choice((plain(size), bore), size, _mark(size == now)) for (size, _), bore in zip(known, bores, strict=True)
     ]
 
     def write(text: str) -> Choice | None:

@@ -24,7 +24,6 @@ class TextScreen(TextArea):
         header = index_of(text).header(row.path) if row is not None else None
         if header is not None:
             self.go_to_line(text.count("\n", 0, header.start) + 1)
-        self.focus()
 
     @property
     def changed(self) -> bool:

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, cast
 
 from budget.description.finding import Level, Path, dotted
 from budget.report.located import Located
-from budget.screens import changing, entering, moving
+from budget.screens import changing, entering, moving, saving
 from budget.screens.actions import ACTIONS, Place
 from budget.screens.chooser import Choice, Chooser, Offer
 from budget.screens.detail import lines_of
@@ -250,8 +250,8 @@ def show_manual(app: BudgetApp) -> None:
         return
 
     def take(name: object) -> None:
-        app.manual.open(str(name))
         app.turn_to("manual")
+        app.call_after_refresh(app.manual.open, str(name))
 
     app.offer(Offer("Manual", ("",), [Choice((plain(title),), name) for name, title in found], take))
 
@@ -270,27 +270,21 @@ def save(app: BudgetApp) -> None:
     """Save the run; on the Text screen, what is written there."""
     if app.at == "text" and app.text.changed and not apply_text(app):
         return
-    changing.save(app)
+    saving.save(app)
+
+
+def save_as(app: BudgetApp) -> None:
+    """Save under another name."""
+    saving.save_as(app)
 
 
 def leave_app(app: BudgetApp) -> None:
-    """Quit; where the run is not saved, ask first."""
+    """Quit; what is written on the Text screen is taken first."""
     if app.at == "text" and app.text.changed and not apply_text(app):
         return
-    if not app.document.dirty:
-        app.exit(0)
-        return
-    choices = [
-        Choice(("save and quit",), "save"),
-        Choice(("quit without saving",), "discard"),
-        Choice(("stay",), "stay"),
-    ]
-    app.offer(Offer("The run is not saved", ("",), choices, lambda value: _quit(app, value)))
-
-
-def _quit(app: BudgetApp, value: object) -> None:
-    if value == "discard" or (value == "save" and changing.save(app)):
-        app.exit(0)
+    if app.entry is not None:
+        entering.leave(app)
+    saving.leave(app)
 
 
 def suspend(app: BudgetApp) -> None:

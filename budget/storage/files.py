@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from budget.description import read_bytes
-from budget.description.source import LARGEST_FILE
+from budget.description.source import LARGEST_FILE, Source
 
 
 class StorageError(Exception):
@@ -33,7 +33,10 @@ class Stamp:
 
 
 def load(path: Path) -> tuple[bytes, Stamp]:
-    """Read a file's bytes. Raises StorageError for anything that is not a readable regular file of sensible size."""
+    """Read a file's bytes, of one that is too large one more than is allowed.
+
+    Raises StorageError for anything that is not a readable regular file.
+    """
     try:
         # O_NONBLOCK: a FIFO must not hang the program.
         with os.fdopen(os.open(path, os.O_RDONLY | os.O_NONBLOCK), "rb") as stream:
@@ -44,6 +47,15 @@ def load(path: Path) -> tuple[bytes, Stamp]:
     except OSError as wrong:
         raise StorageError(f"{path} could not be read: {_reason(wrong)}") from wrong
     return content, _stamp(status, content)
+
+
+def load_text(path: Path) -> tuple[Source, Stamp]:
+    """Read a file that is to be edited. Raises StorageError also where it holds no text: too large, or not UTF-8."""
+    content, stamp = load(path)
+    source = read_bytes(content)
+    if source.data is None and not source.text:
+        raise StorageError(f"{path} could not be read: {source.findings[0].message}")
+    return source, stamp
 
 
 def save(path: Path, content: bytes, stamp: Stamp | None) -> Stamp:

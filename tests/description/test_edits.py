@@ -202,7 +202,7 @@ def test_a_key_takes_the_indentation_of_the_last_one() -> None:
     [
         ("", "a = 1\n"),
         ("# about\n", "# about\na = 1\n"),
-        ("# about", "# about\na = 1\n"),
+        ("# about", "# about\na = 1"),
         ("# about\n\n# b\n[b]\n", "# about\n\na = 1\n\n# b\n[b]\n"),
         ("[b]\n", "a = 1\n\n[b]\n"),
         ("b = 1", "b = 1\na = 1"),
@@ -301,6 +301,7 @@ def test_a_key_that_is_taken_away_is_one_line_less(path: Path, line: str) -> Non
         ("[a]\r\nx = 1\r\ny = 2", ("a", "y"), "[a]\r\nx = 1"),
         ("[a]\nx = 1 # c\n# d\ny = [\n 2,\n] # e\n", ("a", "y"), "[a]\nx = 1 # c\n# d\n"),
         ("a.b.c = 1\na.d = 2\n", ("a", "b"), "a.d = 2\n"),
+        ("a.b.c = 1\n", ("a", "b", "c"), ""),
     ],
 )
 def test_what_is_taken_away(text: str, path: Path, new: str) -> None:
@@ -466,6 +467,30 @@ def test_what_is_refused(edit: Edit, message: str) -> None:
     assert message in refused(edit)
 
 
+@pytest.mark.parametrize(
+    ("edit", "message"),
+    [
+        (SetValue(("design", "title", "x"), 1), "design.title is a value"),
+        (SetValue(("device", "DRV 25", "kv", 5), 1), "has 3 elements"),
+        (SetValue(("section", "M1", "item", 5), {}), "has 2 elements"),
+        (SetValue(("section", "M1", "item", 2), 5), "is a table"),
+        (SetValue(("section", "M2", "curve", 3), 5), "yet empty"),
+        (SetValue(("section", "M2", 0), 5), "a key was due"),
+        (SetValue(("design",), 5), "is a table"),
+        (Unset(("design", "titel")), "there is no design.titel"),
+        (Unset(("section", "M1", "fittings", "tee")), "there is no section.M1.fittings.tee"),
+        (Unset(()), "nothing was named"),
+        (RenameKey(("design", "titel"), "x"), "there is no design.titel"),
+        (RenameKey(("section", "M1", "item", 0), "x"), "has no name"),
+        (AddTable(("section", "M1")), "exists already"),
+        (CopyTable(("section", "M1", "fittings", "tee"), ("section", "M3", "tee")), "there is no"),
+    ],
+)
+def test_a_preview_is_refused_too_where_the_text_has_no_place_for_it(edit: Edit, message: str) -> None:
+    with pytest.raises(EditError, match=message):
+        apply_to_text(RUN, edit, verify=False)
+
+
 def test_a_text_that_cannot_be_read_is_refused() -> None:
     assert "cannot be read" in refused(SetValue(("a",), 1), "a = ")
     assert "cannot be edited" in refused(SetValue(("b",), 1), f"a = {'[' * 80}{']' * 80}")
@@ -546,7 +571,7 @@ def test_a_run_of_many_sections_is_renamed_in_one_pass() -> None:
     assert new == text.replace('"A"', '"C"').replace("section.A", "section.C")
 
 
-ANY_DOCUMENT = settings(max_examples=150, deadline=None, suppress_health_check=[HealthCheck.filter_too_much])
+ANY_DOCUMENT = settings(max_examples=100, deadline=None, suppress_health_check=[HealthCheck.filter_too_much])
 
 
 @ANY_DOCUMENT

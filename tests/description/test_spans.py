@@ -68,7 +68,7 @@ def read(text: str) -> dict[str, Any]:
         raise
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(documents())
 def test_the_paths_are_those_of_the_document_and_each_span_spells_its_value(text: str) -> None:
     data = read(text)
@@ -91,7 +91,7 @@ def test_the_paths_are_those_of_the_document_and_each_span_spells_its_value(text
         assert column >= 1
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(documents(), st.data())
 def test_a_character_of_a_value_leads_to_its_path(text: str, data: st.DataObject) -> None:
     read(text)
@@ -106,7 +106,7 @@ def test_a_character_of_a_value_leads_to_its_path(text: str, data: st.DataObject
     assert isinstance(index.path_at(data.draw(st.integers(0, len(text)))), tuple)
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(documents())
 def test_blocks_stand_in_order_apart_from_each_other_and_hold_their_own_lines(text: str) -> None:
     read(text)
@@ -229,7 +229,7 @@ def test_nested_too_deeply_is_an_error_not_a_crash() -> None:
         assert len(list(SpanIndex.of(fair).paths())) == 33
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(st.text(alphabet="ab=[]{}\"'\\#.,\n\r 1-", max_size=40))
 def test_what_is_no_toml_is_refused_or_indexed_but_never_hangs(text: str) -> None:
     try:

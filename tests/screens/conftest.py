@@ -7,6 +7,7 @@ from collections.abc import Awaitable, Callable
 from pathlib import Path
 
 import pytest
+from textual import events
 from textual.pilot import Pilot
 
 from budget.document import Document
@@ -27,20 +28,26 @@ class Hands:
 
     async def press(self, *keys: str) -> None:
         """Press keys by name."""
-        await self.pilot.press(*keys)
-        await self.pilot.pause()
+        for key in keys:
+            character = key if len(key) == 1 else CHARACTERS.get(key)
+            await self.send(events.Key(key, character))
+
+    async def send(self, event: events.Event) -> None:
+        """Send an event as the terminal does, and wait until it was dealt with."""
+        self.app.post_message(event)
+        for _ in range(2):
+            await self.pilot._wait_for_screen()
 
     async def type(self, text: str) -> None:
         """Type letters."""
-        await self.pilot.press(*(NAMES.get(c, c) for c in text))
-        await self.pilot.pause()
+        await self.press(*(NAMES.get(c, c) for c in text))
 
     async def at(self, id_: str, column: str = "length") -> None:
         """Put the cursor on a row and column."""
         row = next(row for row in self.app.ledger.rows if row.id == id_ and row.kind != "item")
         self.app.ledger.go_to(row.path, column)
         self.app.tell()
-        await self.pilot.pause()
+        await self.pilot._wait_for_screen()
 
     def lines(self, widget: Lines | None = None) -> list[str]:
         """What a widget shows, the ledger where none is named."""
@@ -52,6 +59,16 @@ class Hands:
     def row(self, id_: str) -> str:
         """The line of the ledger that begins with an ID."""
         return next(line for line in self.lines(self.app.ledger) if line.lstrip("» ").split(" ")[0] == id_)
+
+    @property
+    def place(self) -> str:
+        """Where the hands are."""
+        return self.app.place
+
+    @property
+    def screen(self) -> str:
+        """Which screen is in front."""
+        return self.app.at
 
     @property
     def foot(self) -> str:
@@ -73,6 +90,8 @@ NAMES = {
     " ": "space", ".": "full_stop", '"': "quotation_mark", "=": "equals_sign", "-": "minus", "/": "slash",
     "{": "left_curly_bracket", "}": "right_curly_bracket", "_": "underscore", ",": "comma", "%": "percent_sign",
 }  # fmt: skip
+
+CHARACTERS = {name: character for character, name in NAMES.items()}
 
 Play = Callable[[Hands], Awaitable[None]]
 Stage = Callable[..., None]

@@ -93,7 +93,7 @@ def test_the_footer_shows_at_most_six_keys_and_fits_80_columns() -> None:
         assert len(actions) <= 6
         for action in actions:
             assert place in BY_ID[action].places
-        words = (f" {keymap.shown(a)} {BY_ID[a].short or BY_ID[a].title.lower()}  " for a in actions)
+        words = (f" {keymap.shown(a, place=place)} {BY_ID[a].short or BY_ID[a].title.lower()}  " for a in actions)
         assert sum(map(len, words)) <= 80, place
 
 

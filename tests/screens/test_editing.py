@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import pytest
+from textual import events
 
 from tests.screens.conftest import SMALL, Hands, Stage
 
@@ -52,10 +53,10 @@ def test_an_invalid_value_says_what_is_wrong_beside_the_cell_and_stays_out(play:
         await hands.type("12,4 m")
         assert "has a decimal comma" in hands.row("M1")
         await hands.press("enter")
-        assert hands.app.place == "entry"
+        assert hands.place == "entry"
         assert hands.text == SMALL
         await hands.press("escape")
-        assert hands.app.place == "ledger"
+        assert hands.place == "ledger"
 
     play(act)
 
@@ -100,7 +101,7 @@ def test_a_computed_cell_says_so(play: Stage) -> None:
         await hands.at("M1", "margin")
         await hands.press("enter")
         assert hands.foot.startswith("margin is computed")
-        assert hands.app.place == "ledger"
+        assert hands.place == "ledger"
 
     play(act)
 
@@ -109,7 +110,7 @@ def test_tab_goes_from_one_cell_that_can_be_edited_to_the_next(play: Stage) -> N
     async def act(hands: Hands) -> None:
         await hands.at("M1", "size")
         await hands.press("enter", "tab")
-        assert hands.app.place == "entry"
+        assert hands.place == "entry"
         assert hands.app.ledger.column == "length"
         await hands.press("8", "tab")
         assert "length = 8\n" in hands.text
@@ -173,21 +174,18 @@ def test_a_value_is_edited_in_the_row_detail(play: Stage) -> None:
         await hands.press(*["down"] * place)
         await hands.press("enter", "9", "enter")
         assert "length = 9\n" in hands.text
-        assert hands.app.at == "detail"
+        assert hands.screen == "detail"
         await hands.press("escape")
-        assert hands.app.at == "ledger"
+        assert hands.screen == "ledger"
 
     play(act)
 
 
 def test_pasted_text_goes_into_the_field(play: Stage) -> None:
     async def act(hands: Hands) -> None:
-        from textual import events
-
         await hands.at("M1")
         await hands.press("enter")
-        hands.app.post_message(events.Paste("11 m\n"))
-        await hands.pilot.pause()
+        await hands.send(events.Paste("11 m\n"))
         await hands.press("enter")
         assert 'length = "11 m"' in hands.text
 

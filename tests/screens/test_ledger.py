@@ -28,7 +28,7 @@ def test_rows_stand_in_file_order_each_under_what_feeds_it() -> None:
 
 
 def test_what_hangs_on_nothing_stands_at_the_end_and_a_circle_does_not_hang_the_tree() -> None:
-    loose = SMALL.replace('from = "M1"\nsize = "15 mm"\nlength = "6.0 m"', 'from = "M9"\nsize = "15 mm"\nlength = "6.0 m"')
+    loose = SMALL.replace('title = "North rooms"\nfrom = "M1"', 'title = "North rooms"\nfrom = "M9"')
     rows = tree(Document.of(loose).snapshot.description)
     assert [row.id for row in rows if row.depth == 0] == ["P1", "B1"]
     circle = SMALL.replace('from = "P1"', 'from = "B2"')
@@ -57,7 +57,10 @@ def test_the_figures_are_those_of_the_results(example) -> None:  # type: ignore[
             assert cells["margin"].text == figures.text(result.margin, Dimension.PRESSURE)
             assert cells["velocity"].text == figures.text(result.run.legs[0].velocity, Dimension.VELOCITY)
         else:
-            terminal = snapshot.budget.terminals[row.id]
+            terminal = snapshot.budget.terminals.get(row.id)
+            if terminal is None:
+                assert "sum" not in cells
+                continue
             assert cells["sum"].text == figures.text(terminal.circuit, Dimension.PRESSURE)
             assert cells["margin"].text == figures.text(terminal.margin, Dimension.PRESSURE)
 

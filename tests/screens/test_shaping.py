@@ -124,7 +124,7 @@ def test_a_branch_is_hung_on_another_section(play: Stage) -> None:
     async def act(hands: Hands) -> None:
         await hands.at("R1")
         await hands.press("m")
-        assert hands.app.at == "list"
+        assert hands.screen == "list"
         await hands.type("South")
         await hands.press("enter")
         assert parts(hands.text)["terminal"]["R1"]["from"] == "B2"

@@ -14,6 +14,7 @@ import time
 from collections.abc import Mapping
 from pathlib import Path
 from types import TracebackType
+from typing import Self
 
 import pyte
 
@@ -54,10 +55,12 @@ class Session:
             os.execve(sys.executable, [sys.executable, "-c", code, str(file)], whole)
         fcntl.ioctl(self._fd, termios.TIOCSWINSZ, struct.pack("HHHH", self.rows, self.columns, 0, 0))
 
-    def __enter__(self) -> Session:
+    def __enter__(self) -> Self:
         return self
 
-    def __exit__(self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None) -> None:
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
         self.close()
 
     def resize(self, columns: int, rows: int) -> None:

@@ -1,0 +1,153 @@
+"""Calling commands: their table, the exit statuses, help, and what happens when something goes wrong."""
+
+from __future__ import annotations
+
+import argparse
+import difflib
+import importlib
+import os
+import sys
+from collections.abc import Mapping, Sequence
+from typing import NamedTuple
+
+from budget import __version__
+from budget.report.plain import plain
+
+OK = 0
+"""Nothing above a note."""
+WARNINGS = 1
+"""Warnings, no error."""
+REFUSED = 2
+"""An error in a file, a call that was not understood, or something that could not be done."""
+INTERNAL = 70
+"""The program itself failed."""
+INTERRUPTED = 130
+"""Stopped from the keyboard."""
+PIPE_CLOSED = 141
+"""Whoever read the output went away."""
+
+DEBUG = "BUDGET_DEBUG"
+"""Environment variable; where it is set, an internal error shows its traceback."""
+
+
+class Command(NamedTuple):
+    """One command: what it does in a line, and a call of it as an example."""
+
+    summary: str
+    example: str
+
+
+COMMANDS: Mapping[str, Command] = {
+    "check": Command("Compute runs and list what is wrong or doubtful.", "budget check heating.toml --json"),
+    "report": Command("Print the whole budget of a run as text.", "budget report heating.toml > heating.txt"),
+    "edit": Command("Open a run in the terminal app.", "budget edit heating.toml"),
+    "new": Command("Write a small run to start from.", "budget new heating.toml --kind heating --units SI"),
+    "set": Command("Set one key in a run's file.", "budget set heating.toml section.M1.length '14.5 m'"),
+    "unset": Command("Take one key out of a run's file.", "budget unset heating.toml section.M1.note"),
+    "list": Command("List pipes, ducts, fittings, fluids, limits or units.", "budget list fittings 'elbow 90'"),
+    "explain": Command("Say what a finding code means.", "budget explain transitional"),
+    "manual": Command("Read the manual.", "budget manual file"),
+    "config": Command("Find or check the settings of the app.", "budget config --check"),
+    "completion": Command("Print a completion script for a shell.", "budget completion bash > ~/.budget-completion"),
+}
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run a command; return its exit status. No exception leaves it."""
+    arguments = list(sys.argv[1:] if argv is None else argv)
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="backslashreplace")
+    try:
+        status = _dispatch(arguments)
+        if sys.stdout is not None:
+            sys.stdout.flush()
+    except SystemExit as leaving:
+        status = leaving.code if isinstance(leaving.code, int) else REFUSED
+    except KeyboardInterrupt:
+        status = INTERRUPTED
+    except BrokenPipeError:
+        _drop_output()
+        status = PIPE_CLOSED
+    except Exception as wrong:
+        if os.environ.get(DEBUG):
+            raise
+        say(f"internal error: {type(wrong).__name__}: {wrong}; set {DEBUG}=1 to see where")
+        status = INTERNAL
+    return status
+
+
+def say(message: str) -> None:
+    """Tell something on standard error, in one line."""
+    print(f"budget: {plain(message)}", file=sys.stderr)
+
+
+def parser_of(name: str) -> argparse.ArgumentParser:
+    """Return the parser of one command."""
+    command = COMMANDS[name]
+    parser = argparse.ArgumentParser(
+        prog=f"budget {name}",
+        description=command.summary,
+        epilog=f"example:\n  {command.example}",
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        allow_abbrev=False,
+    )
+    importlib.import_module(f"budget.commands.{name}").add_arguments(parser)
+    return parser
+
+
+def overview() -> str:
+    """Return the help of the program: every command with what it does and an example."""
+    width = max(map(len, COMMANDS)) + 2
+    lines = ["usage: budget COMMAND ...", "", "The pressure budget of a pipe or duct run, kept in a TOML file.", ""]
+    lines += ["commands:", *(f"  {name:{width}}{command.summary}" for name, command in COMMANDS.items()), ""]
+    lines += ["options:", f"  {'--help':{width}}Show this, or the help of a command: budget check --help."]
+    lines += [f"  {'--version':{width}}Show the version of the program and of its catalogue.", ""]
+    lines += ["examples:", *(f"  {command.example}" for command in COMMANDS.values()), ""]
+    lines += ["A design calculation, to be checked by an engineer: budget manual accuracy-and-caution."]
+    return "\n".join(lines)
+
+
+def _dispatch(arguments: list[str]) -> int:
+    name, rest = (arguments[0], arguments[1:]) if arguments else ("", [])
+    if name in COMMANDS:
+        options = parser_of(name).parse_args(rest)
+        status: int = importlib.import_module(f"budget.commands.{name}").run(options)
+        return status
+    if name in ("-h", "--help", "help"):
+        if rest and rest[0] in COMMANDS:
+            print(parser_of(rest[0]).format_help(), end="")
+            return OK
+        print(overview())
+        return OK
+    if name == "--version":
+        print(_version())
+        return OK
+    if not name:
+        print(overview(), file=sys.stderr)
+        return REFUSED
+    say(f"there is no {'option' if name.startswith('-') else 'command'} {name!r}; {_instead(name)}")
+    return REFUSED
+
+
+def _instead(name: str) -> str:
+    if name.endswith(".toml"):
+        return f"to open a run, write budget edit {name}"
+    close = difflib.get_close_matches(name, COMMANDS, n=1, cutoff=0.5)
+    return f"did you mean {close[0]}?" if close else "budget --help lists them"
+
+
+def _version() -> str:
+    from budget.catalogue import CATALOGUE_VERSION  # noqa: PLC0415 - a call of another command does without
+
+    return f"budget {__version__}, catalogue {CATALOGUE_VERSION}"
+
+
+def _drop_output() -> None:
+    """Let nothing be written any more, so that leaving the interpreter doesn't fail a second time."""
+    try:
+        nowhere = os.open(os.devnull, os.O_WRONLY)
+        os.dup2(nowhere, sys.stdout.fileno())
+        os.close(nowhere)
+    except (OSError, ValueError):
+        pass
