@@ -69,6 +69,10 @@ def main(argv: Sequence[str] | None = None) -> int:
     except BrokenPipeError:
         _drop_output()
         status = PIPE_CLOSED
+    except OSError as wrong:
+        _drop_output()
+        say(f"{wrong.filename or 'the output'} could not be read or written: {wrong.strerror or wrong}")
+        status = REFUSED
     except Exception as wrong:
         if os.environ.get(DEBUG):
             raise

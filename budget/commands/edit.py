@@ -9,12 +9,14 @@ from pathlib import Path
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take a file, and how it is shown."""
     parser.add_argument("file", metavar="FILE", help="a run's file")
-    parser.add_argument("--ascii", action="store_true", help="draw with plain characters, for a terminal without UTF-8")
-    parser.add_argument("--mouse", action="store_true", help="let the mouse work in the app")
+    parser.add_argument(
+        "--ascii", action="store_const", const=True, help="draw with plain characters, for a terminal without UTF-8"
+    )
+    parser.add_argument("--mouse", action="store_const", const=True, help="let the mouse work in the app")
 
 
 def run(options: argparse.Namespace) -> int:
-    """Open the app; return its exit status."""
+    """Open the app; return its exit status. What is not said here is as the settings say."""
     from budget import screens  # noqa: PLC0415 - help and completion must not wait for the app
 
     return screens.run(Path(options.file), ascii=options.ascii, mouse=options.mouse) or 0

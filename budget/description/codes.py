@@ -14,6 +14,7 @@ class Code(NamedTuple):
 
 CODES: dict[str, Code] = {
     # the file
+    "unreadable": Code("error", "The file can't be read."),
     "encoding": Code("error", "The file is not UTF-8. Save it as UTF-8 without a byte order mark."),
     "too-large": Code("error", "The file is larger than any run needs."),
     "nesting": Code("error", "Brackets or tables are nested deeper than any run needs."),

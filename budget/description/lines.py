@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from typing import Any, Literal
 
 from budget.catalogue import duct_line, duct_names, pipe_line, pipe_names
-from budget.description.finding import Path
+from budget.description.finding import Path, dotted
 from budget.description.model import Line
 from budget.description.schema import KEYED
 from budget.description.values import Reading, nearest
@@ -25,7 +25,7 @@ def read_lines(reading: Reading, data: Mapping[str, Any]) -> dict[tuple[str, str
         for name, entry in entries.items():
             path: Path = (kind, name)
             if not isinstance(entry, dict):
-                reading.wrong("type", f"{kind}.{name} must be a table; write [{kind}.{name}]", path)
+                reading.wrong("type", f"{name!r} must be a table; write [{dotted(path)}]", path)
                 continue
             values = reading.table(entry, KEYED[kind], path)
             lines[kind, name] = _line(reading, kind, name, values, entry, path)
@@ -39,7 +39,8 @@ def _line(
     listed = (pipe_line(wanted) if kind == "pipe" else duct_line(wanted)) if wanted is not None else None
     if wanted is not None and listed is None:
         known = pipe_names() if kind == "pipe" else duct_names()
-        reading.wrong("unknown-line", f"{wanted!r} is not in the catalogue; {nearest(wanted, known, 3)}", (*path, "catalogue"))
+        hint = nearest(wanted, known, 3)
+        reading.wrong("unknown-line", f"{wanted!r} is not in the catalogue; {hint}", (*path, "catalogue"))
     if "catalogue" not in entry and "roughness" not in entry:
         reading.wrong("missing", f"the {kind} {name!r} has neither catalogue nor roughness; state one", path)
     if wanted is not None and "sizes" in entry:

@@ -15,6 +15,14 @@ from budget.description.values import Reading, nearest
 from budget.physics.fittings import CV_PER_KV
 from budget.units import Dimension
 
+_DROP_KEYS = {
+    "at": ("drop", "clean"),
+    "exponent": ("drop", "clean"),
+    "tested_density": ("drop", "clean"),
+    "state": ("clean",),
+}
+"""Keys of an item that say more about a drop, and with which forms of it."""
+
 _ITEM_FORMS = ("k", "kv", "cv", "drop", "equivalent_length", "clean")
 _TEXTS = ("title", "note", "location")
 _RUN_OUT_KEYS = (*(key for key in RUN if key not in ("takeoff", "junction", "angle", "class")),)
@@ -29,9 +37,8 @@ def read_source(reading: Reading, id_: str, values: dict[str, Any], path: Path, 
             reading.wrong("contradiction", text, (*item.path, "control"))
         for key in ("k", "equivalent_length"):
             if getattr(item, key) is not None:
-                reading.wrong(
-                    "no-reference", f"{key} has no velocity to refer to on a source; state kv or drop", (*item.path, key)
-                )
+                text = f"{key} has no velocity to refer to on a source; state kv or drop"
+                reading.wrong("no-reference", text, (*item.path, key))
     outlet = read_duct_size(reading, values["outlet"], (*path, "outlet"), remark=False) if "outlet" in values else None
     if outlet is not None and not reading.gas:
         reading.wrong("contradiction", "an outlet belongs to a fan; remove it", (*path, "outlet"))
@@ -224,14 +231,15 @@ def _items(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Item, .
 def _item(reading: Reading, entry: Mapping[str, Any], path: Path) -> Item:
     forms = [key for key in _ITEM_FORMS if key in entry]
     if not forms and not reading.faulty(path):
-        reading.wrong("missing", "the item has no drop; state k, kv, cv, drop, clean and final, or equivalent_length", path)
+        text = "the item has no drop; state k, kv, cv, drop, clean and final, or equivalent_length"
+        reading.wrong("missing", text, path)
     if len(forms) > 1:
         reading.wrong("contradiction", f"{' and '.join(forms)} are both stated; keep one", (*path, forms[1]))
         forms = forms[:1]
     if ("clean" in entry) != ("final" in entry):
         missing = "final" if "clean" in entry else "clean"
         reading.wrong("missing", f"a filter needs clean and final; state {missing}", (*path, missing))
-    for key, owners in (("at", ("drop", "clean")), ("exponent", ("drop", "clean")), ("tested_density", ("drop", "clean")), ("state", ("clean",))):
+    for key, owners in _DROP_KEYS.items():
         if key in entry and not set(forms) & set(owners) and not reading.faulty(path):
             reading.wrong("contradiction", f"{key} without {owners[0]}; remove it", (*path, key))
     for key in ("characteristic", "rangeability"):

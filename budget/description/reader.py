@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import unicodedata
 from collections.abc import Callable, Mapping
+from itertools import pairwise
 from typing import Any
 
 from budget.catalogue import fitting_names
@@ -19,7 +20,7 @@ from budget.description.model import (
     OwnFitting,
 )
 from budget.description.parts import read_section, read_source, read_terminal
-from budget.description.schema import FORMAT, KEYED, SINGLE, TOP
+from budget.description.schema import CLASSES, FORMAT, KEYED, SINGLE, TOP
 from budget.description.scope import Scope
 from budget.description.source import Source
 from budget.description.values import Reading, nearest, what_is
@@ -171,7 +172,7 @@ def _display(reading: Reading, data: Mapping[str, Any]) -> dict[str, str]:
 
 
 def _limits(values: dict[str, Any]) -> Limits:
-    classes = {name: values.pop(name) for name in ("main", "branch", "run-out") if name in values}
+    classes: dict[str, dict[str, float]] = {name: values.pop(name) for name in CLASSES if name in values}
     return Limits(classes=classes, **values)
 
 
@@ -207,7 +208,7 @@ def _device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> D
         reading.wrong("contradiction", "greatest_drop is below least_drop; correct one", (*path, "greatest_drop"))
     for key in tables:
         curve = [second for _, second in values[key]]
-        steps = [later - earlier for earlier, later in zip(curve, curve[1:], strict=False)]
+        steps = [later - earlier for earlier, later in pairwise(curve)]
         if steps and not (all(step > 0 for step in steps) or all(step < 0 for step in steps)):
             reading.wrong("order", f"{key} must rise or fall all the way; correct the table", (*path, key))
     return Device(
@@ -223,7 +224,7 @@ def _device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> D
 
 
 def _order(source: Source, data: Mapping[str, Any]) -> tuple[str, ...]:
-    places = []
+    places: list[tuple[int, int, str]] = []
     for table in ("source", "section", "terminal"):
         entries = data.get(table, {})
         for id_ in entries if isinstance(entries, dict) else ():

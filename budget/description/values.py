@@ -8,6 +8,7 @@ import re
 import sys
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
+from itertools import pairwise
 from typing import Any
 
 from budget.description.finding import Finding, Path, error
@@ -32,7 +33,14 @@ KEEPS_BASIS = frozenset({Dimension.FLOW, Dimension.PRESSURE, Dimension.VISCOSITY
 
 _NUMERAL = re.compile(r"[+-]?[0-9]{1,20}(\.[0-9]{1,20})?")
 
-_KINDS: dict[type, str] = {str: "a text", bool: "true or false", int: "a whole number", float: "a number", list: "a list", dict: "a table"}
+_KINDS: dict[type, str] = {
+    str: "a text",
+    bool: "true or false",
+    int: "a whole number",
+    float: "a number",
+    list: "a list",
+    dict: "a table",
+}
 
 
 @dataclass(slots=True)
@@ -162,7 +170,8 @@ class Reading:
             elif isinstance(value, int | float) and not isinstance(value, bool):
                 quantity = bare(value, spec.dimension, unit)
             else:
-                self.wrong("type", f"{what_is(value)} where a quantity was due; write a text such as \"1 {unit}\"", path)
+                example = f"1 {unit}".rstrip()
+                self.wrong("type", f'{what_is(value)} where a quantity was due; write such as "{example}"', path)
                 return None
         except UnitError as refused:
             self.wrong(refused.code, str(refused), path)
@@ -188,7 +197,7 @@ class Reading:
                 return None
             pairs.append((first, second))
         keys = [getattr(first, "value", first) for first, _ in pairs]
-        if any(later <= earlier for earlier, later in zip(keys, keys[1:], strict=False)):
+        if any(later <= earlier for earlier, later in pairwise(keys)):
             self.wrong("order", "the first of each pair must grow from pair to pair; sort the pairs", path)
             return None
         return tuple(pairs)

@@ -14,7 +14,7 @@ Ints = Indices
 Bools = Flags
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Loss:
     """So many fittings of one name on a leg: k = constant + per_reynolds / Re for one of them."""
 
@@ -27,7 +27,7 @@ class Loss:
     known_from: str
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Legs:
     """Every leg of the run. A parent's number is always below its child's."""
 
@@ -56,7 +56,7 @@ class Legs:
         return len(self.parent)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Terminals:
     """Every terminal that hangs on a source."""
 
@@ -87,7 +87,7 @@ class Terminals:
         return len(self.ids)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Items:
     """Every item in line. The carrier is the leg, terminal or source whose flow goes through it, in one numbering:
     legs first, then terminals, then sources."""
@@ -113,7 +113,7 @@ class Items:
         return len(self.items)
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class DeviceUse:
     """A balancing device in its place."""
 
@@ -134,7 +134,7 @@ class DeviceUse:
     """Zone behind it where it holds a differential, else -1."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Zone:
     """A part of the run with a differential of its own: a source, one side of a fan, or what a device holds."""
 
@@ -150,7 +150,7 @@ class Zone:
     """As stated, Pa; NaN: the largest circuit behind."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Layout:
     """Everything that computing needs, as arrays."""
 

@@ -66,8 +66,8 @@ def _only_its_flow(run: Computed, carrier: int, three_port: bool) -> float:
     taken = np.zeros(len(legs) + len(layout.terminals))
     for number, use in enumerate(layout.devices):
         taken[use.carrier] = run.take_up.taken[number]
-    total = 0.0
     own_zone = int(legs.zone[carrier]) if carrier < len(legs) else int(layout.terminals.zone[terminal])
+    total = _at_source(run, own_zone, terminal, served)
     for leg in path_legs(run, terminal):
         if int(legs.zone[leg]) == own_zone and set(layout.served(leg).tolist()) <= served:
             total += float(drops.leg_total[leg] - drops.leg_static[leg]) + float(taken[leg])
@@ -78,6 +78,21 @@ def _only_its_flow(run: Computed, carrier: int, three_port: bool) -> float:
     while layout.zones[inner].outer != own_zone and layout.zones[inner].outer >= 0:
         inner = layout.zones[inner].outer
     return total + float(run.circuits.required[inner])
+
+
+def _at_source(run: Computed, zone: int, terminal: int, served: set[int]) -> float:
+    """Return what the whole flow of a source costs where all of it goes through the item: plant, a fan's other side."""
+    layout, terminals = run.layout, run.layout.terminals
+    source = layout.zones[zone].source
+    air = layout.topology.kinds[source] == "air"
+    whole = terminals.source == source
+    if air:
+        whole = whole & (terminals.discharge == terminals.discharge[terminal])
+    if layout.zones[zone].outer >= 0 or set(np.flatnonzero(whole).tolist()) != served:
+        return 0.0
+    if not air:
+        return float(run.drops.source_items[source])
+    return run.required_of(source) - float(run.circuits.required[zone])
 
 
 def _held_differential(run: Computed, carrier: int) -> float:

@@ -14,7 +14,7 @@ TIE = 1e-9
 """Circuits that come within this fraction of the largest are equally large."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Circuits:
     """What every path needs; Pa, one element a leg, terminal or zone."""
 
@@ -138,7 +138,7 @@ def _leg_margins(layout: Layout, margin: Floats, zone_margin: Floats) -> Floats:
     if not any(zone.outer >= 0 for zone in layout.zones):
         return least_served(margin, *serving)
     found = np.full(len(layout.legs), np.inf)
-    for number in np.unique(layout.legs.zone).tolist():
+    for number in sorted(set(layout.legs.zone.tolist())):
         these = layout.legs.zone == number
         found[these] = least_served(margins_within(layout, number, margin, zone_margin), *serving)[these]
     return found

@@ -15,7 +15,7 @@ from budget.network.results import HEADINGS, ItemResult
 from budget.network.takeup import TakeUp, take_up
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Computed:
     """The layout of a run, its flows and drops, its circuits, and what its devices take up."""
 

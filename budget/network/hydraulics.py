@@ -16,7 +16,7 @@ from budget.physics.friction import friction_factor, pressure_gradient, regime, 
 from budget.physics.power import velocity_pressure
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Hydraulics:
     """What flows and what it costs: kg/s, m/s, Pa, Pa/m; one element a leg, terminal, item or device."""
 

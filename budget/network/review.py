@@ -116,15 +116,14 @@ def _legs(run: Computed) -> Iterator[Finding]:
             owner, _ = _owner(run, leg)
             word = "gradient" if code == "gradient" else "velocity"
             text = f"{word} {{0}} is {side} its limit, {{1}}"
-            path: Path = (*owner.path, "bore" if _states_bore(owner) else "size")
-            yield warning(code, text, path, (float(values[leg]), dimension), (float(limit[leg]), dimension))
+            yield warning(code, text, _size_path(owner), (float(values[leg]), dimension), (float(limit[leg]), dimension))
     for leg in _worst(run, transitional, drops.friction):
         owner, _ = _owner(run, leg)
         text = (
             f"Reynolds number {float(drops.reynolds[leg]):.0f} is transitional (2300 to 4000); "
             "no published friction law is reliable there"
         )
-        yield warning("transitional", text, (*owner.path, "size"))
+        yield warning("transitional", text, _size_path(owner))
     for leg in np.flatnonzero(drops.too_diverse).tolist():
         if legs.first[leg] or not drops.too_diverse[_first_leg(run, leg)]:
             owner, _ = _owner(run, leg)
@@ -135,9 +134,10 @@ def _legs(run: Computed) -> Iterator[Finding]:
             )
 
 
-def _states_bore(owner: Section | Terminal) -> bool:
+def _size_path(owner: Section | Terminal) -> Path:
     geometry = owner.run.geometry if owner.run else None
-    return geometry is not None and geometry.label.endswith("mm bore")
+    stated = "bore" if geometry is not None and geometry.label.endswith("mm bore") else "size"
+    return (*owner.path, stated)
 
 
 def _first_leg(run: Computed, leg: int) -> int:

@@ -17,7 +17,7 @@ EDGE = 1e-9
 """A setting within this fraction of an end of its table is inside it."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class TakeUp:
     """What each device takes up, and what remains at each terminal, Pa."""
 
@@ -25,7 +25,7 @@ class TakeUp:
     excess: Floats
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Adjusted:
     """A device at its drop: the Kv or loss coefficient that it needs there, its setting, its measuring signal."""
 

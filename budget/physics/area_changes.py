@@ -15,11 +15,6 @@ from budget.physics.tables import across
 
 ABRUPT: Final = 180.0
 """Included angle in degrees of an abrupt change of area."""
-PLANE: Final = 1.0
-"""`steepness` of a cone, or of a rectangular transition that widens in one plane."""
-PYRAMID: Final = 4.0 / 3.2
-"""`steepness` of a rectangular transition that widens on all four sides, and of rectangular to round."""
-
 # SMACNA 1990 table 14-12 A, on the downstream velocity; equal areas lose nothing.
 _ANGLE = np.array([10.0, 15.0, 40.0, 50.0, 60.0, 90.0, 120.0, 150.0, 180.0])
 _RATIO = np.array([0.1, 1.0 / 6.0, 0.25, 0.5, 1.0])
@@ -33,20 +28,32 @@ _CONVERGING = np.array(
     ]
 )
 
+# SMACNA A-8 figure B, pyramid, on the upstream velocity, from memory; no angle and equal areas lose nothing.
+_PYRAMID_ANGLE = np.array([0.0, 16.0, 20.0, 30.0, 45.0, 60.0, 90.0, 120.0, 180.0])
+_PYRAMID = np.array(
+    [
+        [0.0, 0.42, 0.49, 0.59, 0.70, 0.80, 0.87, 0.85, 0.86],
+        [0.0, 0.42, 0.47, 0.58, 0.68, 0.72, 0.76, 0.76, 0.75],
+        [0.0, 0.36, 0.43, 0.50, 0.56, 0.61, 0.63, 0.63, 0.63],
+        [0.0, 0.18, 0.22, 0.25, 0.29, 0.31, 0.32, 0.33, 0.30],
+        [0.0, 0.00, 0.00, 0.00, 0.00, 0.00, 0.00, 0.00, 0.00],
+    ]
+)
+
 # Idelchik 5-23: K = -P(n) (10 a + 2 pi a^2 - a^3), a in radians.
 _P = np.array([-0.00745, 0.00444, -0.00723, 0.0224, -0.0125])
 _GRADUAL_TO = 120.0  # from here on the formula is led over to the sudden contraction
 
 
-def enlargement(area_ratio: ArrayLike, angle: ArrayLike, steepness: ArrayLike = PLANE) -> Array:
-    """Loss coefficient of an enlargement on the velocity in the smaller area.
+def enlargement(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
+    """Loss coefficient of an enlargement, a cone or one that widens in one plane, on the velocity in the smaller area.
 
-    The share 3.2 k tan(angle/2)^1.25 of the sudden loss, at most the whole of it, which a cone reaches at 43 degrees. `steepness` is
-    k: PLANE or PYRAMID. Source: Idelchik, diagram 5-1 (from memory; 12 to 16 % below Gibson's formula between 7.5 and 30
-    degrees); that a steep one loses as much as a sudden one from 50 degrees: Hydraulic Institute, eq. 3.B.4 (read).
+    The share 3.2 tan(angle/2)^1.25 of the sudden loss, at most the whole of it, which is reached at 43 degrees. Source:
+    Idelchik, diagram 5-1 (from memory; 12 to 16 % below Gibson's formula between 7.5 and 30 degrees); that one steeper than 50
+    degrees counts as sudden: Hydraulic Institute, eq. 3.B.4 (read).
     """
     theta = np.clip(np.asarray(angle, dtype=np.float64), 0.0, 90.0)  # tan grows beyond any share before 90 degrees
-    share = 3.2 * np.asarray(steepness, dtype=np.float64) * np.tan(0.5 * np.radians(theta)) ** 1.25
+    share = 3.2 * np.tan(0.5 * np.radians(theta)) ** 1.25
     return np.asarray(np.minimum(share, 1.0) * sudden_enlargement(area_ratio))
 
 
@@ -94,6 +101,15 @@ def duct_convergence(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
     the piece. Source: SMACNA HVAC Systems Duct Design (1990), table 14-12 A (read).
     """
     return across(_ratio(area_ratio), angle, _RATIO, _ANGLE, _CONVERGING)
+
+
+def pyramid_divergence(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
+    """Loss coefficient of a rectangular duct that widens on all four sides, or between rectangular and round.
+
+    On the velocity in the smaller area; a printed table from 16 degrees and to area ratio 0.5, from there straight to nothing at no
+    angle and at equal areas. Source: SMACNA HVAC Systems Duct Design, table A-8 figure B (from memory).
+    """
+    return across(_ratio(area_ratio), angle, _RATIO, _PYRAMID_ANGLE, _PYRAMID)
 
 
 def _ratio(area_ratio: ArrayLike) -> Array:

@@ -7,6 +7,7 @@ import numpy as np
 
 from budget.physics.arrays import Array, ArrayLike, Flags
 from budget.physics.glycols import POLYNOMIALS, Basis, Kind
+from budget.physics.polynomials import polynomial, polynomial_of_two
 
 ZERO_CELSIUS: Final = 273.15
 STANDARD_PRESSURE: Final = 101_325.0
@@ -72,12 +73,12 @@ def water(temperature: ArrayLike) -> FluidState:
     Source: Kell (1975), J. Chem. Eng. Data 20; IAPWS SR6-08; specific heat an own fit. From memory, verified.
     """
     t = np.asarray(temperature, dtype=np.float64) - ZERO_CELSIUS
-    density = np.polynomial.polynomial.polyval(t, _KELL) / (1.0 + 16.879850e-3 * t)
+    density = polynomial(t, _KELL) / (1.0 + 16.879850e-3 * t)
     reduced = np.asarray(temperature, dtype=np.float64) / 300.0
     viscosity = 1e-6 * (
         280.68 * reduced**-1.9 + 511.45 * reduced**-7.7 + 61.131 * reduced**-19.6 + 0.45903 * reduced**-40.0
     )
-    specific_heat = np.polynomial.polynomial.polyval(t / 100.0, _WATER_HEAT)
+    specific_heat = polynomial(t / 100.0, _WATER_HEAT)
     return FluidState(np.asarray(density), np.asarray(viscosity), np.asarray(specific_heat))
 
 
@@ -91,11 +92,10 @@ def glycol(kind: Kind, basis: Basis, fraction: ArrayLike, temperature: ArrayLike
     t = np.asarray(temperature, dtype=np.float64) - p.temperature_base
     x = np.asarray(fraction, dtype=np.float64) - p.fraction_base
     t, x = np.broadcast_arrays(t, x)
-    polyval2d = np.polynomial.polynomial.polyval2d
     return FluidState(
-        np.asarray(polyval2d(t, x, p.density)),
-        np.asarray(p.viscosity_unit * np.exp(polyval2d(t, x, p.log_viscosity))),
-        np.asarray(polyval2d(t, x, p.specific_heat)),
+        np.asarray(polynomial_of_two(t, x, p.density)),
+        np.asarray(p.viscosity_unit * np.exp(polynomial_of_two(t, x, p.log_viscosity))),
+        np.asarray(polynomial_of_two(t, x, p.specific_heat)),
     )
 
 
@@ -103,7 +103,7 @@ def freezing_point(kind: Kind, basis: Basis, fraction: ArrayLike) -> Array:
     """Temperature in K at which the first ice forms in a mixture with `fraction` (0 to 1) of glycol."""
     p = POLYNOMIALS[kind, basis]
     x = np.asarray(fraction, dtype=np.float64) - p.fraction_base
-    value = np.polynomial.polynomial.polyval(x, p.freezing)
+    value = polynomial(x, p.freezing)
     return np.asarray(np.exp(value) if p.freezing_is_log else value)
 
 
@@ -158,7 +158,7 @@ _OVER_WATER = (-5.8002206e3, 1.3914993, -4.8640239e-2, 4.1764768e-5, -1.4452093e
 
 
 def _log_saturation(t: Array, c: tuple[float, ...]) -> Array:
-    return np.asarray(c[0] / t + np.polynomial.polynomial.polyval(t, c[1:6]) + c[6] * np.log(t))
+    return np.asarray(c[0] / t + polynomial(t, c[1:6]) + c[6] * np.log(t))
 
 
 def _mixture_viscosity(t: Array, vapour_share: Array) -> Array:

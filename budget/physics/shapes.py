@@ -7,6 +7,7 @@ import numpy as np
 
 from budget.physics.arrays import Array, ArrayLike
 from budget.physics.friction import ROUND
+from budget.physics.polynomials import polynomial
 
 FLEXIBLE_DIAMETERS: Final = (0.150, 0.250)
 """Diameters in m within which the compression factor of flexible duct was measured."""
@@ -45,7 +46,7 @@ def rectangle(width: ArrayLike, height: ArrayLike) -> Shape:
     """
     a, b = _sides(width, height)
     area, perimeter = a * b, 2.0 * (a + b)
-    constant = np.polynomial.polynomial.polyval(a / b, _RECTANGLE)
+    constant = polynomial(a / b, _RECTANGLE)
     return _shape(area, perimeter, constant)
 
 

@@ -19,8 +19,8 @@ _STEEP = 45.0  # degrees of the cone in a reduced-bore valve, above which its lo
 def bend(ft: ArrayLike, radius_ratio: ArrayLike, angle: ArrayLike = 90.0) -> Array:
     """Pipe bend of centre-line radius r/D 1 to 20 that turns by `angle` degrees; a coil turns by more than 360.
 
-    K = (angle/90 - 1) (pi/4 fT r/D + K90/2) + K90 with K90 = n fT; below 90 degrees K90 in proportion to the angle would be
-    higher, so the same formula is taken, never below zero. Source: Crane TP-410 (read).
+    K = (angle/90 - 1) (pi/4 fT r/D + K90/2) + K90 with K90 = n fT. Source: Crane TP-410 (read); published from 90 degrees on
+    and taken down to 45, where it lies above other sources.
     """
     factor, radius = np.asarray(ft, dtype=np.float64), np.asarray(radius_ratio, dtype=np.float64)
     k90 = along(radius, _RADIUS, _BEND) * factor

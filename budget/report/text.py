@@ -88,8 +88,9 @@ def _fluid(result: SourceResult, figures: Figures) -> str:
     def leg(rho: float, mu: float) -> str:
         return f"{figures.text(rho, density, unit=True)}, {figures.text(mu, viscosity, unit=True)}"
 
+    other = "suction" if result.kind == "air" else "return"
     supply, back = leg(fluid.density, fluid.viscosity), leg(fluid.return_density, fluid.return_viscosity)
-    return f"{plain(fluid.name)}, {supply}" + (f"; return {back}" if back != supply else "")
+    return f"{plain(fluid.name)}, {supply}" + (f"; {other} {back}" if back != supply else "")
 
 
 def _power(value: float | None, description: Description) -> str:

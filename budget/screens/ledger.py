@@ -175,13 +175,15 @@ class Ledger(Lines):
         for placed in self.placed:
             key = placed.column.key
             cell = cells.get(key, EMPTY)
-            roles = cell.role
-            if current and key == self.column:
-                roles = f"{cell.role} cursor"
-            elif current and key == "id":
-                roles = f"{cell.role} row"
             text = self._indented(row, cell.text, placed.width - 1) if key == "id" else cell.text
-            yield _aligned(_fitting(text, placed), placed, cell.sign or " "), roles
+            spelled = _aligned(_fitting(text, placed), placed, cell.sign or " ")
+            if current and key == self.column:
+                yield spelled, f"{cell.role} cursor"
+            elif current and key == "id":
+                yield spelled.rstrip(), f"{cell.role} row"
+                yield spelled[len(spelled.rstrip()) :], cell.role
+            else:
+                yield spelled, cell.role
 
     def _indented(self, row: Row, text: str, width: int) -> str:
         indent = " " * min(row.depth, DEEPEST_INDENT)

@@ -27,5 +27,6 @@ def open_app(path: Path, config: Config, problems: tuple[str, ...], *, ascii_onl
     guard.watch()
     code = app.run(mouse=mouse)
     if guard.code is not None:
+        guard.let_go()
         return guard.code
     return code if code is not None else app.return_code or 0

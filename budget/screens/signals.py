@@ -47,6 +47,13 @@ class Guard:
         finally:
             self._close(self.code)
 
+    def let_go(self) -> None:
+        """Turn the outputs to nowhere after a hang-up: flushing them at the end would fail and change the exit code."""
+        if self.code == 128 + signal.SIGHUP:
+            nowhere = os.open(os.devnull, os.O_WRONLY)
+            for stream in (1, 2):
+                os.dup2(nowhere, stream)
+
     def _on_signal(self, number: int, _frame: FrameType | None) -> None:
         self.trigger(number)
 

@@ -159,6 +159,15 @@ def test_a_reader_that_goes_away_is_no_error(run_file: Path) -> None:
     assert ended.stdout in ("141\n", "0\n")
 
 
+def test_output_that_can_not_be_written_is_told(run_file: Path) -> None:
+    with Path("/dev/full").open("w") as full:
+        command = [sys.executable, "-m", "budget", "check", str(run_file)]
+        ended = subprocess.run(command, stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+    assert ended.returncode == 2
+    assert ended.stderr.startswith("budget: the output could not be read or written: ")
+    assert len(ended.stderr.splitlines()) == 1
+
+
 def test_a_check_reads_nothing_that_it_does_not_need(run_file: Path) -> None:
     script = (
         "import sys; from budget.commands import main; "

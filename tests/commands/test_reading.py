@@ -117,7 +117,7 @@ def test_the_app_is_opened_with_what_was_asked_for(
     monkeypatch.setattr(screens, "run", run, raising=False)
     assert call("edit", run_file).status == 0
     assert call("edit", "--ascii", "--mouse", run_file).status == 3
-    assert seen == [(run_file, {"ascii": False, "mouse": False}), (run_file, {"ascii": True, "mouse": True})]
+    assert seen == [(run_file, {"ascii": None, "mouse": None}), (run_file, {"ascii": True, "mouse": True})]
 
 
 def test_completion_knows_every_command_option_and_word(call: Caller) -> None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import partial
 
 from tests.description.sound import SOUND, SOUND_AIR
 
@@ -29,8 +30,7 @@ class Fault:
         return self.base.replace(self.old, self.new, 1)
 
 
-def _air(*parts: str, level: str = "error") -> Fault:
-    return Fault(*parts, level=level, base=SOUND_AIR)
+_air = partial(Fault, base=SOUND_AIR)
 
 
 STRAINER, CONTROL = "kv = 21.0", 'control = "two-port"'

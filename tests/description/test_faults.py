@@ -2,17 +2,14 @@
 
 from __future__ import annotations
 
-import json
 import time
 
 import pytest
 
-from budget.description import CODES, describe, read_bytes
-from budget.network import evaluate
-from budget.report.json import results
-from budget.report.located import Located, locate
+from budget.description import CODES
 from tests.description import faults, wrong_runs
 from tests.description.faults import Fault
+from tests.description.reading import findings_in
 from tests.description.sound import SOUND, SOUND_AIR, SOUND_OPEN
 
 GROUPS = {
@@ -22,16 +19,6 @@ GROUPS = {
     if isinstance(group, tuple) and group and isinstance(group[0], Fault)
 }
 FAULTS = [pytest.param(fault, id=f"{name}: {fault.name}") for name, group in GROUPS.items() for fault in group]
-
-
-def findings_in(content: bytes) -> tuple[Located, ...]:
-    """Read, compute and report a file as the command does; findings with their places."""
-    source = read_bytes(content)
-    description = describe(source)
-    budget = evaluate(description)
-    found = locate(budget.findings, source, description)
-    json.dumps(results("0", "run.toml", description, budget, found), allow_nan=False)
-    return found
 
 
 @pytest.mark.parametrize("text", [SOUND, SOUND_AIR, SOUND_OPEN], ids=["liquid", "air", "open"])
@@ -88,7 +75,9 @@ def test_a_file_that_can_not_be_read_is_refused_at_its_place(
     assert ";" in found[0].message
 
 
-@pytest.mark.parametrize("content", [b"", b"\n", b"format = 1", b"# nothing\r\n", b"format = 1\n[section.A]\n[terminal.B]"])
+@pytest.mark.parametrize(
+    "content", [b"", b"\n", b"format = 1", b"# nothing\r\n", b"format = 1\n[section.A]\n[terminal.B]"]
+)
 def test_a_file_with_little_in_it_is_told_what_it_lacks(content: bytes) -> None:
     found = findings_in(content)
     assert {"missing"} <= {one.code for one in found} <= {"missing", "format", "no-drop"}

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from functools import partial
+
 from tests.description.faults import B1, CONTROL, M1, PIPE, STRAINER, T2, V1, Fault
 from tests.description.sound import SOUND, SOUND_AIR
 
@@ -10,8 +12,7 @@ FROM_P1 = 'from = "P1"\nsize'
 HELD = SOUND.replace(B1, B1 + '\nbalance = "H1"')
 
 
-def _air(*parts: str, level: str = "error") -> Fault:
-    return Fault(*parts, level=level, base=SOUND_AIR)
+_air = partial(Fault, base=SOUND_AIR)
 
 
 MISSING = (
@@ -77,7 +78,8 @@ CONTRADICTIONS = (
           "contradiction", "section.B2", "duct", '"sheet"\nsize', "keep one"),
     Fault("at", STRAINER, STRAINER + "\nat = 1",
           "contradiction", "section.M1", "item.0.at", "1\n\n[section.B1", "remove it"),
-    Fault("tee", '"elbow 90" = 4', '"tee branch" = 1', "contradiction", "section.M1", 'fittings."tee branch"', '1, "swing', "keep one",
+    Fault("tee", '"elbow 90" = 4', '"tee branch" = 1', "contradiction", "section.M1",
+          'fittings."tee branch"', '1, "swing', "keep one",
           base=SOUND.replace(M1, M1 + '\ntakeoff = "branch"')),
     Fault("load", T2, T2 + "\nflow = 1", "contradiction", "terminal.T2", "load", '"6 kW"', "keep one"),
     Fault("neck", T2, T2 + '\nneck = "200 mm"',
@@ -231,7 +233,8 @@ JUDGEMENTS = (
           "transitional", "terminal.T1", "size", '"DN20"', "2300 to 4000", "warning"),
     Fault("tees", 'takeoff = "none"\n', "",
           "junction", "section.B1", "takeoff", "B1]\nfrom", "state takeoff", "warning"),
-    Fault("globe", M1, M1 + '\nfitting_method = "hooper"', "fitting-method", "section.M1", 'fittings."foot valve"', "4, ",
+    Fault("globe", M1, M1 + '\nfitting_method = "hooper"', "fitting-method",
+          "section.M1", 'fittings."foot valve"', "4, ",
           "it is taken", "note", SOUND.replace("elbow 90", "foot valve")),
     Fault("range", '"elbow 90"', '"elbow 90 long"', "fitting-range", "section.M1", 'fittings."elbow 90 long"', "4, ",
           "nearest tabulated value", "warning", SOUND.replace('"DN32"', '"DN15"')),
@@ -243,7 +246,8 @@ JUDGEMENTS = (
           "excess", "terminal.T3", "balance", "T3]", "no device takes it up", "warning"),
     Fault("at its end", '"400 kPa"', '"13 kPa"',
           "excess", "terminal.T3", "balance", '"F1"', "can't take it up", "warning"),
-    Fault("table", "[1, 0.05]", "[1, 2.3]", "device-range", "terminal.T2", "balance", '"V1"\n\n[terminal.T3', "another size", "warning",
+    Fault("table", "[1, 0.05]", "[1, 2.3]", "device-range", "terminal.T2", "balance",
+          '"V1"\n\n[terminal.T3', "another size", "warning",
           SOUND.replace("[2, 0.6], ", "")),
     Fault("signal", V1, V1 + "\nsignal_kv = 9\nleast_signal = 1",
           "signal", "terminal.T2", "balance", '"V1"\n\n[terminal.T3', "below the least", "warning"),

@@ -7,7 +7,7 @@ import math
 import pytest
 
 from budget.network import SectionResult, TerminalResult
-from tests.network.small import GAS, LIQUID, budget_of, errors_of, places, findings_of
+from tests.network.small import GAS, LIQUID, budget_of, errors_of
 
 SECTION = (
     LIQUID
@@ -410,9 +410,3 @@ def test_static_is_the_weight_of_the_column_and_the_pressure_needed_at_the_outle
     assert budget.sources["P1"].static == pytest.approx(118_259.85)
     # Static is no part of a section's drop.
     assert budget.sections["M1"].run.drop == 0.0
-
-
-def test_a_loss_on_a_coil_with_no_flow_of_its_own_stays_out_of_other_legs() -> None:
-    budget = budget_of(SECTION.replace("SECTION", "bore = 40, length = 0").replace("FLOW", "flow = 1"))
-    assert budget.sections["M1"].run.drop == 0.0
-    assert places(list(findings_of(SECTION.replace("SECTION", "bore = 40, length = 0").replace("FLOW", "flow = 1")))) == []

@@ -27,7 +27,10 @@ KEYS = {
 
 RUN = "import sys; from pathlib import Path; from budget.screens import run; sys.exit(run(Path(sys.argv[1])))"
 
-ENVIRONMENT = {"TERM": "xterm-256color", "LC_ALL": "C.UTF-8", "LANG": "C.UTF-8"}
+ENVIRONMENT = {"TERM": "xterm-256color", "LC_ALL": "C.UTF-8", "LANG": "C.UTF-8", "ESCDELAY": "20"}
+
+ANSWER, QUIET = 0.8, 0.07
+"""Seconds in which the first byte of an answer comes, and after which nothing more of it does."""
 
 
 class Session:
@@ -74,10 +77,10 @@ class Session:
         for key in keys:
             os.write(self._fd, KEYS.get(key, key).encode())
 
-    def settle(self, quiet: float = 0.25, limit: float = 8.0) -> int:
+    def settle(self, quiet: float = 0.15, limit: float = 8.0) -> int:
         """Read until nothing comes for a while; return how many bytes came."""
         before, until = len(self.received), time.monotonic() + limit
-        while time.monotonic() < until and self._read(quiet):
+        while time.monotonic() < until and self.read(quiet):
             pass
         return len(self.received) - before
 
@@ -85,17 +88,18 @@ class Session:
         """Read until a text stands on the screen; fail with the screen where it does not come."""
         until = time.monotonic() + limit
         while text not in self.text:
-            if time.monotonic() > until or (not self._read(0.2) and self.ended):
+            if time.monotonic() > until or (not self.read(0.2) and self.ended):
                 raise AssertionError(f"{text!r} did not come; the screen was\n{self.text}")
         self.settle()
 
     def press(self, *keys: str) -> int:
-        """Send keys one after the other, waiting for each; return how many bytes came back."""
-        count = 0
+        """Send keys one after the other, waiting for what each brings; return how many bytes came back."""
+        before = len(self.received)
         for key in keys:
             self.send(key)
-            count += self.settle()
-        return count
+            if self.read(ANSWER):
+                self.settle(QUIET)
+        return len(self.received) - before
 
     @property
     def lines(self) -> list[str]:
@@ -120,11 +124,22 @@ class Session:
         """Read until the app has ended; return its exit code."""
         until = time.monotonic() + limit
         while not self.ended and time.monotonic() < until:
-            self._read(0.1)
-        while self._read(0.1):
+            self.read(0.1)
+        while self.read(0.1):
             pass
         assert self.code is not None, "the app did not end"
         return self.code
+
+    def wait_for_stop(self, limit: float = 8.0) -> None:
+        """Read until the app has stopped itself, as a shell sees it."""
+        until = time.monotonic() + limit
+        while time.monotonic() < until:
+            self.read(0.05)
+            pid, status = os.waitpid(self.pid, os.WUNTRACED | os.WNOHANG)
+            if pid and os.WIFSTOPPED(status):
+                self.settle(0.05)
+                return
+        raise AssertionError("the app did not stop")
 
     def signal(self, number: int) -> None:
         """Send the app a signal."""
@@ -145,7 +160,8 @@ class Session:
         os.close(self._fd)
         self._fd = -1
 
-    def _read(self, timeout: float) -> bool:
+    def read(self, timeout: float) -> bool:
+        """Read what comes within a time; return whether anything did."""
         if self._fd < 0:
             return False
         ready, _, _ = select.select([self._fd], [], [], timeout)

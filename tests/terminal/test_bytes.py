@@ -6,7 +6,6 @@ import re
 
 import pytest
 
-from budget.screens.themes import names_of_themes
 from tests.terminal.conftest import EXAMPLES, Open
 
 SMALL_SCREEN, LARGE_SCREEN = (80, 24), (200, 50)
@@ -22,49 +21,39 @@ def changed_cells(before: list[str], after: list[str]) -> int:
     return count
 
 
-@pytest.mark.parametrize("theme", names_of_themes())
-def test_a_cursor_move_sends_at_most_400_bytes(opened: Open, theme: str) -> None:
-    session = opened(LARGE_RUN, config=f'theme = "{theme}"')
-    for key in ("down", "down", "right", "down", "left", "up", "down"):
-        assert session.press(key) <= 400, key
-
-
-def test_on_a_large_screen_700_bytes_besides_the_lines_of_the_row_detail(opened: Open) -> None:
-    session = opened(LARGE_RUN, size=LARGE_SCREEN)
-    assert session.press("right") <= 700
-    before = session.lines
-    sent = session.press("down")
-    detail = sum(len(new) - 100 for old, new in zip(before, session.lines, strict=True) if old[134:] != new[134:])
-    assert sent <= 700 + detail
-
-
-@pytest.mark.parametrize(("size", "start", "each"), [(SMALL_SCREEN, 300, 100), (LARGE_SCREEN, 600, 150)])
-def test_an_edit_sends_what_it_changes(opened: Open, size: tuple[int, int], start: int, each: int) -> None:
+@pytest.mark.parametrize(
+    ("size", "start", "move", "edit", "cell"),
+    [(SMALL_SCREEN, 35_000, 400, 300, 100), (LARGE_SCREEN, 75_000, 700, 600, 150)],
+    ids=["80x24", "200x50"],
+)
+def test_no_more_is_sent_than_what_changed(
+    opened: Open, size: tuple[int, int], start: int, move: int, edit: int, cell: int
+) -> None:
     session = opened(size=size)
-    session.press("down", "down", "enter")
-    for keys in ("2", "5"):
+    session.settle(0.4)
+    assert len(session.received) <= start
+    assert session.settle(quiet=5.0 if size == SMALL_SCREEN else 1.0, limit=5.0) == 0
+
+    for key in ("down", "right", "left", "down"):
         before = session.lines
-        sent = session.press(keys)
+        assert session.press(key) <= move + detail(before, session.lines, size[0]), key
+
+    session.press("enter")
+    for key in ("2", "5", "enter", "u"):
+        before = session.lines
+        sent = session.press(key)
         cells = changed_cells(before, session.lines)
-        assert cells > 5
-        assert sent <= start + each * cells
-    before = session.lines
-    sent = session.press("enter")
-    assert sent <= start + each * max(1, changed_cells(before, session.lines))
-    before = session.lines
-    sent = session.press("u")
-    assert sent <= start + each * changed_cells(before, session.lines)
+        assert cells > 5 or key == "enter"
+        assert sent <= edit + cell * max(1, cells), key
+    assert session.settle(quiet=1.0, limit=1.0) == 0
 
 
-def test_nothing_is_sent_while_nothing_happens(opened: Open) -> None:
-    session = opened()
-    assert session.settle(quiet=5.0, limit=5.0) == 0
-    session.press("down", "enter")
-    assert session.settle(quiet=2.0, limit=2.0) == 0
+def test_a_theme_of_many_colours_keeps_to_it_in_true_colour(opened: Open) -> None:
+    session = opened(LARGE_RUN, config='theme = "dark"', environment={"COLORTERM": "truecolor"})
+    assert max(session.press(key) for key in ("down", "down", "right", "down", "left", "up", "down")) <= 400
 
 
-@pytest.mark.parametrize(("size", "most"), [(SMALL_SCREEN, 35_000), (LARGE_SCREEN, 75_000)])
-def test_the_start_sends_little(opened: Open, size: tuple[int, int], most: int) -> None:
-    session = opened(LARGE_RUN, size=size)
-    session.settle(0.5)
-    assert len(session.received) <= most
+def detail(before: list[str], after: list[str], width: int) -> int:
+    """Return how many cells the changed lines of the row detail have, where it stands beside the ledger."""
+    left = next((line.index("Row detail") for line in after if "Row detail" in line), width)
+    return sum(old[left:] != new[left:] for old, new in zip(before, after, strict=True)) * (width - left)

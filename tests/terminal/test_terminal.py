@@ -49,7 +49,8 @@ def test_a_wrong_colour_system_is_mended_before_it_can_crash() -> None:
 def test_in_a_pipe_it_ends_at_once(tmp_path: Path) -> None:
     file = tmp_path / "run.toml"
     file.write_text(SMALL)
-    ended = subprocess.run([sys.executable, "-c", RUN, str(file)], capture_output=True, text=True, timeout=20, check=False)
+    command = [sys.executable, "-c", RUN, str(file)]
+    ended = subprocess.run(command, capture_output=True, text=True, timeout=20, check=False)
     assert ended.returncode == 2
     assert ended.stderr.count("\n") == 1
     assert "needs a terminal" in ended.stderr
@@ -88,7 +89,7 @@ def test_a_closed_terminal_ends_it(opened: Open) -> None:
 def test_after_a_stop_everything_is_painted_again(opened: Open) -> None:
     session = opened()
     session.send("ctrl+z")
-    session.settle()
+    session.wait_for_stop()
     assert BACK in session.received
     session.received = b""
     session.screen.reset()
