@@ -1,4 +1,4 @@
-"""The catalogue: pipe and duct lines, pipe fittings, fluids and usual limits, each figure with its source.
+"""The catalogue: pipe and duct lines, fittings by name and by kind, fluids, usual limits, each figure with its source.
 
 The data stand in the TOML files beside this module; each file is read once, when it is first asked for.
 """
@@ -16,20 +16,25 @@ from budget.catalogue.ducts import (
 )
 from budget.catalogue.fittings import METHODS, Coefficient, Fitting, coefficient, fitting, fitting_names
 from budget.catalogue.fluids import Fluid, fluid, fluid_names
+from budget.catalogue.kinds import Check, Kind, KindCoefficient, Parameter, kind, kind_coefficient, kind_names
 from budget.catalogue.limits import Limit, limits
 from budget.catalogue.pipes import PipeLine, PipeSize, pipe_line, pipe_names
 
-CATALOGUE_VERSION: Final = "1.0"
+CATALOGUE_VERSION: Final = "1.1"
 """Version of the data; it changes whenever a figure does."""
 
 __all__ = [
     "CATALOGUE_VERSION",
     "METHODS",
+    "Check",
     "Coefficient",
     "DuctLine",
     "Fitting",
     "Fluid",
+    "Kind",
+    "KindCoefficient",
     "Limit",
+    "Parameter",
     "PipeLine",
     "PipeSize",
     "coefficient",
@@ -41,6 +46,9 @@ __all__ = [
     "fluid_names",
     "is_standard_rectangle",
     "is_standard_round",
+    "kind",
+    "kind_coefficient",
+    "kind_names",
     "limits",
     "nearest_round",
     "pipe_line",

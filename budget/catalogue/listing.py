@@ -8,6 +8,8 @@ from typing import Any, Final
 from budget.catalogue.ducts import DuctLine, duct_line, duct_names, standard_sizes
 from budget.catalogue.fittings import fitting, fitting_names
 from budget.catalogue.fluids import Fluid, fluid, fluid_names
+from budget.catalogue.kind_listing import Block, kind_blocks, kinds_block
+from budget.catalogue.kinds import kind, kind_names
 from budget.catalogue.limits import limits
 from budget.catalogue.loader import load
 from budget.catalogue.pipes import PipeLine, pipe_line, pipe_names
@@ -79,9 +81,7 @@ def _pipes_overview(names: Iterable[str]) -> list[Row]:
     for line in (_pipe(name) for name in names):
         sizes = f"{line.sizes[0].written} to {line.sizes[-1].written}"
         listing.append(
-            Row(
-                (line.name, _mm(line.roughness), sizes, line.source, _known(line.known_from, line.confidence))
-            )
+            Row((line.name, _mm(line.roughness), sizes, line.source, _known(line.known_from, line.confidence)))
         )
     return listing
 
@@ -98,9 +98,7 @@ def _pipe_detail(name: str) -> list[Row]:
     if line.note:
         listing.append(Row((line.note,)))
     listing.append(Row(("size", "also", "nominal mm", "outside mm", "bore mm"), heading=True))
-    listing += [
-        Row((s.written, ", ".join(s.other), _mm(s.nominal), _mm(s.outside), _mm(s.bore))) for s in line.sizes
-    ]
+    listing += [Row((s.written, ", ".join(s.other), _mm(s.nominal), _mm(s.outside), _mm(s.bore))) for s in line.sizes]
     return listing
 
 
@@ -129,9 +127,7 @@ def _ducts_all(names: Iterable[str]) -> list[Row]:
         sides = " ".join(f"{side * factor:g}" for side in grid.sides)
         if grid.short_sides and grid.short_sides != grid.sides:
             sides += " against " + " ".join(f"{side * factor:g}" for side in grid.short_sides)
-        listing.append(
-            Row((f"{shape}, {unit}", sides, grid.source, _known(grid.known_from, grid.confidence)))
-        )
+        listing.append(Row((f"{shape}, {unit}", sides, grid.source, _known(grid.known_from, grid.confidence))))
     return listing
 
 
@@ -147,17 +143,28 @@ def _duct_detail(name: str) -> list[Row]:
     return listing
 
 
+def _all_fittings() -> tuple[str, ...]:
+    return (*fitting_names(), *kind_names())
+
+
 def _fittings_overview(names: Iterable[str]) -> list[Row]:
-    listing = [Row(("fitting", "methods", "scatter", "source", "known"), heading=True)]
+    names = list(names)
+    listing = []
+    if any(fitting(name) for name in names):
+        listing.append(Row(("fitting", "methods", "scatter", "source", "known"), heading=True))
     for entry in filter(None, map(fitting, names)):
         known = _known(entry.known_from, entry.confidence)
-        listing.append(
-            Row((entry.name, ", ".join(entry.methods), entry.scatter or "not stated", entry.source, known))
-        )
-    return listing
+        listing.append(Row((entry.name, ", ".join(entry.methods), entry.scatter or "not stated", entry.source, known)))
+    return listing + _rows(kinds_block(names))
+
+
+def _rows(block: Block) -> list[Row]:
+    return [Row(cells, heading=i == 0) for i, cells in enumerate(block)]
 
 
 def _fitting_detail(name: str) -> list[Row]:
+    if (by_kind := kind(name)) is not None:
+        return [row for block in kind_blocks(by_kind) for row in _rows(block)]
     tables = load("fittings")
     row: Mapping[str, Any] = next(r for r in tables["fitting"] if r["name"] == name)
     listing = [Row((name,), heading=True)]
@@ -174,9 +181,7 @@ def _fitting_detail(name: str) -> list[Row]:
             figures = ", ".join(f"{size:g} mm {k:g}" for size, k in pairs if k >= 0)
             listing.append(_method("by size", f"{join}, {use}", f"K: {figures}", table, row["by_size"]))
     if "crane" in row:
-        listing.append(
-            _method("crane", "all", f"K = {_crane_n(row['crane'])} fT", tables["crane"], row["crane"])
-        )
+        listing.append(_method("crane", "all", f"K = {_crane_n(row['crane'])} fT", tables["crane"], row["crane"]))
     for method, letters in (("darby", ("Km", "Ki", "Kd")), ("hooper", ("K1", "Kinf"))):
         sets = row[method]["k"] if method in row else []
         for i, figures in enumerate(sets):
@@ -209,9 +214,7 @@ def _fluids_overview(names: Iterable[str]) -> list[Row]:
 def _fluid_detail(name: str) -> list[Row]:
     entry = _fluid(name)
     listing = [Row((entry.name, "correlation", "verified", "source", "known"), heading=True)]
-    listing += [
-        Row((p.name, p.correlation, p.verified, p.source, how_known(p.known_from))) for p in entry.properties
-    ]
+    listing += [Row((p.name, p.correlation, p.verified, p.source, how_known(p.known_from))) for p in entry.properties]
     listing += [Row((f"holds {_range(basis, validity)}",)) for basis, validity in entry.ranges.items()]
     return listing
 
@@ -220,11 +223,7 @@ def _range(basis: str, validity: Validity) -> str:
     low, high = (t - ZERO_CELSIUS for t in validity.temperature)
     least, most = validity.fraction
     text = f"{low:g} to {high:g} degC"
-    return (
-        f"by {basis} {least * 100:g} to {most * 100:g} %, {text}, not below the freezing point"
-        if basis
-        else text
-    )
+    return f"by {basis} {least * 100:g} to {most * 100:g} %, {text}, not below the freezing point" if basis else text
 
 
 def _limits_overview(names: Iterable[str]) -> list[Row]:
@@ -278,7 +277,7 @@ class _Listing:
 _LISTINGS: Final[Mapping[str, _Listing]] = {
     "pipes": _Listing("pipe line", pipe_names, _pipes_overview, _pipe_detail),
     "ducts": _Listing("duct", duct_names, _ducts_all, _duct_detail),
-    "fittings": _Listing("fitting", fitting_names, _fittings_overview, _fitting_detail),
+    "fittings": _Listing("fitting", _all_fittings, _fittings_overview, _fitting_detail),
     "fluids": _Listing("fluid", fluid_names, _fluids_overview, _fluid_detail),
     "limits": _Listing("usual limit", _limit_groups, _limits_overview, _limit_detail),
 }

@@ -283,7 +283,8 @@ def _read_later(reading: Reading, data: Mapping[str, Any], description: Descript
         named = [(("off", place), name) for place, name in enumerate(case.get("off", ()))]
         named += [((key, name), name) for key in ("share", "stroke", "source") for name in case.get(key, {})]
         for where, name in named:
-            if name not in known:
-                hint = nearest(name, known)
+            among = description.sources if where[0] == "source" else known
+            if name not in among:
+                hint = nearest(name, among)
                 reading.wrong("dangling", f"{name!r} is not an ID of this run; {hint}", ("case", id_, *where))
         reading.later("a case", ("case", id_))

@@ -1,16 +1,17 @@
-"""Enlargements and contractions: loss coefficients on the velocity in the smaller area, continuous to the sudden change.
+"""Enlargements and contractions: loss coefficients on the velocity in the smaller area, led over to the sudden change.
 
-`area_ratio` is always the smaller area over the larger one, 0 to 1; `angle` the included angle in degrees, 180 for an abrupt
-change. Friction in the cone is not part of it: its length counts as straight pipe or duct.
+`area_ratio` is always the smaller area over the larger one, 0 to 1; `angle` the included angle in degrees, 180 for an
+abrupt change. Friction in the cone is not part of it: its length counts as straight pipe or duct.
 """
 
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
+from budget.physics.arrays import Array, ArrayLike
 from budget.physics.openings import rounded_entry
-from budget.physics.smooth import Array, smooth_step
+from budget.physics.polynomials import polynomial
+from budget.physics.smooth import smooth_step
 from budget.physics.tables import across
 
 ABRUPT: Final = 180.0
@@ -48,9 +49,9 @@ _GRADUAL_TO = 120.0  # from here on the formula is led over to the sudden contra
 def enlargement(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Loss coefficient of an enlargement, a cone or one that widens in one plane, on the velocity in the smaller area.
 
-    The share 3.2 tan(angle/2)^1.25 of the sudden loss, at most the whole of it, which is reached at 43 degrees. Source:
-    Idelchik, diagram 5-1 (from memory; 12 to 16 % below Gibson's formula between 7.5 and 30 degrees); that one steeper than 50
-    degrees counts as sudden: Hydraulic Institute, eq. 3.B.4 (read).
+    The share 3.2 tan(angle/2)^1.25 of the sudden loss, at most the whole of it, which is reached at 43 degrees.
+    Source: Idelchik, diagram 5-1 (from memory; 12 to 16 % below Gibson's formula between 7.5 and 30 degrees); that
+    one steeper than 50 degrees counts as sudden: Hydraulic Institute, eq. 3.B.4 (read).
     """
     theta = np.clip(np.asarray(angle, dtype=np.float64), 0.0, 90.0)  # tan grows beyond any share before 90 degrees
     share = 3.2 * np.tan(0.5 * np.radians(theta)) ** 1.25
@@ -65,14 +66,14 @@ def sudden_enlargement(area_ratio: ArrayLike) -> Array:
 def contraction(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Loss coefficient of a contraction on the velocity in the smaller area.
 
-    Idelchik's formula for cones to 120 degrees, never above the sudden contraction; to 180 degrees led over to it. Source:
-    Idelchik, diagram 5-23 (from memory).
+    Idelchik's formula for cones to 120 degrees, never above the sudden contraction; to 180 degrees led over to it.
+    Source: Idelchik, diagram 5-23 (from memory).
     """
     n = _ratio(area_ratio)
     theta = np.clip(np.asarray(angle, dtype=np.float64), 0.0, ABRUPT)
     a = np.radians(theta)
     sudden = sudden_contraction(n)
-    gradual = -np.polynomial.polynomial.polyval(n, _P) * a * (10.0 + a * (2.0 * np.pi - a))
+    gradual = -polynomial(n, _P) * a * (10.0 + a * (2.0 * np.pi - a))
     gradual = np.minimum(gradual, sudden)
     return np.asarray(gradual + smooth_step(theta, _GRADUAL_TO, ABRUPT) * (sudden - gradual))
 
@@ -88,8 +89,8 @@ def sudden_contraction(area_ratio: ArrayLike) -> Array:
 def rounded_contraction(area_ratio: ArrayLike, radius_ratio: ArrayLike) -> Array:
     """Loss coefficient of a contraction with a rounded edge, on the velocity in the smaller area.
 
-    That of an entry with the same edge x (1 - n); `radius_ratio` is the radius over the smaller diameter. Source: Idelchik,
-    diagram 4-9 (off the `fluids` library).
+    That of an entry with the same edge x (1 - n); `radius_ratio` is the radius over the smaller diameter. Source:
+    Idelchik, diagram 4-9 (off the `fluids` library).
     """
     return np.asarray(rounded_entry(radius_ratio) * (1.0 - _ratio(area_ratio)))
 
@@ -97,8 +98,8 @@ def rounded_contraction(area_ratio: ArrayLike, radius_ratio: ArrayLike) -> Array
 def duct_convergence(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Loss coefficient of a converging duct transition, round or rectangular, on the velocity in the smaller area.
 
-    A printed table to area ratio 0.5, from there straight to nothing at 1; its least figures, 0.04 to 0.05, hold the friction of
-    the piece. Source: SMACNA HVAC Systems Duct Design (1990), table 14-12 A (read).
+    A printed table to area ratio 0.5, from there straight to nothing at 1; its least figures, 0.04 to 0.05, hold the
+    friction of the piece. Source: SMACNA HVAC Systems Duct Design (1990), table 14-12 A (read).
     """
     return across(_ratio(area_ratio), angle, _RATIO, _ANGLE, _CONVERGING)
 
@@ -106,8 +107,8 @@ def duct_convergence(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
 def pyramid_divergence(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Loss coefficient of a rectangular duct that widens on all four sides, or between rectangular and round.
 
-    On the velocity in the smaller area; a printed table from 16 degrees and to area ratio 0.5, from there straight to nothing at no
-    angle and at equal areas. Source: SMACNA HVAC Systems Duct Design, table A-8 figure B (from memory).
+    On the velocity in the smaller area; a printed table from 16 degrees and to area ratio 0.5, from there straight to
+    nothing at no angle and at equal areas. Source: SMACNA HVAC Systems Duct Design, table A-8 figure B (from memory).
     """
     return across(_ratio(area_ratio), angle, _RATIO, _PYRAMID_ANGLE, _PYRAMID)
 

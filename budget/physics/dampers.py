@@ -1,15 +1,14 @@
 """Dampers and part-open valves: loss coefficients on the velocity in the duct or pipe, by the angle from fully open.
 
-The figures run over four decades, so they are interpolated on their logarithm. Angles are in degrees, 0 fully open; beyond a
-table the figure at its end is held, and whoever calls says so.
+The figures run over four decades, so they are interpolated on their logarithm. Angles are in degrees, 0 fully open;
+beyond a table the figure at its end is held, and whoever calls says so.
 """
 
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike
 from budget.physics.tables import across_log, along_log
 
 BLADE_ANGLES: Final = (0.0, 80.0)
@@ -79,11 +78,11 @@ def round_blade_closed_form(angle: ArrayLike) -> Array:
 
 
 def rectangular_blade(angle: ArrayLike, aspect: ArrayLike) -> Array:
-    """Single thin blade in a rectangular duct, 0 to 70 degrees; `aspect` is the side that the blade spans in height over
-    its length (the axis), in three classes: below 0.25, 0.25 to 1, above.
+    """Single thin blade in a rectangular duct, 0 to 70 degrees.
 
+    `aspect` is the side across the blade's axis over the side along it, in three classes: below 0.25, 0.25 to 1, above.
     Source: SMACNA HVAC Systems Duct Design, table A-14 (from memory).
-    """  # noqa: D205
+    """
     h = np.asarray(aspect, dtype=np.float64)
     classes = [along_log(angle, _SINGLE_ANGLE, row) for _, row in _SINGLE]
     return np.asarray(np.select([h < _SINGLE[0][0], h <= _SINGLE[1][0]], classes[:2], classes[2]))
@@ -115,7 +114,7 @@ def parallel_blades(angle: ArrayLike, ratio: ArrayLike) -> Array:
 
 
 def gate(opening: ArrayLike) -> Array:
-    """Gate valve or slide in a round pipe by the open share of the bore's height, 1/8 to 7/8. Source: Weisbach (from memory)."""
+    """Gate valve or slide in a round pipe, open by 1/8 to 7/8 of the bore's height. Source: Weisbach (from memory)."""
     return along_log(opening, _GATE_OPEN, _GATE)
 
 

@@ -1,18 +1,18 @@
 """Duct elbows and offsets: loss coefficients on the velocity in the duct, by radius, aspect, angle and Reynolds number.
 
-The printed tables are the method and are interpolated; where a closed form was published too it stands beside the table
-and is the check on it. `radius_ratio` is the centre-line radius over the side W in the plane of the bend (round: over the
-diameter), `aspect` is H/W with H the other side, angles are of deflection in degrees. Outside a table the figure at its edge
-is held; whoever calls says so. Loss beyond the elbow's centre-line length, which counts as straight duct.
+The printed tables are the method and are interpolated; where a closed form was published too it stands beside the
+table and is the check on it. `radius_ratio` is the centre-line radius over the side W in the plane of the bend
+(round: over the diameter), `aspect` is H/W with H the other side, angles are of deflection in degrees. Outside a
+table the figure at its edge is held; whoever calls says so. Loss beyond the elbow's centre-line length, which counts
+as straight duct.
 """
 
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
-from budget.physics.tables import across, along
+from budget.physics.arrays import Array, ArrayLike
+from budget.physics.tables import across, across_log, along, along_log
 
 MITRE_ANGLES: Final = (20.0, 90.0)
 """Angles of deflection in degrees that the tables of mitred elbows hold."""
@@ -111,7 +111,7 @@ def angle_factor(angle: ArrayLike) -> Array:
 
 def round_smooth(radius_ratio: ArrayLike, angle: ArrayLike = 90.0) -> Array:
     """Smooth (pressed or spun) round elbow, r/D 0.5 to 2.5. Source: SMACNA A-7 figure A and note 1 (read)."""
-    return np.asarray(along(radius_ratio, _ROUND_RADIUS, _ROUND_SMOOTH) * angle_factor(angle))
+    return np.asarray(along_log(_log(radius_ratio), np.log(_ROUND_RADIUS), _ROUND_SMOOTH) * angle_factor(angle))
 
 
 def round_gored(radius_ratio: ArrayLike, pieces: ArrayLike) -> Array:
@@ -120,8 +120,8 @@ def round_gored(radius_ratio: ArrayLike, pieces: ArrayLike) -> Array:
     In three pieces the table begins at r/D 0.5.
     """
     r, n = np.asarray(radius_ratio, dtype=np.float64), np.asarray(pieces, dtype=np.float64)
-    tight = along(r, [0.5, 0.75], [_THREE_PIECES_TIGHT, _GORED[0, 0]])
-    return np.asarray(np.where((r < 0.75) & (n <= 3.0), tight, across(n, r, _GORE_PIECES, _GORE_RADIUS, _GORED)))
+    tight = along_log(_log(r), np.log([0.5, 0.75]), [_THREE_PIECES_TIGHT, _GORED[0, 0]])
+    return np.asarray(np.where((r < 0.75) & (n <= 3.0), tight, across_log(n, _log(r), _GORE_PIECES, np.log(_GORE_RADIUS), _GORED)))
 
 
 def round_mitre(angle: ArrayLike) -> Array:
@@ -155,7 +155,7 @@ def rectangular_smooth(radius_ratio: ArrayLike, aspect: ArrayLike, angle: ArrayL
 
     Source: ASHRAE Fundamentals 2005, fitting CR3-1, with its angle factor (read).
     """
-    return np.asarray(across(radius_ratio, aspect, _SMOOTH_RADIUS, _SMOOTH_ASPECT, _SMOOTH) * angle_factor(angle))
+    return np.asarray(across_log(_log(radius_ratio), aspect, np.log(_SMOOTH_RADIUS), _SMOOTH_ASPECT, _SMOOTH) * angle_factor(angle))
 
 
 def rectangular_smooth_closed_form(radius_ratio: ArrayLike, aspect: ArrayLike, angle: ArrayLike = 90.0) -> Array:
@@ -166,7 +166,10 @@ def rectangular_smooth_closed_form(radius_ratio: ArrayLike, aspect: ArrayLike, a
     r, h, theta = (np.asarray(x, dtype=np.float64) for x in (radius_ratio, aspect, angle))
     by_angle = np.select(
         [theta <= 70.0, theta < 100.0],
-        [0.9 * np.sin(np.radians(theta)), along(theta, [70.0, 90.0, 100.0], [0.9 * np.sin(np.radians(70.0)), 1.0, 1.0889])],
+        [
+            0.9 * np.sin(np.radians(theta)),
+            along(theta, [70.0, 90.0, 100.0], [0.9 * np.sin(np.radians(70.0)), 1.0, 1.0889]),
+        ],
         0.7 + 0.35 * theta / 90.0,
     )
     by_radius = 0.21 * np.where(r <= 1.0, r**-2.5, r**-0.5)
@@ -179,13 +182,17 @@ def rectangular_splitter(radius_ratio: ArrayLike, aspect: ArrayLike) -> Array:
 
     Source: ASHRAE, fitting CR3-3 (read).
     """
-    return across(radius_ratio, aspect, _SPLIT_RADIUS, _SPLIT_ASPECT, _SPLIT)
+    return across_log(_log(radius_ratio), aspect, np.log(_SPLIT_RADIUS), _SPLIT_ASPECT, _SPLIT)
 
 
 def mitred_offset(length_ratio: ArrayLike, aspect: ArrayLike) -> Array:
     """Offset of two mitred 90 degree elbows in one plane (Z-shape), both together, Re above 1.4e5.
 
-    `length_ratio` is the distance between the elbows over W, 0 to 10. Source: ASHRAE fitting CR3-17 after Idelchik, with the
-    aspect factor of mitred elbows (from memory).
+    `length_ratio` is the distance between the elbows over W, 0 to 10. Source: ASHRAE fitting CR3-17 after Idelchik,
+    with the aspect factor of mitred elbows (from memory).
     """
     return np.asarray(along(length_ratio, _OFFSET_LENGTH, _OFFSET) * along(aspect, _C1_ASPECT, _C1))
+
+
+def _log(radius_ratio: ArrayLike) -> Array:
+    return np.asarray(np.log(np.asarray(radius_ratio, dtype=np.float64)))

@@ -1,15 +1,14 @@
 """Entries, exits, screens and plates: loss coefficients on the velocity in the pipe or duct.
 
-Tables are interpolated and held at their edges; whoever calls says where that happens. D is the diameter of a round opening and
-the hydraulic diameter of any other.
+Tables are interpolated and held at their edges; whoever calls says where that happens. D is the diameter of a round
+opening and the hydraulic diameter of any other.
 """
 
 from typing import Final
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike
 from budget.physics.tables import across, along
 
 FLUSH: Final = 0.5
@@ -84,7 +83,10 @@ def rounded_entry(radius_ratio: ArrayLike) -> Array:
 
 
 def rounded_entry_crane(radius_ratio: ArrayLike) -> Array:
-    """Entry of a pipe with an edge of radius r, by r/d: 0.5 sharp, 0.04 from 0.15. Source: Crane TP-410 (off a library)."""
+    """Entry of a pipe with an edge of radius r, by r/d: 0.5 sharp, 0.04 from 0.15.
+
+    Source: Crane TP-410 (off the `fluids` library).
+    """
     return along(radius_ratio, _CRANE_ROUND, _CRANE_ROUNDED)
 
 
@@ -99,8 +101,9 @@ def bellmouth(radius_ratio: ArrayLike) -> Array:
 def plain_entry(thickness_ratio: ArrayLike, length_ratio: ArrayLike) -> Array:
     """Plain pipe or duct end standing out of a wall, or free.
 
-    `thickness_ratio` is wall thickness over D, `length_ratio` the distance of the end from the wall over D; free from 0.5.
-    Source: Idelchik 3-1 (off the `fluids` library; in part read in the supplement to Principles of HVAC, fitting 1-1).
+    `thickness_ratio` is wall thickness over D, `length_ratio` the distance of the end from the wall over D; free from
+    0.5. Source: Idelchik 3-1 (off the `fluids` library; in part read in the supplement to Principles of HVAC, fitting
+    1-1).
     """
     return across(thickness_ratio, length_ratio, _WALL, _OUT, _PLAIN)
 
@@ -108,7 +111,8 @@ def plain_entry(thickness_ratio: ArrayLike, length_ratio: ArrayLike) -> Array:
 def bevelled_entry(length_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Entry flush in a wall with a bevelled edge: length of the bevel over D, included angle in degrees.
 
-    A bevel shorter than the table begins with is led to the sharp edge. Source: Idelchik 3-7 (off the `fluids` library).
+    A bevel shorter than the table begins with is led to the sharp edge. Source: Idelchik 3-7 (off the `fluids`
+    library).
     """
     lengths = np.concatenate(([0.0], _BEVEL))
     table = np.vstack((np.full(len(_BEVEL_ANGLE), FLUSH), _BEVELLED))
@@ -136,8 +140,8 @@ def hood(angle: ArrayLike, rectangular: ArrayLike) -> Array:
 def conical_exit(area_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Exit through a cone into a room: duct area over outlet area 0.0625 to 0.5, included angle 14 to 90 degrees.
 
-    Holds what is lost in the cone and the velocity pressure at its mouth. Source: ASHRAE fitting SD2 after Idelchik (from
-    memory).
+    Holds what is lost in the cone and the velocity pressure at its mouth. Source: ASHRAE fitting SD2 after Idelchik
+    (from memory).
     """
     return across(area_ratio, angle, _OUTLET_RATIO, _OUTLET_ANGLE, _OUTLET_CONE)
 
@@ -154,8 +158,8 @@ def wire_screen(free_area: ArrayLike) -> Array:
 def perforated_plate(free_area: ArrayLike) -> Array:
     """Thin sharp-edged plate with holes across a duct, or an orifice, by its free-area ratio n.
 
-    (0.707 sqrt(1-n) + 1 - n)^2 / n^2, thickness below 0.015 hole diameters. Source: Idelchik, diagrams 8-1 and 4-15 (from
-    memory).
+    (0.707 sqrt(1-n) + 1 - n)^2 / n^2, thickness below 0.015 hole diameters. Source: Idelchik, diagrams 8-1 and 4-15
+    (from memory).
     """
     n = np.asarray(free_area, dtype=np.float64)
     return np.asarray(((0.707 * np.sqrt(1.0 - n) + 1.0 - n) / n) ** 2)
@@ -164,7 +168,7 @@ def perforated_plate(free_area: ArrayLike) -> Array:
 def rated_coefficient(
     drop: ArrayLike, velocity: ArrayLike, face_ratio: ArrayLike = 1.0, density: ArrayLike = STANDARD_DENSITY
 ) -> Array:
-    """Coefficient on the duct velocity of something a maker rates: `drop` Pa at a face `velocity` m/s and air `density`.
+    """Coefficient on the duct velocity of what a maker rates: `drop` Pa at a face `velocity` in m/s, air of `density`.
 
     `face_ratio` is the face area over the duct area; K = drop / (rho v^2/2) / face_ratio^2.
     """

@@ -1,14 +1,14 @@
 """Reading between the rows of a printed table: linear, and held at the ends."""
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike, Indices
 
 
 def along(x: ArrayLike, xs: ArrayLike, ys: ArrayLike) -> Array:
     """Value of a row at `x`, linear between its entries and held beyond them; `xs` rise."""
-    return np.asarray(np.interp(np.asarray(x, dtype=np.float64), xs, ys), dtype=np.float64)
+    nodes, figures = np.asarray(xs, dtype=np.float64), np.asarray(ys, dtype=np.float64)
+    return np.asarray(np.interp(np.asarray(x, dtype=np.float64), nodes, figures))
 
 
 def along_log(x: ArrayLike, xs: ArrayLike, ys: ArrayLike) -> Array:
@@ -34,9 +34,9 @@ def across_log(x: ArrayLike, y: ArrayLike, xs: ArrayLike, ys: ArrayLike, table: 
     return np.asarray(np.exp(across(x, y, xs, ys, np.log(np.asarray(table, dtype=np.float64)))))
 
 
-def _place(x: ArrayLike, xs: ArrayLike) -> tuple[np.ndarray[tuple[int, ...], np.dtype[np.intp]], Array]:
+def _place(x: ArrayLike, xs: ArrayLike) -> tuple[Indices, Array]:
     """The interval of `xs` that holds x and the share of it, 0 to 1."""
     nodes = np.asarray(xs, dtype=np.float64)
     held = np.clip(np.asarray(x, dtype=np.float64), nodes[0], nodes[-1])
     i = np.clip(np.searchsorted(nodes, held, side="right") - 1, 0, len(nodes) - 2)
-    return np.asarray(i), np.asarray((held - nodes[i]) / (nodes[i + 1] - nodes[i]))
+    return np.asarray(i, dtype=np.int64), np.asarray((held - nodes[i]) / (nodes[i + 1] - nodes[i]))

@@ -4,9 +4,8 @@ fT is the friction factor of the pipe at fully turbulent flow; coefficients are 
 """
 
 import numpy as np
-from numpy.typing import ArrayLike
 
-from budget.physics.smooth import Array
+from budget.physics.arrays import Array, ArrayLike
 from budget.physics.tables import along
 
 _RADIUS = np.array([1.0, 1.5, 2.0, 3.0, 4.0, 6.0, 8.0, 10.0, 12.0, 14.0, 16.0, 20.0])
@@ -19,8 +18,8 @@ _STEEP = 45.0  # degrees of the cone in a reduced-bore valve, above which its lo
 def bend(ft: ArrayLike, radius_ratio: ArrayLike, angle: ArrayLike = 90.0) -> Array:
     """Pipe bend of centre-line radius r/D 1 to 20 that turns by `angle` degrees; a coil turns by more than 360.
 
-    K = (angle/90 - 1) (pi/4 fT r/D + K90/2) + K90 with K90 = n fT. Source: Crane TP-410 (read); published from 90 degrees on
-    and taken down to 45, where it lies above other sources.
+    K = (angle/90 - 1) (pi/4 fT r/D + K90/2) + K90 with K90 = n fT. Source: Crane TP-410 (read); published
+    for 90 degrees and more, taken down to 45.
     """
     factor, radius = np.asarray(ft, dtype=np.float64), np.asarray(radius_ratio, dtype=np.float64)
     k90 = along(radius, _RADIUS, _BEND) * factor
@@ -45,8 +44,8 @@ def mitre_closed_form(angle: ArrayLike) -> Array:
 def tapered_bore(k_full: ArrayLike, bore_ratio: ArrayLike, angle: ArrayLike) -> Array:
     """Gate or ball valve whose bore is narrowed by cones of an included `angle` in degrees, on the pipe's velocity.
 
-    `k_full` is the coefficient at full bore, `bore_ratio` the bore of the seat over that of the pipe. Source: Crane TP-410,
-    formulas 5 and 6 (off the `fluids` library). At 45 degrees the published formulas part by a few per cent.
+    `k_full` is the coefficient at full bore, `bore_ratio` the bore of the seat over that of the pipe. Source: Crane
+    TP-410, formulas 5 and 6 (off the `fluids` library). At 45 degrees the published formulas part by a few per cent.
     """
     k1, b, theta = (np.asarray(x, dtype=np.float64) for x in (k_full, bore_ratio, angle))
     lost = 1.0 - b * b
@@ -56,7 +55,7 @@ def tapered_bore(k_full: ArrayLike, bore_ratio: ArrayLike, angle: ArrayLike) -> 
 
 
 def abrupt_bore(k_full: ArrayLike, bore_ratio: ArrayLike, angle: ArrayLike) -> Array:
-    """Plug valve with a narrowed port, or a valve with steep cones, on the pipe's velocity; arguments as `tapered_bore`.
+    """Plug valve with a narrowed port, or a valve with steep cones; arguments as for `tapered_bore`.
 
     Source: Crane TP-410, formula 6 (off the `fluids` library).
     """

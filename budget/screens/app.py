@@ -230,6 +230,24 @@ class BudgetApp(App[int], inherit_bindings=False):
         elif self.at == "list":
             self.choosers["list"].write(self.choosers["list"].field.insert(event.text))
 
+    def on_click(self, event: events.Click) -> None:
+        """Go to the cell or entry that was clicked; twice edits or takes it."""
+        if event.widget is self.front and self.entry is None:
+            self.front.point(event.x, event.y)
+            self.tell()
+            if event.chain == 2:
+                self.do("edit" if self.at in ("ledger", "detail") else "choose")
+
+    def on_mouse_scroll_down(self) -> None:
+        """Move down with the wheel."""
+        if self.entry is None and self.at not in ("text", "manual"):
+            self.do("down")
+
+    def on_mouse_scroll_up(self) -> None:
+        """Move up with the wheel."""
+        if self.entry is None and self.at not in ("text", "manual"):
+            self.do("up")
+
     def on_resize(self, event: events.Resize) -> None:
         """Put the row detail beside the ledger where there is room."""
         turning.lay_out(self, event.size.width, WIDE)

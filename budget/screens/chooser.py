@@ -91,6 +91,11 @@ class Chooser(Lines):
         self._keep_in_view()
         self.repaint()
 
+    def point(self, _x: int, y: int) -> None:
+        """Move the cursor to the entry at a place of the widget."""
+        if y >= HEAD:
+            self.go(self.top + y - HEAD)
+
     def write(self, field: Field) -> None:
         """Filter by what is written."""
         if not self.offer.filters or field == self.field:

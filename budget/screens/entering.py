@@ -42,16 +42,26 @@ def begin(app: BudgetApp, entry: Entry) -> None:
 
 
 def press(app: BudgetApp, entry: Entry, field: Field) -> None:
-    """Take a keystroke: the value is tried out, and the budget runs along with every valid one."""
+    """Take a keystroke: the value is tried out, and the budget runs along with every valid one.
+
+    Of keys that came faster than a large run is computed only the last is tried out.
+    """
     typed = field.text != entry.field.text
     entry.field = field
+    _paint(app, entry)
     if typed:
-        try:
-            tried = entry.attempt(field.text)
-            entry.problem = ""
-        except (WritingError, EditError) as wrong:
-            tried, entry.problem = None, plain(str(wrong))
-        app.show(tried or app.document.snapshot, before=app.document.snapshot)
+        app.call_later(_try_out, app, entry, field.text)
+
+
+def _try_out(app: BudgetApp, entry: Entry, text: str) -> None:
+    if app.entry is not entry or entry.field.text != text:
+        return
+    try:
+        tried = entry.attempt(text)
+        entry.problem = ""
+    except (WritingError, EditError) as wrong:
+        tried, entry.problem = None, plain(str(wrong))
+    app.show(tried or app.document.snapshot, before=app.document.snapshot)
     _paint(app, entry)
 
 

@@ -50,12 +50,19 @@ class Foot(Lines):
             return self._first(width)
         if self.field is not None and self.message:
             return ((clip(f" {self.message}", width), self.role),)
-        return self._keys(width)
+        text, role = self._told
+        rest = broken(text, width - 2)[1] if self.field is None and (self.message or self.place == "findings") else ""
+        return ((clip(f" {rest}", width), role),) if rest else self._keys(width)
+
+    @property
+    def _told(self) -> tuple[str, str]:
+        return (self.message, self.role) if self.message else self.about
 
     def _first(self, width: int) -> Iterator[Piece]:
         if self.field is None:
-            text, role = (self.message, self.role) if self.message else self.about
-            yield clip(f" {text}", width), role
+            text, role = self._told
+            whole = not self.message and self.place != "findings"
+            yield clip(f" {text if whole else broken(text, width - 2)[0]}", width), role
             return
         label = clip(f" {self.label} ", width // 2)
         yield label, "heading"
@@ -72,3 +79,13 @@ class Foot(Lines):
             taken += need
             yield f" {key}", "key"
             yield f" {text}  ", "faint"
+
+
+def broken(text: str, width: int) -> tuple[str, str]:
+    """Return a text in two lines, broken at a space where that can be; the second is empty for a short one."""
+    if width_of(text) <= width:
+        return text, ""
+    cut = next((end for end in range(len(text), 0, -1) if width_of(text[:end]) <= width), 1)
+    space = text.rfind(" ", 0, cut + 1)
+    cut = space if space > 0 else cut
+    return text[:cut], text[cut:].strip()

@@ -101,6 +101,13 @@ class Ledger(Lines):
         self._find(mark)
         self.repaint()
 
+    def point(self, x: int, y: int) -> None:
+        """Move the cursor to the cell at a place of the widget."""
+        if y < HEAD:
+            return
+        self.column = next((placed.column.key for placed in self.placed if placed.x <= x < placed.end), self.column)
+        self.go(self.top + y - HEAD)
+
     def move_column(self, step: int) -> None:
         """Move the cursor to a neighbouring column that is shown."""
         keys = [placed.column.key for placed in self.placed]

@@ -44,7 +44,7 @@ def save_as(app: BudgetApp, then: Doing | None = None) -> None:
     def take(text: str) -> None:
         path = target(text)
         if path.exists() and path != app.document.path:
-            _ask(app, f"{path} exists", (("write over it", lambda: _write(app, path, then, over=True)),))
+            ask(app, f"{path} exists", (("write over it", lambda: _write(app, path, then, over=True)),))
         else:
             _write(app, path, then, over=False)
 
@@ -56,7 +56,7 @@ def leave(app: BudgetApp) -> None:
     if not app.document.dirty:
         app.exit(0)
         return
-    _ask(
+    ask(
         app,
         "The run is not saved",
         (
@@ -70,7 +70,7 @@ def _write(app: BudgetApp, path: Path, then: Doing | None, *, over: bool) -> Non
     try:
         app.document.save(path, over=over)
     except ChangedOnDisk as changed:
-        _ask(
+        ask(
             app,
             str(changed).partition(";")[0],
             (
@@ -88,9 +88,9 @@ def _write(app: BudgetApp, path: Path, then: Doing | None, *, over: bool) -> Non
         then()
 
 
-def _ask(app: BudgetApp, question: str, answers: tuple[tuple[str, Doing], ...]) -> None:
+def ask(app: BudgetApp, question: str, answers: tuple[tuple[str, Doing], ...], stay: str = "stay") -> None:
     """Ask, with a list of what can be done; the last is to leave things as they are."""
-    choices = [Choice((text,), doing) for text, doing in (*answers, ("stay", lambda: app.say("")))]
+    choices = [Choice((text,), doing) for text, doing in (*answers, (stay, lambda: app.say("")))]
 
     def take(doing: object) -> None:
         if callable(doing):

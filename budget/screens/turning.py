@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, cast
 
+from budget.description import read_text
 from budget.description.finding import Level, Path, dotted
 from budget.report.located import Located
 from budget.screens import changing, entering, moving, saving
@@ -26,6 +27,8 @@ def about(app: BudgetApp) -> tuple[str, str]:
     """Return what is to be told of the row under the cursor, with the role of its style."""
     if app.at in app.choosers:
         marked = app.choosers[app.at].marked
+        if app.at == "findings" and marked is not None:
+            return marked.cells[-1], marked.role
         return ("  ".join(cell.strip() for cell in marked.cells if cell.strip()), "faint") if marked else ("", "")
     row = app.ledger.row
     if app.at != "ledger" or row is None:
@@ -222,17 +225,18 @@ def show_text(app: BudgetApp) -> None:
 
 def apply_text(app: BudgetApp) -> bool:
     """Put the text into the document, as one undo step; False, with the reason, where it is not TOML."""
+    source = read_text(app.text.text)
+    if source.data is None:
+        line, message = source.place[0], source.findings[0].message
+        app.text.go_to_line(line)
+        app.say(f"line {line}: {plain(message)}", "error")
+        return False
     before = app.document.snapshot
-    after = app.document.replace_text(app.text.text, "edit the text", app.ledger.mark)
+    app.document.replace_text(app.text.text, "edit the text", app.ledger.mark)
     app.text.taken()
-    app.show(after, before)
-    if after.readable:
-        app.say("the text was taken into the design")
-        return True
-    first = after.findings[0]
-    app.text.go_to_line(first.line)
-    app.say(f"line {first.line}: {plain(first.message)}", "error")
-    return False
+    app.show(app.document.snapshot, before)
+    app.say("the text was taken into the design")
+    return True
 
 
 def undo_text(app: BudgetApp) -> None:
@@ -257,8 +261,12 @@ def show_manual(app: BudgetApp) -> None:
 
 
 def back(app: BudgetApp) -> None:
-    """Go back to the ledger; a changed text is taken into the design first."""
+    """Go back to the ledger; a changed text is taken into the design first, or thrown away where it is not TOML."""
     if app.at == "text" and app.text.changed and not apply_text(app):
+        reason = app.foot.message
+        saving.ask(
+            app, "the text is not TOML", (("mend it", lambda: app.say(reason, "error")), ("throw it away", app.text.taken))
+        )
         return
     app.turn_to("ledger")
 

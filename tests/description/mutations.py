@@ -12,13 +12,15 @@ from tests.description.sound import SOUND, SOUND_AIR, SOUND_OPEN
 EXAMPLES = sorted((Path(__file__).parents[2] / "examples").glob("*.toml"))
 TEXTS = (SOUND, SOUND_AIR, SOUND_OPEN, *(path.read_text(encoding="utf-8") for path in EXAMPLES))
 
+Change = Callable[[str, Random], str]
+
 VALUES = (
     *("nan", "-inf", "0", "-1", "1e308", "1" + "0" * 400, "0x" + "f" * 5000, "true", "1979-05-27", "07:32:00"),
     *("[]", "{}", "[[]]", "[[1, 2]]", '[["1 m", "2 m"], ["1 m", "2 m"]]', "[{}]", '[{ k = 1 }]', "{ a = { b = 1 } }"),
     *('""', '" "', '"\\u0000"', '"{0}"', '"%s"', '"1e400 m"', '"-0 m"', '"0.0001 mm"', '"DN15"', '"NPS 1/0"', '"0x0"'),
     *('"oval 1x900"', '"P1"', '"M1"', '"B1"', '"R1"', '"water"', '"air"', '"custom"', '"flow"', '"kPa"'),
 )
-SNIPPETS = (*"\"'[]{}=.,\n\\#é\x00\u2028", "\r\n", "{0}", "[[", '"""')
+SNIPPETS: tuple[str, ...] = (*"\"'[]{}=.,\n\\#é\x00\u2028", "\r\n", "{0}", "[[", '"""')
 VALUE = re.compile(r"(?<== )[^#\n]+")
 NAME = re.compile(r'(?<=\.)[A-Za-z0-9-]+(?=\])|(?<=from = ")[^"]+|(?<=to = ")[^"]+|^[a-z_]+(?= =)', re.MULTILINE)
 
@@ -26,7 +28,8 @@ NAME = re.compile(r'(?<=\.)[A-Za-z0-9-]+(?=\])|(?<=from = ")[^"]+|(?<=to = ")[^"
 def mutate(text: str, random: Random, times: int) -> str:
     """Return a text with so many random changes."""
     for _ in range(times):
-        text = random.choice(_CHANGES)(text, random)
+        change: Change = random.choice(_CHANGES)
+        text = change(text, random)
     return text
 
 
@@ -60,14 +63,15 @@ def _lines(text: str, random: Random) -> str:
     return "\n".join(lines)
 
 
-def _swap(pattern: re.Pattern[str]) -> Callable[[str, Random], str]:
+def _swap(pattern: re.Pattern[str]) -> Change:
     def swap(text: str, random: Random) -> str:
         found = list(pattern.finditer(text))
         if len(found) < 2:
             return text
         one, two = sorted(random.sample(found, 2), key=lambda match: match.start())
         between = text[one.end() : two.start()]
-        return text[: one.start()] + two.group() + between + one.group() + text[two.end() :]
+        first, second = text[one.start() : one.end()], text[two.start() : two.end()]
+        return text[: one.start()] + second + between + first + text[two.end() :]
 
     return swap
 
@@ -80,4 +84,4 @@ def _replace(text: str, random: Random) -> str:
     return text[: one.start()] + random.choice(VALUES) + text[one.end() :]
 
 
-_CHANGES = (_delete, _duplicate, _insert, _lines, _swap(VALUE), _swap(NAME), _replace, _replace)
+_CHANGES: tuple[Change, ...] = (_delete, _duplicate, _insert, _lines, _swap(VALUE), _swap(NAME), _replace, _replace)

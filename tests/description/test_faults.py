@@ -45,7 +45,8 @@ def test_many_kinds_of_fault_are_told_apart_in_many_tables() -> None:
     faulty = [fault for group in GROUPS.values() for fault in group]
     pairs = {(fault.code, fault.table.split(".")[0]) for fault in faulty}
     assert len(pairs) >= 150
-    assert {fault.code for fault in faulty} | {code for _, code, _ in FILES} == set(CODES)
+    covered = {fault.code for fault in faulty} | {code for _, code, _ in FILES}
+    assert covered == set(CODES) - {"unreadable"}  # a file that can't be opened has no text to change
 
 
 FILES = (

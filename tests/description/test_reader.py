@@ -9,8 +9,6 @@ from budget.description.codes import CODES
 from budget.units import Dimension, Quantity
 from tests.description.sound import SOUND, SOUND_AIR, SOUND_OPEN
 
-ZERO_CELSIUS = 273.15
-
 
 def read(text: str) -> Description:
     return describe(read_text(text))
@@ -24,21 +22,25 @@ def sound(old: str, new: str, base: str = SOUND) -> Description:
     return found
 
 
+def is_near(quantity: Quantity | None, value: float, basis: Basis = Basis.PLAIN) -> bool:
+    return quantity is not None and quantity.value == pytest.approx(value) and quantity.basis is basis
+
+
 def test_a_run_is_read_whole() -> None:
     run = read(SOUND)
-    assert run.findings == ()
+    assert not run.findings
     assert run.design.title == "Test bench"
     assert run.display == {"flow": "L/s"}
     assert run.fluid.name == "water"
     assert run.fluid.temperature == pytest.approx(343.15)
     assert run.fluid.return_temperature == pytest.approx(328.15)
     assert run.limits.velocity == 1.5
-    assert run.limits.velocity_by_bore == ((0.02, 0.9), (0.05, 1.2))
+    assert list(run.limits.velocity_by_bore) == [(0.02, 0.9), (0.05, 1.2)]
     assert run.limits.classes == {"branch": {"velocity": 1.1}}
     assert run.budget == {"plant": Quantity(40_000.0, Dimension.PRESSURE)}
     assert set(run.lines) == {("pipe", "steel"), ("pipe", "own"), ("duct", "sheet")}
     assert run.fittings["swing joint"].k == 0.75
-    assert run.devices["V1"].kv == ((1, 0.05), (2, 0.6), (3, 2.4))
+    assert list(run.devices["V1"].kv) == [(1, 0.05), (2, 0.6), (3, 2.4)]
     assert run.devices["H1"].holds == "differential"
     assert run.devices["F1"].greatest_drop == Quantity(400_000.0, Dimension.PRESSURE)
 
@@ -47,7 +49,8 @@ def test_sources_sections_and_terminals_are_in_si() -> None:
     run = read(SOUND)
     pump, main, terminal = run.sources["P1"], run.sections["M1"], run.terminals["T1"]
     assert pump.available == Quantity(150_000.0, Dimension.PRESSURE)
-    assert (pump.reserve, pump.efficiency) == (pytest.approx(0.1), 0.6)
+    assert pump.reserve == pytest.approx(0.1)
+    assert pump.efficiency == 0.6
     assert pump.curve[1] == (Quantity(0.002, Dimension.FLOW), Quantity(60_000.0, Dimension.PRESSURE))
     assert pump.items[0].drop == Quantity(12_000.0, Dimension.PRESSURE)
     assert (main.from_, main.to) == ("P1", None)
@@ -57,7 +60,7 @@ def test_sources_sections_and_terminals_are_in_si() -> None:
     assert [(one.name, one.count) for one in main.run.fittings] == [("elbow 90", 4), ("swing joint", 1)]
     assert main.items[0].kv == 21.0
     assert main.items[0].path == ("section", "M1", "item", 0)
-    assert terminal.flow == Quantity(0.00012, Dimension.FLOW)
+    assert is_near(terminal.flow, 0.00012)
     assert terminal.run is not None
     assert terminal.run.length == 6.2
     assert terminal.items[0].control == "two-port"
@@ -85,7 +88,8 @@ def test_defaults_are_taken_where_a_run_says_nothing_else() -> None:
     assert run.sections["B2"].run.paired_stated
     line = run.sections["B2"].run.line
     assert line is not None
-    assert (line.name, line.roughness) == ("own", pytest.approx(1e-5))
+    assert line.name == "own"
+    assert line.roughness == pytest.approx(1e-5)
     assert run.terminals["T2"].takeoff == "none"
     other = sound('takeoff = "none"', 'takeoff = "none"\nfitting_method = "crane"\nclass = "branch"')
     assert other.sections["M1"].run.fitting_method == "crane"
@@ -102,6 +106,7 @@ def test_a_section_may_change_from_the_default_pipe_to_a_duct() -> None:
 
 
 LIQUID = 'format = 1\n[design]\nunits = "{units}"\n[fluid]\nname = "{fluid}"\ntemperature = 50\n{more}\n'
+SYSTEMS = [("SI", "water"), ("IP", "water"), ("SI", "air"), ("IP", "air")]
 BARE = (
     # key in its table, SI liquid, IP liquid, SI gas, IP gas: what 10 is in SI base units
     ('[source.P]\navailable = 10', "source", "available", (10_000.0, 29_890.67, 10.0, 2_490.889)),
@@ -115,8 +120,8 @@ BARE = (
 )
 
 
-@pytest.mark.parametrize(("text", "table", "key", "wanted"), BARE, ids=lambda value: value if isinstance(value, str) else "")
-@pytest.mark.parametrize(("units", "fluid"), [("SI", "water"), ("IP", "water"), ("SI", "air"), ("IP", "air")])
+@pytest.mark.parametrize(("text", "table", "key", "wanted"), BARE, ids=[row[2] for row in BARE])
+@pytest.mark.parametrize(("units", "fluid"), SYSTEMS)
 def test_a_bare_number_is_in_the_unit_of_the_design(
     text: str, table: str, key: str, wanted: tuple[float, ...], units: str, fluid: str
 ) -> None:
@@ -126,7 +131,7 @@ def test_a_bare_number_is_in_the_unit_of_the_design(
     if table != "limits":
         owner = next(iter(getattr(run, table + "s").values()))
     value = getattr(owner, key) if key != "length" else owner.run.length  # type: ignore[attr-defined]
-    place = [("SI", "water"), ("IP", "water"), ("SI", "air"), ("IP", "air")].index((units, fluid))
+    place = SYSTEMS.index((units, fluid))
     assert getattr(value, "value", value) == pytest.approx(wanted[place], rel=1e-6)
 
 
@@ -137,18 +142,18 @@ def test_a_bare_bore_and_roughness_are_small_lengths(units: str, metres: float) 
     line, geometry = run.lines["pipe", "p"], run.sections["S"].run.geometry
     assert geometry is not None
     assert geometry.bore == pytest.approx(metres)
-    assert line.own_sizes == {"A": pytest.approx(metres)}
+    assert line.own_sizes["A"] == pytest.approx(metres)
     assert line.roughness == pytest.approx(metres / 1000.0)
 
 
 def test_the_fluid_itself_and_its_mass_keep_their_basis() -> None:
     run = sound('available = "150 kPa"', 'available = "15 m"')
-    assert run.sources["P1"].available == Quantity(15.0, Dimension.PRESSURE, Basis.HEAD)
+    assert is_near(run.sources["P1"].available, 15.0, Basis.HEAD)
     run = sound('flow = "0.12 L/s"', 'flow = "432 kg/h"')
-    assert run.terminals["T1"].flow == Quantity(pytest.approx(0.12), Dimension.FLOW, Basis.MASS)
+    assert is_near(run.terminals["T1"].flow, 0.12, Basis.MASS)
     fluid = 'name = "custom"\ndensity = 900\nviscosity = "20 cSt"\nspecific_heat = 2\n'
     run = sound('name = "water"\n', fluid)
-    assert run.fluid.viscosity == Quantity(pytest.approx(2e-5), Dimension.VISCOSITY, Basis.KINEMATIC)
+    assert is_near(run.fluid.viscosity, 2e-5, Basis.KINEMATIC)
     assert run.fluid.specific_heat == 2000.0
 
 
@@ -166,7 +171,8 @@ def test_fractions_are_plain_or_in_per_cent() -> None:
     assert sound('reserve = "10 %"', "reserve = 0.1").sources["P1"].reserve == pytest.approx(0.1)
     glycol = 'name = "ethylene glycol"\nconcentration = "30 %"\nconcentration_by = "volume"'
     fluid = sound('name = "water"', glycol).fluid
-    assert (fluid.concentration, fluid.concentration_by) == (pytest.approx(0.3), "volume")
+    assert fluid.concentration == pytest.approx(0.3)
+    assert fluid.concentration_by == "volume"
 
 
 def test_a_line_of_the_catalogue_may_have_a_roughness_of_its_own() -> None:
@@ -174,12 +180,12 @@ def test_a_line_of_the_catalogue_may_have_a_roughness_of_its_own() -> None:
     assert listed.roughness == pytest.approx(4.5e-5)
     assert listed.source
     rough = sound('10255 medium"', '10255 medium"\nroughness = "0.2 mm"').lines["pipe", "steel"]
-    assert (rough.catalogue, rough.roughness) == (listed.catalogue, pytest.approx(2e-4))
+    assert rough.catalogue == listed.catalogue
+    assert rough.roughness == pytest.approx(2e-4)
 
 
 def test_flexible_duct_is_as_compressed_as_its_line_unless_it_says_so() -> None:
     flex = 'catalogue = "flexible"'
-    assert sound(flex, flex + '\ncompression = "12 %"', SOUND_AIR).terminals["G2"].run is not None
     run = sound(flex, flex + '\ncompression = "12 %"', SOUND_AIR).terminals["G2"].run
     assert run is not None
     assert run.compression == pytest.approx(0.12)
@@ -190,7 +196,8 @@ def test_flexible_duct_is_as_compressed_as_its_line_unless_it_says_so() -> None:
 
 def test_cv_is_read_as_kv() -> None:
     run = sound("kv = [[1, 0.05], [2, 0.6], [3, 2.4]]", "cv = [[1, 1.156], [2, 11.56]]")
-    assert run.devices["V1"].kv == ((1, pytest.approx(1.0)), (2, pytest.approx(10.0)))
+    assert [setting for setting, _ in run.devices["V1"].kv] == [1, 2]
+    assert [kv for _, kv in run.devices["V1"].kv] == pytest.approx([1.0, 10.0])
     run = sound("kv = 21.0", "cv = 23.12")
     assert run.sections["M1"].items[0].kv == pytest.approx(20.0)
 
@@ -201,13 +208,12 @@ def test_a_damper_has_loss_coefficients_and_no_kv() -> None:
 
 
 def test_a_filter_has_a_clean_and_a_final_drop() -> None:
-    item = sound('drop = "12 kPa"\n\n[section', 'clean = "2 kPa"\nfinal = "6 kPa"\nstate = "final"\n\n[section')
-    found = item.sources["P1"].items[0]
-    assert (found.clean, found.final) == (
-        Quantity(2000.0, Dimension.PRESSURE),
-        Quantity(6000.0, Dimension.PRESSURE),
-    )
-    assert (found.state, found.drop) == ("final", None)
+    run = sound('drop = "12 kPa"\n\n[section', 'clean = "2 kPa"\nfinal = "6 kPa"\nstate = "final"\n\n[section')
+    found = run.sources["P1"].items[0]
+    assert is_near(found.clean, 2000.0)
+    assert is_near(found.final, 6000.0)
+    assert found.state == "final"
+    assert found.drop is None
 
 
 def test_an_open_circuit_has_rises() -> None:

@@ -10,7 +10,7 @@ from budget.report.figures import Figures
 from budget.units import Dimension
 from tests.terminal.session import Session
 
-SMALL = (Path(__file__).parents[2] / "examples" / "first-look.toml").read_text()
+SMALL = (Path(__file__).parents[1] / "screens" / "cottage.toml").read_text()
 
 
 def required(text: str) -> str:

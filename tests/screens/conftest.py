@@ -17,7 +17,7 @@ from budget.screens.lines import Lines
 from budget.screens.themes import terminal_theme
 
 EXAMPLES = Path(__file__).parents[2] / "examples"
-SMALL = (EXAMPLES / "first-look.toml").read_text()
+SMALL = (Path(__file__).with_name("cottage.toml")).read_text()
 
 
 class Hands:
@@ -37,6 +37,8 @@ class Hands:
         self.app.post_message(event)
         for _ in range(2):
             await self.pilot._wait_for_screen()
+        if not self.app.front.size:  # it has just been mounted, and is not laid out yet
+            await self.pilot.pause()
 
     async def type(self, text: str) -> None:
         """Type letters."""

@@ -205,3 +205,19 @@ def test_results_without_a_figure_are_dashes() -> None:
     result = snapshot.budget.sections.get("M1")
     assert result is None or math.isnan(result.run.drop)
     assert json.dumps(cells["drop"].text if "drop" in cells else "-") == '"-"'
+
+
+def test_with_the_mouse_a_click_goes_to_a_cell_and_two_edit_it(play: Stage) -> None:
+    async def act(hands: Hands) -> None:
+        ledger = hands.app.ledger
+        length = next(placed for placed in ledger.placed if placed.column.key == "length")
+        await hands.pilot.click("#ledger", offset=(length.x + 1, 4))
+        assert ledger.row is not None
+        assert (ledger.row.id, ledger.column) == ("M1", "length")
+        await hands.pilot.click("#ledger", offset=(length.x + 1, 4), times=2)
+        assert hands.place == "entry"
+        await hands.press("escape", "s")
+        await hands.pilot.click("#list", offset=(3, 2))
+        assert hands.app.choosers["list"].cursor == 0
+
+    play(act)

@@ -10,7 +10,7 @@ import pytest
 from tests.terminal.session import RUN, Session
 
 EXAMPLES = Path(__file__).parents[2] / "examples"
-SMALL = (EXAMPLES / "first-look.toml").read_text()
+SMALL = (Path(__file__).parents[1] / "screens" / "cottage.toml").read_text()
 
 Open = Callable[..., Session]
 

@@ -10,6 +10,7 @@ from pathlib import Path
 import pytest
 
 from budget.screens.terminal import objection, prepare
+from budget.screens.themes import names_of_themes
 from tests.terminal.conftest import SMALL, Open
 from tests.terminal.session import RUN, Session
 
@@ -143,6 +144,19 @@ def test_it_is_readable_on_any_terminal(opened: Open, environment: dict[str, str
     x = session.lines[row].index("7.5")
     assert cells[x].reverse
     assert not cells[x + 12].reverse
+
+
+@pytest.mark.parametrize("theme", names_of_themes())
+def test_no_theme_paints_a_text_in_its_own_background_where_there_are_16_colours(opened: Open, theme: str) -> None:
+    session = opened(config=f'theme = "{theme}"', environment={"TERM": "linux"})
+    for keys in (("down", "enter", "9"), ("escape", "v"), ("escape", "T"), ("escape", "?"), ("Units", "enter")):
+        session.press(*keys)
+        session.settle(0.3)
+        for y, line in enumerate(session.lines):
+            for x, letter in enumerate(line):
+                cell = session.screen.buffer[y][x]
+                if letter not in " ▊▎▔▁░":
+                    assert cell.fg != cell.bg or cell.fg == "default", (keys, y, x, line)
 
 
 def test_a_terminal_of_another_size_is_filled(opened: Open) -> None:
