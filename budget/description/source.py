@@ -40,10 +40,12 @@ class Source:
         """Where every header, key and value stands."""
         return SpanIndex.of(self.text)
 
-    def locate(self, path: Path) -> tuple[int, int]:
-        """Return line and column, from 1, of a value, or of what is nearest to it."""
+    def locate(self, path: Path, *, key: bool = False) -> tuple[int, int]:
+        """Return line and column, from 1, of a value (or of its key), or of what is nearest to it."""
         if self.data is None:
             return self.place
+        if key and (span := self.spans.key(path)) is not None:
+            return self.spans.line_and_column(span.start)
         return self.spans.locate(path)
 
 

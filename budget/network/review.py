@@ -227,10 +227,10 @@ def _junction_stated(owner: Section | Terminal) -> bool:
 
 def _flexible(run: Computed) -> Iterator[Finding]:
     low, high = FLEXIBLE_DIAMETERS
-    for leg in np.flatnonzero(run.layout.legs.stretch != 1.0).tolist():
+    for leg in range(len(run.layout.legs)):
         owner, built = _owner(run, leg)
         diameter = float(run.layout.legs.diameter[leg])
-        if math.isnan(diameter):
+        if math.isnan(diameter) or built.line is None or not built.line.flexible:
             continue
         if not low - 1e-9 <= diameter <= high + 1e-9 or built.compression > FLEXIBLE_COMPRESSION[1] + 1e-9:
             text = "flexible duct was measured from 150 to 250 mm and up to 30 % compression; this is extrapolated"

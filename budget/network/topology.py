@@ -114,7 +114,7 @@ class _Rooting:
             if at in place:
                 ring = trail[place[at] :]
                 self._wrong(
-                    "cycle", ring[0], f"{' -> '.join([*ring, ring[0]])} hang on each other; correct one of them"
+                    "cycle", ring[0], f"{' -> '.join(map(repr, [*ring, ring[0]]))} hang on each other; correct one of them"
                 )
                 break
             place[at] = len(trail)
@@ -139,6 +139,8 @@ class _Rooting:
             hint = nearest(target, [*known.sources, *known.sections])
             self._wrong("dangling", id_, f"{target!r} is neither a source nor a section; {hint}", key)
             return None
+        if other.from_ is None and other.to is None:
+            return target  # nothing is known of it, and it says so itself
         if key == "from" and other.from_ is None:
             self._wrong(
                 "wrong-connection", id_, f"{target!r} is on the way back; fluid can't reach {id_!r} from it", key

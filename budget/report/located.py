@@ -10,6 +10,10 @@ from budget.report.figures import Figures
 from budget.units import Dimension
 
 
+FAULTS_OF_KEYS = frozenset({"unknown-key", "unknown-table", "unknown-fitting", "unknown-code"})
+"""Findings about a key itself; all others point at the value that stands there."""
+
+
 @dataclass(frozen=True, slots=True)
 class Located:
     """A finding as it is shown: its sentence whole, its table and key, its line and column from 1."""
@@ -30,7 +34,7 @@ def locate(findings: Iterable[Finding], source: SourceText, description: Descrip
     figures = Figures(description)
     found: dict[Located, None] = {}
     for finding in findings:
-        line, column = source.locate(finding.path)
+        line, column = source.locate(finding.path, key=finding.code in FAULTS_OF_KEYS)
         placed = Located(
             finding.level,
             finding.code,

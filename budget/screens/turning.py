@@ -239,6 +239,11 @@ def apply_text(app: BudgetApp) -> bool:
     return True
 
 
+def _forget(app: BudgetApp) -> None:
+    app.text.open(app.document.snapshot.text, app.ledger.row)
+    app.turn_to("ledger")
+
+
 def undo_text(app: BudgetApp) -> None:
     """Undo what was typed in the text."""
     app.text.undo()
@@ -264,9 +269,8 @@ def back(app: BudgetApp) -> None:
     """Go back to the ledger; a changed text is taken into the design first, or thrown away where it is not TOML."""
     if app.at == "text" and app.text.changed and not apply_text(app):
         reason = app.foot.message
-        saving.ask(
-            app, "the text is not TOML", (("mend it", lambda: app.say(reason, "error")), ("throw it away", app.text.taken))
-        )
+        saving.ask(app, "The text is not TOML", (("throw away what was written", lambda: _forget(app)),), "mend it")
+        app.say(reason, "error")
         return
     app.turn_to("ledger")
 

@@ -8,6 +8,7 @@ import pytest
 
 from budget.description import CODES
 from tests.description import faults, wrong_runs
+from budget.report.located import FAULTS_OF_KEYS
 from tests.description.faults import Fault
 from tests.description.reading import findings_in
 from tests.description.sound import SOUND, SOUND_AIR, SOUND_OPEN
@@ -36,7 +37,11 @@ def test_a_fault_is_found_where_it_stands(fault: Fault) -> None:
     wanted = (fault.level, fault.code, fault.table, fault.key)
     matching = [one for one in found if (one.level, one.code, one.table, one.key) == wanted]
     assert len(matching) == 1, [(one.level, one.code, one.table, one.key, one.message) for one in found]
-    before = text[: text.index(fault.at)]
+    place = text.index(fault.at)
+    if fault.code in FAULTS_OF_KEYS:  # these point at the key, which stands before what the fault names
+        name = fault.key.split(".")[-1] or fault.table
+        place = max(text.rfind(spelled, 0, place + len(fault.at)) for spelled in (name, f'"{name}"'))
+    before = text[:place]
     assert (matching[0].line, matching[0].column) == (before.count("\n") + 1, len(before.split("\n")[-1]) + 1)
     assert fault.remedy in matching[0].message
 

@@ -139,7 +139,7 @@ CONNECTIONS = (
           "wrong-connection", "terminal.T3", "from", '"C2"\nto', "needs one that leads out"),
     Fault("ring", FROM_P1, FROM_P1.replace("P1", "B1"),
           "cycle", "section.M1", "from", '"B1"\nsize', "correct one"),
-    Fault("itself", 'to = "M1"', 'to = "C2"', "cycle", "section.C2", "to", '"C2"\nsize', "C2 -> C2"),
+    Fault("itself", 'to = "M1"', 'to = "C2"', "cycle", "section.C2", "to", '"C2"\nsize', "'C2' -> 'C2'"),
     Fault("idle", B1, B1 + '\n[section.Z]\nfrom = "M1"\nsize = "DN20"\nlength = 2',
           "no-terminal", "section.Z", "", "Z]", "or remove it"),
     Fault("idle pump", "[[source.P1.item]]", "[source.P2]\n[[source.P1.item]]",

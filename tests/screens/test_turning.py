@@ -166,15 +166,20 @@ def test_a_text_that_is_not_toml_says_where_and_the_figures_stay(play: Stage) ->
     async def act(hands: Hands) -> None:
         await hands.press("T")
         hands.app.text.load_text(SMALL.replace("[section.M1]", "[section.M1"))
-        await hands.press("escape")
-        assert hands.screen == "text"
+        await hands.press("ctrl+e")
         assert hands.foot.startswith("line 47:")
+        assert hands.app.text.cursor_location[0] == 46
+        assert hands.text == SMALL
         assert "20.88" in hands.budget
-        assert "not TOML" in hands.budget
-        hands.app.text.load_text(SMALL)
         await hands.press("escape")
+        assert kept(hands) == ["throw away what was written", "mend it"]
+        await hands.press("down", "enter")
+        assert hands.screen == "text"
+        assert "[section.M1\n" in hands.app.text.text
+        await hands.press("escape", "enter")
         assert hands.screen == "ledger"
-        assert "not TOML" not in hands.budget
+        await hands.press("T")
+        assert hands.app.text.text == SMALL
 
     play(act)
 
