@@ -72,7 +72,8 @@ def _converging(values: Values, _: Place, row: Mapping[str, Any]) -> Loss:
 
 def _pyramid(values: Values) -> Loss:
     ratio, angle = values["area_ratio"], values["angle"]
-    return Loss(float(area_changes.pyramid_divergence(ratio, angle)), outside=beyond("angle", angle, 16.0, 180.0))
+    outside = beyond("angle", angle, 16.0, 180.0, " deg")
+    return Loss(float(area_changes.pyramid_divergence(ratio, angle)), outside=outside)
 
 
 def _diverging(values: Values, place: Place, _: Mapping[str, Any]) -> Loss:

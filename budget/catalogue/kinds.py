@@ -79,10 +79,6 @@ class Kind:
     note: str
     checks: tuple[Check, ...]
 
-    def parameter(self, name: str) -> Parameter | None:
-        """The parameter of that name, or None."""
-        return next((parameter for parameter in self.parameters if parameter.name == name), None)
-
 
 @dataclass(frozen=True, slots=True)
 class KindCoefficient:

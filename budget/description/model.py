@@ -86,6 +86,7 @@ class OwnFitting:
     name: str
     k: float
     source: str = ""
+    known_from: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -94,6 +95,16 @@ class FittingCount:
 
     name: str
     count: int
+    path: Path
+
+
+@dataclass(frozen=True, slots=True)
+class FittingUse:
+    """So many fittings of one kind, with the parameters of that kind in the units that it states."""
+
+    kind: str
+    count: int
+    values: Mapping[str, float | str]
     path: Path
 
 
@@ -147,9 +158,12 @@ class Run:
     paired_stated: bool = False
     compression: float = 0.0
     fittings: tuple[FittingCount, ...] = ()
+    uses: tuple[FittingUse, ...] = ()
     fitting_method: str = "by size"
-    takeoff: str | None = None
-    takeoff_stated: bool = False
+    junction: str = "tee-crane"
+    angle: float = 90.0
+    transition: float | Literal["abrupt"] | None = None
+    leakage: str | None = None
     limit_velocity: float | None = None
     limit_gradient: float | None = None
     class_: str | None = None
@@ -172,6 +186,8 @@ class Section:
     balance: str | None = None
     setting: float | None = None
     rise: float = 0.0
+    takeoff: str | None = None
+    takeoff_stated: bool = False
     accept: Mapping[str, str] = field(default_factory=dict)
 
 
@@ -201,6 +217,7 @@ class Terminal:
     rise: float = 0.0
     outlet_pressure: Quantity | None = None
     takeoff: str | None = None
+    takeoff_stated: bool = False
     accept: Mapping[str, str] = field(default_factory=dict)
 
 

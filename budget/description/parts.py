@@ -7,13 +7,13 @@ from typing import Any
 
 from budget.description.codes import CODES
 from budget.description.finding import Path, warning
-from budget.description.model import FittingCount, Geometry, Item, Line, Run, Section, Source, Terminal
-from budget.description.schema import RUN, Measure
+from budget.description.fittings import check_takeoff, read_fittings
+from budget.description.model import Geometry, Item, Line, Run, Section, Source, Terminal
+from budget.description.schema import RUN
 from budget.description.scope import Scope
 from budget.description.sizes import read_duct_size, read_pipe_size
 from budget.description.values import Reading, nearest
 from budget.physics.fittings import CV_PER_KV
-from budget.units import Dimension
 
 _DROP_KEYS = {
     "at": ("drop", "clean"),
@@ -74,6 +74,8 @@ def read_section(reading: Reading, id_: str, values: dict[str, Any], path: Path,
         balance=scope.check_device(values, path, terminal=False),
         setting=values.get("setting"),
         rise=values.get("rise", 0.0),
+        takeoff=values.get("takeoff", scope.defaults.get("takeoff")),
+        takeoff_stated="takeoff" in values,
         accept=_accept(scope, values, path),
         **{key: values[key] for key in _TEXTS if key in values},
     )
@@ -101,7 +103,6 @@ def read_terminal(reading: Reading, id_: str, values: dict[str, Any], path: Path
         for key in values:
             if key in _RUN_OUT_KEYS and not sized:
                 reading.wrong("missing", f"{key} describes a run-out, which needs a size; state size", (*path, key))
-        _check_junction_keys(scope, values, path)
     items = _items(scope, values, path)
     drops = ("drop", "static_drop", "outlet_pressure")
     if not items and not any(key in values or reading.faulty((*path, key)) for key in drops):
@@ -120,6 +121,7 @@ def read_terminal(reading: Reading, id_: str, values: dict[str, Any], path: Path
         balance=scope.check_device(values, path, terminal=True),
         setting=values.get("setting"),
         takeoff=values.get("takeoff", scope.defaults.get("takeoff")),
+        takeoff_stated="takeoff" in values,
         accept=_accept(scope, values, path),
         **{key: values[key] for key in (*_TEXTS, *kept) if key in values},
     )
@@ -132,8 +134,8 @@ def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
         reading.wrong("missing", 'the length is not stated; write length = "12 m"', (*path, "length"))
     if "compression" in values and not (line and line.flexible):
         reading.wrong("contradiction", "compression belongs to flexible duct; remove it", (*path, "compression"))
-    _check_junction_keys(scope, values, path)
-    fittings = _fittings(scope, values, path)
+    check_takeoff(scope, values, path)
+    fittings, uses = read_fittings(scope, values, line, path)
     method = values.get("fitting_method", defaults.get("fitting_method", "by size"))
     return Run(
         line=line,
@@ -143,9 +145,12 @@ def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
         paired_stated="paired" in values,
         compression=values.get("compression", line.compression if line else 0.0),
         fittings=fittings,
+        uses=uses,
         fitting_method=method,
-        takeoff=values.get("takeoff", defaults.get("takeoff")),
-        takeoff_stated="takeoff" in values,
+        junction=values.get("junction", defaults.get("junction", "tee-crane")),
+        angle=values.get("angle", defaults.get("angle", 90.0)),
+        transition=values.get("transition"),
+        leakage=values.get("leakage"),
         limit_velocity=values.get("limit_velocity"),
         limit_gradient=values.get("limit_gradient"),
         class_=values.get("class", defaults.get("class")),
@@ -172,48 +177,6 @@ def _geometry(scope: Scope, values: Mapping[str, Any], line: Line | None, path: 
     if line.kind == "pipe":
         return read_pipe_size(reading, values["size"], line, (*path, "size"))
     return read_duct_size(reading, values["size"], (*path, "size"))
-
-
-def _fittings(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[FittingCount, ...]:
-    found = []
-    for name, count in values.get("fittings", {}).items():
-        place: Path = (*path, "fittings", name)
-        if scope.known_fitting(name):
-            found.append(FittingCount(name, count, place))
-        else:
-            scope.reading.wrong(
-                "unknown-fitting", f"{name!r} is not a fitting known here; {scope.nearest_fitting(name)}", place
-            )
-    for place_, use in enumerate(values.get("fitting", ())):
-        where: Path = (*path, "fitting", place_)
-        if "kind" in use:
-            scope.reading.later("a fitting with parameters", (*where, "kind"))
-        elif not scope.reading.faulty((*where, "kind")):
-            scope.reading.wrong("missing", 'the fitting has no kind; write kind = "..."', where)
-    return tuple(found)
-
-
-def _check_junction_keys(scope: Scope, values: Mapping[str, Any], path: Path) -> None:
-    """Junction and transition losses are not computed yet: say so at the key, and find what contradicts them."""
-    takeoff = values.get("takeoff", scope.defaults.get("takeoff"))
-    if takeoff in ("straight", "branch"):
-        tees = [name for name in values.get("fittings", {}) if name.startswith("tee")]
-        where: Path = (*path, "takeoff") if "takeoff" in values else ("defaults", "takeoff")
-        if tees:
-            scope.reading.wrong(
-                "contradiction",
-                f"takeoff {takeoff!r} and the fitting {tees[0]!r} would count the junction twice; keep one",
-                (*path, "fittings", tees[0]),
-            )
-        scope.reading.later("the loss of a junction", where)
-    if "transition" in values:
-        value = values["transition"]
-        if value != "abrupt":
-            angle = Measure(Dimension.ANGLE, 0.0, 180.0, above=True)
-            scope.reading.value(value, angle, (*path, "transition"))
-        scope.reading.later("the loss of a transition", (*path, "transition"))
-    if "leakage" in values:
-        scope.reading.later("leakage", (*path, "leakage"))
 
 
 def _items(scope: Scope, values: Mapping[str, Any], path: Path) -> tuple[Item, ...]:

@@ -83,9 +83,10 @@ class Table:
 
 @dataclass(frozen=True, slots=True)
 class Array:
-    """An array of tables."""
+    """An array of tables; an open one hands on the keys that it does not know, to be read when the kind is known."""
 
     keys: Mapping[str, Spec]
+    open: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -93,7 +94,12 @@ class Size:
     """A pipe size, duct size or neck: read where the line is known."""
 
 
-Spec = Text | Choice | Flag | Number | Measure | Pairs | Names | Inline | Table | Array | Size
+@dataclass(frozen=True, slots=True)
+class Change:
+    """A change of area: "abrupt", or its included angle."""
+
+
+Spec = Change | Text | Choice | Flag | Number | Measure | Pairs | Names | Inline | Table | Array | Size
 
 _TEXT = Text()
 _FLAG = Flag()
@@ -136,13 +142,8 @@ ITEM: dict[str, Spec] = {
     "rangeability": Number(1.0, 1e4, above=True),
 }
 
-FITTING_USE: dict[str, Spec] = {
-    "kind": _TEXT,
-    "count": Number(1, 10000, whole=True),
-    "radius_ratio": Number(0.0, 100.0, above=True),
-    "angle": Measure(Dimension.ANGLE, 0.0, 180.0, above=True),
-    "plane": Choice(("width", "height")),
-}
+FITTING_USE: dict[str, Spec] = {"kind": _TEXT, "count": Number(1, 10000, whole=True)}
+"""Keys of every fitting with parameters; the parameters are those of its kind in the catalogue."""
 
 RUN: dict[str, Spec] = {
     "pipe": _TEXT,
@@ -153,12 +154,12 @@ RUN: dict[str, Spec] = {
     "paired": _FLAG,
     "compression": Measure(Dimension.FRACTION, 0.0, 0.9),
     "fittings": Inline(Number(0, 10000, whole=True)),
-    "fitting": Array(FITTING_USE),
+    "fitting": Array(FITTING_USE, open=True),
     "fitting_method": Choice(METHODS),
     "takeoff": Choice(("straight", "branch", "none")),
     "junction": Choice(JUNCTIONS),
     "angle": Measure(Dimension.ANGLE, 30.0, 90.0),
-    "transition": Size(),
+    "transition": Change(),
     "class": Choice(CLASSES),
     "limit_velocity": _VELOCITY,
     "limit_gradient": _GRADIENT,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -86,6 +86,6 @@ class Scope:
         """Whether a fitting is one's own or the catalogue's."""
         return name in self.own_fittings or name in fitting_names()
 
-    def nearest_fitting(self, name: str) -> str:
+    def nearest_fitting(self, name: str, kinds: Iterable[str] = ()) -> str:
         """Return the nearest known fittings, for a message."""
-        return nearest(name, [*self.own_fittings, *fitting_names()], 3)
+        return nearest(name, [*self.own_fittings, *fitting_names(), *kinds], 3)

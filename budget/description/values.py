@@ -14,6 +14,7 @@ from typing import Any
 from budget.description.finding import Finding, Path, error
 from budget.description.schema import (
     Array,
+    Change,
     Choice,
     Flag,
     Inline,
@@ -43,6 +44,8 @@ _KINDS: dict[type, str] = {
 }
 
 
+_INCLUDED_ANGLE = Measure(Dimension.ANGLE, 0.0, 180.0, above=True)
+
 @dataclass(slots=True)
 class Reading:
     """What reading one file needs to know, and what it has found wrong so far."""
@@ -54,14 +57,19 @@ class Reading:
     """Where errors stand, and what stands around them."""
     _later: set[Path] = field(default_factory=set)
 
-    def table(self, data: Any, keys: Mapping[str, Spec], path: Path, kind: str = "") -> dict[str, Any]:
-        """Read a table with known keys; a key that could not be read is left out."""
+    def table(
+        self, data: Any, keys: Mapping[str, Spec], path: Path, kind: str = "", *, open_: bool = False
+    ) -> dict[str, Any]:
+        """Read a table with known keys; a key that could not be read is left out, of an open one it stays as it is."""
         if not isinstance(data, dict):
             self.wrong("type", f"{what_is(data)} where a table was due; write [{'.'.join(map(str, path))}]", path)
             return {}
         values: dict[str, Any] = {}
         for key, value in data.items():
             spec = keys.get(key)
+            if spec is None and open_:
+                values[key] = value
+                continue
             if spec is None:
                 self.unknown_key(key, keys, path, kind)
                 continue
@@ -91,8 +99,10 @@ class Reading:
                 return self._inline(value, inner, path)
             case Table(keys):
                 return self.table(value, keys, path, ".".join(map(str, path)))
-            case Array(keys):
-                return self._array(value, keys, path)
+            case Array():
+                return self._array(value, spec, path)
+            case Change():
+                return value if value == "abrupt" else self._measure(value, _INCLUDED_ANGLE, path)
             case Size():
                 return self._size(value, path)
 
@@ -215,11 +225,12 @@ class Reading:
         found = {key: self.value(inner, spec, (*path, key)) for key, inner in value.items()}
         return {key: inner for key, inner in found.items() if inner is not None}
 
-    def _array(self, value: Any, keys: Mapping[str, Spec], path: Path) -> tuple[dict[str, Any], ...] | None:
+    def _array(self, value: Any, spec: Array, path: Path) -> tuple[dict[str, Any], ...] | None:
         if not isinstance(value, list):
             self.wrong("type", f"{what_is(value)} where tables were due; write [[{'.'.join(map(str, path))}]]", path)
             return None
-        return tuple(self.table(entry, keys, (*path, place), str(path[-1])) for place, entry in enumerate(value))
+        read = (self.table(e, spec.keys, (*path, n), str(path[-1]), open_=spec.open) for n, e in enumerate(value))
+        return tuple(read)
 
     @staticmethod
     def _outside(value: float, spec: Number | Measure) -> bool:

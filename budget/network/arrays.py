@@ -16,15 +16,18 @@ Bools = Flags
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Loss:
-    """So many fittings of one name on a leg: k = constant + per_reynolds / Re for one of them."""
+    """So many fittings of one name on a leg: k = constant + per_reynolds / Re + corrected K_Re(Re) for one of them."""
 
     name: str
     count: int
     constant: float
     per_reynolds: float
+    corrected: float
     method: str
     source: str
     known_from: str
+    reference: str
+    """Which velocity the coefficient refers to."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -47,6 +50,8 @@ class Legs:
     stretch: Floats
     constant: Floats
     per_reynolds: Floats
+    corrected: Floats
+    """Part of the loss coefficient that the Reynolds factor of mitres multiplies."""
     rise: Floats
     diversity: Floats
     losses: tuple[tuple[Loss, ...], ...]
@@ -54,6 +59,36 @@ class Legs:
     def __len__(self) -> int:
         """Return the number of legs."""
         return len(self.parent)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Junctions:
+    """Every junction whose loss is counted: two legs that meet at the end of a third, by their numbers."""
+
+    branch: Ints
+    straight: Ints
+    combined: Ints
+    branch_counts: Bools
+    """Whether the branch's loss is counted; it has stated so."""
+    straight_counts: Bools
+    family: Ints
+    converging: Bools
+    angle: Floats
+    area_ratio: Floats
+    """Branch to combined."""
+
+    def __len__(self) -> int:
+        """Return the number of junctions."""
+        return len(self.combined)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class AreaChanges:
+    """The change of area at the end of each leg toward its source: coefficient on the smaller area, 0 for none."""
+
+    k: Floats
+    area: Floats
+    """The smaller area, m2."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -158,6 +193,8 @@ class Layout:
     topology: Topology
     media: tuple[Media, ...]
     legs: Legs
+    junctions: Junctions
+    area_changes: AreaChanges
     terminals: Terminals
     items: Items
     devices: tuple[DeviceUse, ...]

@@ -68,7 +68,11 @@ def spent_by_heading(run: Computed, source: int) -> dict[str, float]:
     carriers = {len(layout.legs) + len(layout.terminals) + source}
     for path in index_paths(run, source):
         legs, terminal = list(path.legs), path.terminal
-        spent["distribution"] += math.fsum(drops.friction[legs]) + math.fsum(drops.fittings[legs])
+        spent["distribution"] += math.fsum(
+            part
+            for losses in (drops.friction, drops.fittings, drops.junction, drops.transition)
+            for part in losses[legs]
+        )
         spent["balancing"] += math.fsum(drops.leg_base[legs]) + float(drops.terminal_base[terminal])
         spent["static"] += math.fsum(drops.leg_static[legs]) + float(drops.terminal_static[terminal])
         spent["terminal"] += float(drops.terminal_drop[terminal])

@@ -11,8 +11,10 @@ from budget.network.equipment import DROP, KV, K
 from budget.network.equipment import LENGTH as EQUIVALENT
 from budget.network.media import GRAVITY
 from budget.physics.arrays import SmallIndices
+from budget.physics.elbows import reynolds_factor
 from budget.physics.fittings import valve_drop
 from budget.physics.friction import friction_factor, pressure_gradient, regime, reynolds
+from budget.physics.junctions import junction_coefficients
 from budget.physics.power import velocity_pressure
 
 
@@ -33,13 +35,19 @@ class Hydraulics:
     gradient: Floats
     friction: Floats
     fittings: Floats
+    junction: Floats
+    """Loss of the junction that each leg hangs on, in its part of it; negative where it gains."""
+    junction_k: Floats
+    """Coefficients behind them, on the combined flow."""
+    transition: Floats
+    """Loss of the change of area at the leg's end toward the source."""
     item_drop: Floats
     leg_items: Floats
     leg_static: Floats
     leg_base: Floats
     """Base drop of the device that stands on the leg."""
     leg_total: Floats
-    """Friction, fittings, items, device at base drop and static of a leg."""
+    """Friction, fittings, junction, transition, items, device at base drop and static of a leg."""
     device_base: Floats
     device_open: Floats
     terminal_drop: Floats
@@ -61,6 +69,9 @@ def flow_and_drops(layout: Layout) -> Hydraulics:
     pv = velocity_pressure(legs.density, velocity)
     friction = gradient * legs.length
     fittings = _coefficients(legs, re) * pv
+    junction, junction_k = _junction_drops(layout, leg_mass)
+    change = layout.area_changes
+    transition = change.k * velocity_pressure(legs.density, leg_mass / (legs.density * change.area))
     static = legs.density * GRAVITY * legs.rise
 
     carried = np.concatenate([leg_mass, mass, source_mass])
@@ -89,11 +100,14 @@ def flow_and_drops(layout: Layout) -> Hydraulics:
         gradient=gradient,
         friction=friction,
         fittings=fittings,
+        junction=junction,
+        junction_k=junction_k,
+        transition=transition,
         item_drop=item_drop,
         leg_items=leg_items,
         leg_static=static,
         leg_base=leg_base,
-        leg_total=friction + fittings + leg_items + leg_base + static,
+        leg_total=friction + fittings + junction + transition + leg_items + leg_base + static,
         device_base=device_base,
         device_open=device_open,
         terminal_drop=terminal_drop,
@@ -110,7 +124,32 @@ def _coefficients(legs: Legs, re: Floats) -> Floats:
     k = legs.constant
     if legs.per_reynolds.any():
         k = k + np.divide(legs.per_reynolds, re, out=np.zeros_like(re), where=re > 0.0)
+    if legs.corrected.any():
+        k = k + legs.corrected * reynolds_factor(re)
     return k
+
+
+def _junction_drops(layout: Layout, leg_mass: Floats) -> tuple[Floats, Floats]:
+    """Return the junction loss of each leg, Pa, and its coefficient; the ratios are those of the legs that meet."""
+    junctions, legs = layout.junctions, layout.legs
+    drop, k = np.zeros(len(legs)), np.zeros(len(legs))
+    if not len(junctions):
+        return drop, k
+    branch, straight, combined = junctions.branch, junctions.straight, junctions.combined
+    whole = leg_mass[branch] + leg_mass[straight]
+    ratio = np.divide(leg_mass[branch], whole, out=np.zeros_like(whole), where=whole > 0.0)
+    of_branch, of_straight = junction_coefficients(
+        junctions.family, junctions.converging, ratio, junctions.area_ratio, junctions.angle
+    )
+    density = legs.density[combined]
+    pv = velocity_pressure(density, whole / (density * legs.area[combined]))
+    for leg, coefficient, counts in (
+        (branch, of_branch, junctions.branch_counts),
+        (straight, of_straight, junctions.straight_counts),
+    ):
+        k[leg] = np.where(counts, coefficient, 0.0)
+        drop[leg] = k[leg] * pv
+    return drop, k
 
 
 def sum_served(values: Floats, order: Ints, start: Ints, end: Ints) -> Floats:

@@ -8,7 +8,6 @@ from collections import defaultdict
 
 import numpy as np
 
-from budget.catalogue import coefficient
 from budget.description import (
     Basis,
     Description,
@@ -19,11 +18,11 @@ from budget.description import (
     Quantity,
     Run,
     error,
-    note,
-    warning,
 )
 from budget.network.arrays import Bools, DeviceUse, Floats, Ints, Layout, Legs, Loss, Terminals, Zone
 from budget.network.equipment import EquipmentRows
+from budget.network.junctions import find_area_changes, find_junctions
+from budget.network.losses import losses_of
 from budget.network.media import Media, media_of, medium_at, pascals, volume
 from budget.network.topology import AT_SOURCE, Topology, connect
 from budget.network.zones import find_zones
@@ -50,6 +49,8 @@ def lay_out(description: Description) -> Layout:
         topology,
         tuple(media),
         legs,
+        find_junctions(description, topology, legs, end > start, findings),
+        find_area_changes(description, topology, legs, findings),
         terminals,
         items,
         devices,
@@ -70,7 +71,7 @@ def _broken(description: Description) -> Broken:
 
 
 _GEOMETRY_KEYS = {"pipe", "duct", "size", "bore"}
-_LOSS_KEYS = {"fittings", "fitting_method"}
+_LOSS_KEYS = {"fittings", "fitting", "fitting_method"}
 
 
 def _legs(
@@ -80,7 +81,7 @@ def _legs(
     columns: dict[str, Floats] = {
         name: np.full(count, np.nan) for name in ("density", "viscosity", "length", "roughness", "diversity")
     }
-    constant, per_reynolds = np.zeros(count), np.zeros(count)
+    constant, per_reynolds, corrected = np.zeros(count), np.zeros(count), np.zeros(count)
     rise = np.zeros(count)
     compression = np.zeros(count)
     geometries: list[Geometry | None] = []
@@ -114,10 +115,11 @@ def _legs(
         geometries.append(None if bad & _GEOMETRY_KEYS else run.geometry)
         key = (owner.path, leg.run_out)
         if key not in known_losses:
-            known_losses[key] = _losses(description, run, findings)
+            known_losses[key] = losses_of(description, run, findings)
         losses.append(known_losses[key])
         constant[number] = sum(loss.count * loss.constant for loss in losses[-1])
         per_reynolds[number] = sum(loss.count * loss.per_reynolds for loss in losses[-1])
+        corrected[number] = sum(loss.count * loss.corrected for loss in losses[-1])
         if bad & _LOSS_KEYS:
             constant[number] = math.nan
     area, diameter, laminar = _cross_sections(geometries)
@@ -136,6 +138,7 @@ def _legs(
         stretch=stretch,
         constant=constant,
         per_reynolds=per_reynolds,
+        corrected=corrected,
         rise=rise,
         losses=tuple(losses),
         **columns,
@@ -160,42 +163,6 @@ def _cross_sections(geometries: list[Geometry | None]) -> tuple[Floats, Floats, 
         area[these], diameter[these] = found.area, found.hydraulic_diameter
         laminar[these] = found.laminar_constant
     return area, diameter, laminar
-
-
-def _losses(description: Description, run: Run, findings: list[Finding]) -> tuple[Loss, ...]:
-    """Return the fittings of a run with their coefficients; a finding where a table does not reach."""
-    found = []
-    for use in run.fittings:
-        own = description.fittings.get(use.name)
-        if own is not None:
-            found.append(Loss(use.name, use.count, own.k, 0.0, "own", own.source, "stated in the run"))
-            continue
-        if run.geometry is None:
-            found.append(Loss(use.name, use.count, math.nan, 0.0, "", "", ""))
-            continue
-        bore = run.geometry.width if run.geometry.shape == "round" else _hydraulic_diameter(run.geometry)
-        nominal = run.geometry.nominal if run.geometry.shape == "round" else bore
-        k = coefficient(use.name, run.fitting_method, nominal, bore)
-        if k is None:
-            found.append(Loss(use.name, use.count, math.nan, 0.0, "", "", ""))
-            continue
-        found.append(Loss(use.name, use.count, k.constant, k.per_reynolds, k.method, k.source, k.known_from))
-        duct = run.line is not None and run.line.kind == "duct"
-        if duct and k.method != "constant":
-            text = f"{use.name!r} is a pipe fitting; its coefficient is not that of a duct: state k"
-            findings.append(warning("fitting-range", text, use.path))
-        elif not k.in_range:
-            text = f"{use.name!r} is outside its table at this size; the nearest tabulated value is used"
-            findings.append(warning("fitting-range", text, use.path))
-        elif k.method not in (run.fitting_method, "constant") and run.fitting_method != "by size":
-            text = f"{use.name!r} has no coefficient by {run.fitting_method}; it is taken {k.method}"
-            findings.append(note("fitting-method", text, use.path))
-    return tuple(found)
-
-
-def _hydraulic_diameter(geometry: Geometry) -> float:
-    make = shapes.rectangle if geometry.shape == "rectangular" else shapes.flat_oval
-    return float(make(geometry.width, geometry.height).hydraulic_diameter)
 
 
 _TERMINAL_DROP_KEYS = {"drop", "at", "exponent", "static_drop", "neck"}

@@ -12,7 +12,16 @@ from budget.network.circuits import path_sums
 from budget.network.computed import Computed
 from budget.network.results import DeviceResult, LegResult, LossResult, RunResult, SectionResult, TerminalResult
 from budget.network.takeup import adjust
+from budget.physics.elbows import reynolds_factor
 from budget.physics.friction import REGIMES
+from budget.physics.junctions import FAMILIES
+
+FAMILY_SOURCES = {
+    "tee-crane": ("Crane Technical Paper 410 (2009) chapter 2, as in the fluids library", "read+library"),
+    "tee-idelchik": ("Idelchik, Handbook of Hydraulic Resistance, section 7", "read"),
+}
+IN_SMALLER = "velocity in the smaller area"
+CHANGE_SOURCE = ("Borda-Carnot; Idelchik, diagrams 4-1, 5-1 and 5-23", "read+memory")
 
 
 class Records:
@@ -24,6 +33,13 @@ class Records:
         self._authority = authority
         self._devices = {use.carrier: number for number, use in enumerate(run.layout.devices)}
         self._numbers = {id_: number for number, id_ in enumerate(run.layout.terminals.ids)}
+        junctions = run.layout.junctions
+        self._junctions: dict[int, int] = {}
+        for legs, counts in (
+            (junctions.branch, junctions.branch_counts),
+            (junctions.straight, junctions.straight_counts),
+        ):
+            self._junctions |= {int(leg): number for number, leg in enumerate(legs) if counts[number]}
         self._sources = tuple(run.layout.description.sources)
         self._cumulative = _cumulative(run)
 
@@ -88,6 +104,7 @@ class Records:
         mass = float(drops.leg_mass[first])
         supply = self._run.layout.media[int(arrays.source[first])].supply
         friction, fittings = math.fsum(drops.friction[both]), math.fsum(drops.fittings[both])
+        junction, transition = math.fsum(drops.junction[both]), math.fsum(drops.transition[both])
         return RunResult(
             flow=mass / supply.density,
             mass_flow=mass,
@@ -99,11 +116,11 @@ class Records:
             k_total=sum(loss.count * loss.k for loss in self._losses(first)) if arrays.losses[first] else 0.0,
             friction=friction,
             fittings=fittings,
-            junction=0.0,
-            transition=0.0,
+            junction=junction,
+            transition=transition,
             items=items,
             static=math.fsum(drops.leg_static[both]),
-            drop=friction + fittings + items,
+            drop=friction + fittings + junction + transition + items,
             legs=tuple(self._leg(leg) for leg in legs),
         )
 
@@ -119,8 +136,9 @@ class Records:
             friction_factor=float(drops.factor[leg]),
             gradient=float(drops.gradient[leg]),
             friction=float(drops.friction[leg]),
-            junction=0.0,
+            junction=float(drops.junction[leg]),
             losses=self._losses(leg),
+            joints=self._joints(leg),
         )
 
     def _losses(self, leg: int) -> tuple[LossResult, ...]:
@@ -129,8 +147,60 @@ class Records:
         found = []
         for loss in self._run.layout.legs.losses[leg]:
             k = loss.constant + (loss.per_reynolds / re if re > 0 and loss.per_reynolds else 0.0)
+            if loss.corrected:
+                k += loss.corrected * float(reynolds_factor(re))
             found.append(
-                LossResult(loss.name, loss.count, k, loss.count * k * pv, loss.method, loss.source, loss.known_from)
+                LossResult(
+                    loss.name,
+                    loss.count,
+                    k,
+                    loss.count * k * pv,
+                    loss.method,
+                    loss.source,
+                    loss.known_from,
+                    loss.reference,
+                    float(drops.velocity[leg]),
+                )
+            )
+        return tuple(found)
+
+    def _joints(self, leg: int) -> tuple[LossResult, ...]:
+        """Return the leg's part of the junction that it hangs on, and the change of area there."""
+        drops, layout = self._run.drops, self._run.layout
+        legs, found = layout.legs, []
+        if (number := self._junctions.get(leg)) is not None:
+            junctions = layout.junctions
+            role = "branch" if int(junctions.branch[number]) == leg else "straight"
+            family = FAMILIES[int(junctions.family[number])]
+            combined = int(junctions.combined[number])
+            whole = float(
+                drops.leg_mass[int(junctions.branch[number])] + drops.leg_mass[int(junctions.straight[number])]
+            )
+            velocity = whole / float(legs.density[combined] * legs.area[combined])
+            flow = "converging" if junctions.converging[number] else "diverging"
+            name = f"{role} of a {flow} junction, {float(junctions.angle[number]):g} deg"
+            k, drop = float(drops.junction_k[leg]), float(drops.junction[leg])
+            source, known_from = FAMILY_SOURCES[family]
+            found.append(
+                LossResult(name, 1, k, drop, family, source, known_from, "velocity of the combined flow", velocity)
+            )
+        k, area = float(layout.area_changes.k[leg]), float(layout.area_changes.area[leg])
+        if k:
+            velocity = float(drops.leg_mass[leg]) / (float(legs.density[leg]) * area)
+            drop = float(drops.transition[leg])
+            source, known_from = CHANGE_SOURCE
+            found.append(
+                LossResult(
+                    "change of area",
+                    1,
+                    k,
+                    drop,
+                    "by angle",
+                    source,
+                    known_from,
+                    "velocity in the smaller area",
+                    velocity,
+                )
             )
         return tuple(found)
 

@@ -18,17 +18,20 @@ Side = Literal["supply", "return", "discharge", "suction"]
 
 @dataclass(frozen=True, slots=True)
 class LossResult:
-    """One loss of a leg: so many fittings of a name, at the velocity pressure of that leg."""
+    """One loss of a leg: so many fittings of a name, its part of a junction, or a change of area."""
 
     name: str
     count: int
     k: float
     """Loss coefficient of one, at this leg's Reynolds number."""
     drop: float
-    """Loss of all of them, Pa."""
+    """Loss of all of them, Pa; negative for a gain."""
     method: str
     source: str
     known_from: str
+    reference: str
+    """Which velocity the coefficient refers to."""
+    reference_velocity: float
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +49,9 @@ class LegResult:
     friction: float
     junction: float
     losses: tuple[LossResult, ...] = ()
+    """Its fittings."""
+    joints: tuple[LossResult, ...] = ()
+    """Its part of the junction that it hangs on, and the change of area there."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-from collections import defaultdict
 from collections.abc import Iterator
 
 import numpy as np
@@ -13,6 +12,7 @@ from budget.network.arrays import Bools, Floats
 from budget.network.computed import Computed
 from budget.network.duty import source_result
 from budget.network.takeup import adjust
+from budget.physics.junctions import in_range
 from budget.physics.shapes import FLEXIBLE_COMPRESSION, FLEXIBLE_DIAMETERS
 
 SMALL = 1e-3
@@ -27,6 +27,7 @@ def review(run: Computed, authority: Authorities) -> Iterator[Finding]:
     yield from _zones(run)
     yield from _legs(run)
     yield from _junctions(run)
+    yield from _area_changes(run)
     yield from _flexible(run)
     yield from _terminals(run)
     yield from _devices(run)
@@ -116,7 +117,9 @@ def _legs(run: Computed) -> Iterator[Finding]:
             owner, _ = _owner(run, leg)
             word = "gradient" if code == "gradient" else "velocity"
             text = f"{word} {{0}} is {side} its limit, {{1}}"
-            yield warning(code, text, _size_path(owner), (float(values[leg]), dimension), (float(limit[leg]), dimension))
+            yield warning(
+                code, text, _size_path(owner), (float(values[leg]), dimension), (float(limit[leg]), dimension)
+            )
     for leg in _worst(run, transitional, drops.friction):
         owner, _ = _owner(run, leg)
         text = (
@@ -192,37 +195,50 @@ def _by_bore(run: Computed, owner: Run) -> float | None:
 
 
 def _junctions(run: Computed) -> Iterator[Finding]:
-    """Find legs that meet at a section's end without a junction stated: its loss is not counted."""
-    layout = run.layout
-    meeting: dict[int, dict[str, bool]] = defaultdict(dict)
-    for leg, found in enumerate(layout.topology.legs):
-        if found.parent >= 0 and layout.end[leg] > layout.start[leg]:
-            meeting[found.parent][found.owner] = found.run_out
-    for ends in (layout.terminals.out, layout.terminals.back):
-        for terminal, end in enumerate(ends.tolist()):
-            if end >= 0 and not layout.legs.run_out[end]:
-                meeting[end][layout.terminals.ids[terminal]] = True
-    unstated: dict[str, Path] = {}
-    for members in meeting.values():
-        if len(members) < 2:
-            continue
-        for id_, is_terminal in members.items():
-            owner = layout.description.terminals[id_] if is_terminal else layout.description.sections[id_]
-            if not _junction_stated(owner):
-                unstated[id_] = owner.path
-    rank = layout.description.rank()
-    for id_ in sorted(unstated, key=lambda id_: rank.get(id_, 0)):
-        yield warning(
-            "junction",
-            'legs meet and the junction is not stated, its loss is not counted; state takeoff, or "none"',
-            (*unstated[id_], "takeoff"),
+    """Find junctions outside what their family was published for, and gains on the index circuit."""
+    junctions = run.layout.junctions
+    within = in_range(
+        junctions.family, junctions.converging, np.zeros(len(junctions)), junctions.area_ratio, junctions.angle
+    )
+    known = ~np.isnan(junctions.area_ratio)
+    for number in np.flatnonzero(known & ~within).tolist():
+        owner, _ = _owner(run, int(junctions.branch[number]))
+        text = (
+            f"area ratio {float(junctions.area_ratio[number]):.2f} of branch to combined is outside what the junction "
+            "was published for, up to 1; the nearest is used"
         )
+        yield warning("junction-range", text, (*owner.path, "takeoff"))
+    gaining = (run.drops.junction < 0.0) & run.circuits.leg_index
+    for leg in np.flatnonzero(gaining).tolist():
+        owner, _ = _owner(run, leg)
+        text = (
+            f"its junction coefficient is {float(run.drops.junction_k[leg]):.3f}: the other flow draws this one along, "
+            "a gain of {0} that the index circuit counts"
+        )
+        yield note("junction-gain", text, (*owner.path, "takeoff"), (-float(run.drops.junction[leg]), "pressure"))
 
 
-def _junction_stated(owner: Section | Terminal) -> bool:
-    takeoff = owner.takeoff if isinstance(owner, Terminal) else owner.run.takeoff
-    fittings = owner.run.fittings if owner.run else ()
-    return takeoff is not None or any(use.name.startswith("tee ") for use in fittings)
+def _area_changes(run: Computed) -> Iterator[Finding]:
+    """Offer a transition where a section goes straight on in another size and states none."""
+    layout, legs = run.layout, run.layout.legs
+    if not len(legs):
+        return
+    meeting = np.bincount(legs.parent[(legs.parent >= 0) & (layout.end > layout.start)], minlength=len(legs))
+    for ends in (layout.terminals.out, layout.terminals.back):
+        on_leg = (ends >= 0) & ~legs.run_out[ends]
+        meeting += np.bincount(ends[on_leg], minlength=len(legs))
+    for leg in np.flatnonzero((legs.parent >= 0) & legs.first & (layout.end > layout.start)).tolist():
+        owner, built = _owner(run, leg)
+        parent = int(legs.parent[leg])
+        own, other = float(legs.area[leg]), float(legs.area[parent])
+        straight_on = meeting[parent] == 1 or owner.takeoff == "straight"
+        if built.transition is None and straight_on and abs(own - other) > 1e-9 * other:
+            toward = layout.topology.legs[parent].owner
+            text = (
+                f"its size differs from that of {_plain(repr(toward))} and no transition is stated, its loss is not "
+                'counted; state transition = "abrupt", or its included angle'
+            )
+            yield note("area-change", text, (*owner.path, "transition"))
 
 
 def _flexible(run: Computed) -> Iterator[Finding]:

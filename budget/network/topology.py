@@ -114,7 +114,9 @@ class _Rooting:
             if at in place:
                 ring = trail[place[at] :]
                 self._wrong(
-                    "cycle", ring[0], f"{' -> '.join(map(repr, [*ring, ring[0]]))} hang on each other; correct one of them"
+                    "cycle",
+                    ring[0],
+                    f"{' -> '.join(map(repr, [*ring, ring[0]]))} hang on each other; correct one of them",
                 )
                 break
             place[at] = len(trail)

@@ -1,10 +1,11 @@
 """Duct elbows and offsets: loss coefficients on the velocity in the duct, by radius, aspect, angle and Reynolds number.
 
-The printed tables are the method and are interpolated; where a closed form was published too it stands beside the
-table and is the check on it. `radius_ratio` is the centre-line radius over the side W in the plane of the bend
-(round: over the diameter), `aspect` is H/W with H the other side, angles are of deflection in degrees. Outside a
-table the figure at its edge is held; whoever calls says so. Loss beyond the elbow's centre-line length, which counts
-as straight duct.
+The printed tables are the method and are interpolated, along the radius on logarithms, for the loss is nearly a power
+of it; where a closed form was published too it stands beside the table and is the check on it. `radius_ratio` is the
+centre-line radius over the side W in the plane of the bend (round: over the diameter), `aspect` is H/W with H the
+other side, angles are of deflection in degrees. Outside a table the figure at its edge is held; whoever calls says
+so. The coefficients are for what is lost beyond the friction of the elbow's centre-line length, which counts as
+straight duct.
 """
 
 from typing import Final
@@ -121,7 +122,8 @@ def round_gored(radius_ratio: ArrayLike, pieces: ArrayLike) -> Array:
     """
     r, n = np.asarray(radius_ratio, dtype=np.float64), np.asarray(pieces, dtype=np.float64)
     tight = along_log(_log(r), np.log([0.5, 0.75]), [_THREE_PIECES_TIGHT, _GORED[0, 0]])
-    return np.asarray(np.where((r < 0.75) & (n <= 3.0), tight, across_log(n, _log(r), _GORE_PIECES, np.log(_GORE_RADIUS), _GORED)))
+    table = across_log(n, _log(r), _GORE_PIECES, np.log(_GORE_RADIUS), _GORED)
+    return np.asarray(np.where((r < 0.75) & (n <= 3.0), tight, table))
 
 
 def round_mitre(angle: ArrayLike) -> Array:
@@ -155,7 +157,8 @@ def rectangular_smooth(radius_ratio: ArrayLike, aspect: ArrayLike, angle: ArrayL
 
     Source: ASHRAE Fundamentals 2005, fitting CR3-1, with its angle factor (read).
     """
-    return np.asarray(across_log(_log(radius_ratio), aspect, np.log(_SMOOTH_RADIUS), _SMOOTH_ASPECT, _SMOOTH) * angle_factor(angle))
+    at_90 = across_log(_log(radius_ratio), aspect, np.log(_SMOOTH_RADIUS), _SMOOTH_ASPECT, _SMOOTH)
+    return np.asarray(at_90 * angle_factor(angle))
 
 
 def rectangular_smooth_closed_form(radius_ratio: ArrayLike, aspect: ArrayLike, angle: ArrayLike = 90.0) -> Array:

@@ -22,6 +22,9 @@ from budget.report.located import Located
 
 FORMAT = 1
 
+_TOLD_ELSEWHERE = ("losses", "joints")
+"""Parts of a leg that the sums of its section hold."""
+
 
 def results(
     version: str, file: str, description: Description, budget: Budget | None, findings: Iterable[Located]
@@ -105,7 +108,7 @@ def _source(description: Description, result: SourceResult) -> dict[str, Any]:
 def _run(run: RunResult) -> dict[str, Any]:
     values = {field.name: getattr(run, field.name) for field in dataclasses.fields(run) if field.name != "legs"}
     legs = [
-        {field.name: getattr(leg, field.name) for field in dataclasses.fields(leg) if field.name != "losses"}
+        {field.name: getattr(leg, field.name) for field in dataclasses.fields(leg) if field.name not in _TOLD_ELSEWHERE}
         for leg in run.legs
     ]
     return values | {"legs": legs}

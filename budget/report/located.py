@@ -9,7 +9,6 @@ from budget.description import Description, Finding, Level, Path, SourceText
 from budget.report.figures import Figures
 from budget.units import Dimension
 
-
 FAULTS_OF_KEYS = frozenset({"unknown-key", "unknown-table", "unknown-fitting", "unknown-code"})
 """Findings about a key itself; all others point at the value that stands there."""
 

@@ -44,6 +44,7 @@ def add_section(text: str, description: Description, rows: tuple[Row, ...], plac
     After means farther from the source. It takes its size and length from its neighbour. Raises ShapingError on a
     terminal's far side and on the near side of a source.
     """
+    place = _owner(rows, place)
     row = rows[place]
     side = _side(description, row)
     if row.kind == "source" and where == "before":
@@ -63,11 +64,7 @@ def add_section(text: str, description: Description, rows: tuple[Row, ...], plac
     if where == "before":
         hung = [SetValue((*row.path, side), id_)]
     elif where == "after":
-        hung = [
-            SetValue((*child.path, side), id_)
-            for child in beneath(rows, place)
-            if _held_by(description, child) == row.id and _side(description, child) == side
-        ]
+        hung = [SetValue((*part.path, side), id_) for part in _hanging_on(description, row.id, side)]
     anchor = row.path if where == "before" else _last_path(text, row.path)
     added = AddTable(path, values, after=None if where == "before" else anchor)
     moved = [MoveTable(path, before=row.path)] if where == "before" else []
@@ -79,6 +76,7 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
 
     It takes its flow, drop, size and device from the nearest terminal, and a new ID after it.
     """
+    place = _owner(rows, place)
     row = rows[place]
     sibling = _nearest_terminal(description, rows, place)
     if row.kind == "terminal":
@@ -87,6 +85,8 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
         parent, side = row.id, _side(description, row)
     if not parent:
         raise ShapingError(f"{row.id} hangs on nothing; write what it hangs on first")
+    if side == "to" and not description.fluid.gas:
+        raise ShapingError("a terminal is added on the section that feeds it; this one is a return")
     id_ = new_id(sibling.id if sibling else "T1", _taken(description), itself=sibling is None)
     path: Path = ("terminal", id_)
     values: dict[str, Any] = {side: parent}
@@ -94,7 +94,7 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
         values |= _copied(text, sibling.path, _COPIED_TO_A_TERMINAL)
         if sibling.to is not None and sibling.from_ is not None and side == "from":
             values["to"] = sibling.to
-    else:
+    if not {"flow", "load"} & set(values):
         values |= _first_terminal(description)
     after = _last_path(text, sibling.path if sibling else row.path)
     return Change(AddTable(path, values, after=after), f"add terminal {id_}", path)
@@ -110,6 +110,8 @@ def duplicate(text: str, description: Description, rows: tuple[Row, ...], place:
     taken = set(_taken(description))
     names: dict[str, str] = {}
     branch = (row, *beneath(rows, place))
+    if not any(part.kind == "terminal" for part in branch):
+        raise ShapingError(f"no terminal hangs on {row.id} here; duplicate the branch with its terminals")
     for part in branch:
         names[part.id] = new_id(part.id, taken)
         taken.add(names[part.id])
@@ -201,6 +203,13 @@ def new_id(base: str, taken: Iterable[str], *, itself: bool = False) -> str:
             return candidate
 
 
+def _owner(rows: tuple[Row, ...], place: int) -> int:
+    """Return the place of the section, terminal or source to which the row of an item belongs."""
+    while rows[place].kind == "item":
+        place -= 1
+    return place
+
+
 def _taken(description: Description) -> set[str]:
     return {*description.sources, *description.sections, *description.terminals}
 
@@ -218,6 +227,12 @@ def _side(description: Description, row: Row) -> Literal["from", "to"]:
 def _held_by(description: Description, row: Row) -> str | None:
     part = _part(description, row.id)
     return None if part is None else part.from_ or part.to
+
+
+def _hanging_on(description: Description, id_: str, side: str) -> list[Section | Terminal]:
+    """Return the sections and terminals that name an ID as what they hang on, on one side."""
+    parts = (*description.sections.values(), *description.terminals.values())
+    return [part for part in parts if (part.from_ if side == "from" else part.to) == id_]
 
 
 def _hangings(description: Description, row: Row) -> tuple[tuple[str, str], ...]:

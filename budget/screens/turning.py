@@ -259,8 +259,9 @@ def show_manual(app: BudgetApp) -> None:
         return
 
     def take(name: object) -> None:
+        page = app.manual
         app.turn_to("manual")
-        app.call_after_refresh(app.manual.open, str(name))
+        app.call_after_refresh(page.open, str(name))
 
     app.offer(Offer("Manual", ("",), [Choice((plain(title),), name) for name, title in found], take))
 

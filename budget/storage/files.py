@@ -39,11 +39,15 @@ def load(path: Path) -> tuple[bytes, Stamp]:
     """
     try:
         # O_NONBLOCK: a FIFO must not hang the program.
-        with os.fdopen(os.open(path, os.O_RDONLY | os.O_NONBLOCK), "rb") as stream:
-            status = os.fstat(stream.fileno())
+        handle = os.open(path, os.O_RDONLY | os.O_NONBLOCK)
+        try:
+            status = os.fstat(handle)
             if not stat.S_ISREG(status.st_mode):
                 raise StorageError(f"{path} is not a regular file; name the run's TOML file")
-            content = stream.read(LARGEST_FILE + 1)
+            with os.fdopen(handle, "rb", closefd=False) as stream:
+                content = stream.read(LARGEST_FILE + 1)
+        finally:
+            os.close(handle)
     except OSError as wrong:
         raise StorageError(f"{path} could not be read: {_reason(wrong)}") from wrong
     return content, _stamp(status, content)
@@ -161,7 +165,8 @@ def _write_in_place(target: Path, content: bytes) -> None:
     """Write over a file's bytes; where that fails the old ones, which have their space, are put back."""
     handle = os.open(target, os.O_RDWR)
     try:
-        old = _read(handle)
+        with os.fdopen(handle, "rb", closefd=False) as stream:
+            old = stream.read()
         try:
             if hasattr(os, "posix_fallocate") and content:
                 os.posix_fallocate(handle, 0, len(content))
@@ -171,11 +176,6 @@ def _write_in_place(target: Path, content: bytes) -> None:
             raise
     finally:
         os.close(handle)
-
-
-def _read(handle: int) -> bytes:
-    with os.fdopen(os.dup(handle), "rb") as stream:
-        return stream.read()
 
 
 def _overwrite(handle: int, content: bytes) -> None:

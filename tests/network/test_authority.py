@@ -78,7 +78,9 @@ def test_a_flow_holding_device_elsewhere_counts_at_its_setting() -> None:
 
 
 def test_low_authority_is_against_the_set_point_that_the_source_controls() -> None:
-    assert authority(tree('controls = "differential", set_point = 35, sensor = "M1",')) == pytest.approx((4 / 19, 4 / 35))
+    assert authority(tree('controls = "differential", set_point = 35, sensor = "M1",')) == pytest.approx(
+        (4 / 19, 4 / 35)
+    )
 
 
 def test_low_authority_is_against_the_nearest_holding_device() -> None:

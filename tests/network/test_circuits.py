@@ -1,4 +1,4 @@
-"""Circuits, the index circuit, margins and differentials; every pressure in kPa is one that can be added up in the head."""
+"""Circuits, the index circuit, margins and differentials, in kilopascals that can be added up in the head."""
 
 from __future__ import annotations
 
@@ -258,12 +258,16 @@ def test_holding_devices_may_stand_one_behind_the_other() -> None:
 
 
 def test_a_section_outside_nested_holding_devices_takes_its_margin_outside() -> None:
-    text = HELD.replace("SET_POINT", "").replace(
-        "C1 = {", 'A1 = { from = "P1", bore = 40, length = 0 }\nC1 = {'
-    ).replace('M1 = { from = "P1"', 'M1 = { from = "A1"').replace(
-        'from = "A1", bore = 40, length = 0, item = [{ drop = 5 }] }',
-        'from = "A1", bore = 40, length = 0, item = [{ drop = 5 }], balance = "DPV" }',
-    ) + 'T4 = { from = "P1", flow = 0.1, drop = 40 }\n'
+    text = (
+        HELD.replace("SET_POINT", "")
+        .replace("C1 = {", 'A1 = { from = "P1", bore = 40, length = 0 }\nC1 = {')
+        .replace('M1 = { from = "P1"', 'M1 = { from = "A1"')
+        .replace(
+            'from = "A1", bore = 40, length = 0, item = [{ drop = 5 }] }',
+            'from = "A1", bore = 40, length = 0, item = [{ drop = 5 }], balance = "DPV" }',
+        )
+        + 'T4 = { from = "P1", flow = 0.1, drop = 40 }\n'
+    )
     budget = budget_of(text)
     # 6 + 40 = 46 against 33 of all that hangs on A1.
     assert budget.sections["A1"].margin == pytest.approx(13_000.0)

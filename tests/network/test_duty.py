@@ -39,7 +39,9 @@ T2 = { from = "M1", flow = 0.1, drop = 1 }
 )
 
 
-def source(main: str = "", branch: str = "", terminal: str = "", own: str = "", reserves: str = RESERVES) -> SourceResult:
+def source(
+    main: str = "", branch: str = "", terminal: str = "", own: str = "", reserves: str = RESERVES
+) -> SourceResult:
     text = TREE.replace("RESERVES", reserves).replace("SOURCE", own).replace("MAIN", main)
     return budget_of(text.replace("BRANCH", branch).replace("TERMINAL", terminal)).sources["P1"]
 
@@ -309,7 +311,9 @@ def test_a_gas_spends_along_both_of_its_index_circuits() -> None:
 
 
 def test_a_flow_holding_terminal_on_one_side_of_a_fan_leaves_the_other_to_grow() -> None:
-    text = FAN.replace("FAN", RESERVES + ",").replace("[source]", '[device.VAV]\nholds = "flow"\nleast_drop = 20\n[source]')
+    text = FAN.replace("FAN", RESERVES + ",").replace(
+        "[source]", '[device.VAV]\nholds = "flow"\nleast_drop = 20\n[source]'
+    )
     text = text.replace("S1 = {", 'S1 = { balance = "VAV",')
     found = budget_of(text).sources["F1"]
     # H = 40 + 7 + 20; N = 150 + 20 + 33

@@ -83,9 +83,7 @@ def test_pairing_doubles_friction_and_fittings_but_no_item() -> None:
 
 
 def test_each_leg_has_its_own_temperature() -> None:
-    text = SECTION.replace(
-        'name = "custom"\ndensity = 1000\nviscosity = 1\nspecific_heat = 4\n', 'name = "water"\n'
-    )
+    text = SECTION.replace('name = "custom"\ndensity = 1000\nviscosity = 1\nspecific_heat = 4\n', 'name = "water"\n')
     found = budget_of(text.replace("SECTION", "bore = 40, length = 3").replace("FLOW", 'flow = "1 kg/s"'))
     supply, back = found.sections["M1"].run.legs
     fluid = found.sources["P1"].fluid
@@ -259,10 +257,10 @@ cv = [[0, 0.5], [4, 4.1616]]
         ("CVD", 1.0, 100_000.0),  # Cv 4.1616 is Kv 3.6
     ],
 )
-def test_the_base_drop_of_a_device_is_the_larger_of_fully_open_and_least(
-    device: str, flow: float, base: float
-) -> None:
-    text = SECTION.replace("[source]", BALANCED + "[source]").replace("drop = 1 }", f'drop = 1, balance = "{device}" }}')
+def test_the_base_drop_of_a_device_is_the_larger_of_fully_open_and_least(device: str, flow: float, base: float) -> None:
+    text = SECTION.replace("[source]", BALANCED + "[source]").replace(
+        "drop = 1 }", f'drop = 1, balance = "{device}" }}'
+    )
     found = budget_of(text.replace("SECTION", "bore = 40, length = 0").replace("FLOW", f"flow = {flow}"))
     device_result = found.terminals["T1"].device
     assert device_result is not None
@@ -324,7 +322,9 @@ def test_of_two_terminals_on_a_side_none_may_omit_its_flow() -> None:
 
 
 def test_two_terminals_alone_on_their_sides_can_t_both_omit_their_flow() -> None:
-    text = FAN.replace("LONE", "").replace('S2 = { from = "D1", flow = 40, drop = 10 }\n', "").replace("flow = 60, ", "")
+    text = (
+        FAN.replace("LONE", "").replace('S2 = { from = "D1", flow = 40, drop = 10 }\n', "").replace("flow = 60, ", "")
+    )
     assert errors_of(text) == [("no-flow", "terminal.S1"), ("no-flow", "terminal.X1")]
 
 

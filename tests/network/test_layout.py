@@ -124,8 +124,8 @@ def test_a_source_s_item_that_can_t_be_read_takes_its_circuits() -> None:
 )
 def test_a_terminal_s_drop_and_items_do_not_rest_on_each_other(old: str, new: str, drop: bool, items: bool) -> None:
     terminal = edited(old, new).terminals["T1"]
-    assert not math.isnan(terminal.drop) is drop
-    assert not math.isnan(terminal.items_drop) is items
+    assert math.isnan(terminal.drop) is not drop
+    assert math.isnan(terminal.items_drop) is not items
     assert math.isnan(terminal.circuit)
 
 
@@ -225,7 +225,9 @@ def test_what_is_not_computed_yet_leaves_the_figures_as_they_are() -> None:
 
 
 def test_a_fitting_beyond_its_table_is_doubted() -> None:
-    text = TREE.replace("bore = 40, length = 5, fittings = { bend = 2 }", 'bore = 9, length = 5, fittings = { "elbow 90" = 2 }')
+    text = TREE.replace(
+        "bore = 40, length = 5, fittings = { bend = 2 }", 'bore = 9, length = 5, fittings = { "elbow 90" = 2 }'
+    )
     assert ("fitting-range", 'section.M1.fittings."elbow 90"') in places(findings_of(text), "warning")
 
 

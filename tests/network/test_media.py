@@ -126,8 +126,7 @@ def test_a_load_takes_the_mean_specific_heat_of_both_legs() -> None:
 
 def test_a_terminal_may_state_its_own_return_temperature() -> None:
     text = LIQUID + (
-        "[source]\nP1 = {}\n[terminal]\n"
-        'T1 = { from = "P1", load = 3.2, return_temperature = "60 degC", drop = 1 }\n'
+        '[source]\nP1 = {}\n[terminal]\nT1 = { from = "P1", load = 3.2, return_temperature = "60 degC", drop = 1 }\n'
     )
     # 3200 W / (4000 J/(kg K) x 10 K) = 0.08 kg/s
     assert budget_of(text).terminals["T1"].mass_flow == pytest.approx(0.08)
@@ -199,8 +198,10 @@ def test_a_temperature_of_a_source_is_doubted_at_the_source() -> None:
 
 
 def test_a_doubt_about_the_fluid_is_told_once_for_all_sources() -> None:
-    text = run('name = "water"\ntemperature = "2 degC"').replace("P1 = {  }", "P1 = {}\nP2 = {}").replace(
-        "[terminal]", '[terminal]\nT2 = { from = "P2", flow = 0.1, drop = 1 }'
+    text = (
+        run('name = "water"\ntemperature = "2 degC"')
+        .replace("P1 = {  }", "P1 = {}\nP2 = {}")
+        .replace("[terminal]", '[terminal]\nT2 = { from = "P2", flow = 0.1, drop = 1 }')
     )
     assert [place for code, place in places(findings_of(text), "warning") if code == "near-freezing"] == [
         "fluid.temperature"

@@ -75,7 +75,7 @@ def devices_of(budget: Budget, id_: str) -> list[SectionResult]:
     description = budget.run.layout.description
     outward: list[str] = []
     at = description.terminals[id_].from_
-    while at in description.sections:
+    while at is not None and at in description.sections:
         outward.insert(0, at)
         at = description.sections[at].from_
     back = [other for other in budget.terminals[id_].path if description.sections[other].from_ is None]
@@ -123,7 +123,9 @@ def test_a_holding_device_takes_all_that_remains_of_what_is_behind_it(seed: int)
         sections = devices_of(budget, holder.serves[0])
         holders = [section for section in sections if is_holding(section)]
         place = holders.index(holder)
-        outside = [s for s in behind(sections, holders[place - 1] if place else None) if s not in behind(sections, holder)]
+        outside = [
+            s for s in behind(sections, holders[place - 1] if place else None) if s not in behind(sections, holder)
+        ]
         assert close(taken(outside), holder.margin, scale_of(budget, holder.source)), holder.id
 
 

@@ -48,7 +48,9 @@ def test_records_are_a_mapping_made_once() -> None:
 
 
 def test_a_drop_is_friction_fittings_and_items_but_not_the_device() -> None:
-    text = (LIQUID + TREE).replace('M1 = { from = "P1", bore = 40, length = 0', 'M1 = { from = "P1", bore = 40, length = 3')
+    text = (LIQUID + TREE).replace(
+        'M1 = { from = "P1", bore = 40, length = 0', 'M1 = { from = "P1", bore = 40, length = 3'
+    )
     found = budget_of(text.replace("balance", "fittings = { bend = 4 }, balance", 1)).sections["M1"]
     run = found.run
     assert run.fittings > 0.0
@@ -128,12 +130,15 @@ def test_geometry_is_reported_as_it_was_stated() -> None:
     # pi/4 x 0.0625; 0.08; pi/4 x 0.0625 + 0.25 x 0.25
     assert [s.run.area for s in sections.values()] == pytest.approx([0.0490874, 0.08, 0.1115874], rel=1e-6)
     # 4A/P: 0.25; 0.32/1.2; 0.4463495/(0.25 pi + 0.5)
-    assert [s.run.hydraulic_diameter for s in sections.values()] == pytest.approx([0.25, 0.2666667, 0.3472461], rel=1e-6)
+    assert [s.run.hydraulic_diameter for s in sections.values()] == pytest.approx(
+        [0.25, 0.2666667, 0.3472461], rel=1e-6
+    )
 
 
 def test_items_are_reported_with_their_headings() -> None:
     text = (LIQUID + TREE).replace(
-        "drop = 10 }", 'drop = 10, item = [{ name = "Valve", drop = 2, control = "two-port" }, { drop = 1, heading = "static" }] }'
+        "drop = 10 }",
+        'drop = 10, item = [{ name = "Valve", drop = 2, control = "two-port" }, { drop = 1, heading = "static" }] }',
     )
     budget = budget_of(text)
     assert [(item.name, item.drop, item.heading) for item in budget.sections["M1"].items] == [
@@ -178,9 +183,7 @@ def test_a_section_without_terminals_has_no_margin() -> None:
     assert section.run.drop == 0.0
 
 
-@pytest.mark.parametrize(
-    ("flow", "regime"), [(0.05, "laminar"), (0.1, "transitional"), (0.5, "turbulent")]
-)
+@pytest.mark.parametrize(("flow", "regime"), [(0.05, "laminar"), (0.1, "transitional"), (0.5, "turbulent")])
 def test_the_regime_is_named(flow: float, regime: str) -> None:
     # Re = 4 m/(pi D mu) = 1592, 3183 and 15 915 in 40 mm
     text = LIQUID + (
@@ -191,9 +194,12 @@ def test_the_regime_is_named(flow: float, regime: str) -> None:
 
 
 def test_findings_are_those_of_reading_connecting_and_computing() -> None:
-    text = (LIQUID + TREE).replace('B2 = { from = "M1"', 'B2 = { from = "M7", colour = "red"').replace(
-        "[source]", "[limits]\nvelocity = 0.01\n[source]"
-    ).replace("flow = 0.1", "flow = 1")
+    text = (
+        (LIQUID + TREE)
+        .replace('B2 = { from = "M1"', 'B2 = { from = "M7", colour = "red"')
+        .replace("[source]", "[limits]\nvelocity = 0.01\n[source]")
+        .replace("flow = 0.1", "flow = 1")
+    )
     codes = [finding.code for finding in evaluated_of(text).findings]
     assert codes[0] == "unknown-key"
     assert "dangling" in codes

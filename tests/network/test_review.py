@@ -4,9 +4,8 @@ from __future__ import annotations
 
 import pytest
 
-from budget.description import Finding, Level
+from budget.description import Finding, Level, read_text
 from budget.document import take
-from budget.description import read_text
 from budget.network.review import accept
 from tests.network.small import GAS, LIQUID, budget_of, description_of, findings_of, places, shown
 
@@ -62,7 +61,9 @@ def test_only_the_worst_leg_of_a_section_is_named() -> None:
     text = pipe('velocity = "0.9 m/s"').replace(
         'name = "custom"\ndensity = 1000\nviscosity = 1\nspecific_heat = 4\n', 'name = "water"\n'
     )
-    assert [finding.message for finding in shown(text, "velocity")] == ["velocity 1.00 m/s is above its limit, 0.90 m/s"]
+    assert [finding.message for finding in shown(text, "velocity")] == [
+        "velocity 1.00 m/s is above its limit, 0.90 m/s"
+    ]
 
 
 @pytest.mark.parametrize(
@@ -70,8 +71,16 @@ def test_only_the_worst_leg_of_a_section_is_named() -> None:
     [
         ('velocity = "0.9 m/s"', "keep = true", "0.90"),
         # Its bore comes before what is general.
-        ('velocity = "0.1 m/s"\nvelocity_by_bore = [["40 mm", "0.8 m/s"], ["50 mm", "0.7 m/s"]]', "keep = true", "0.80"),
-        ('velocity = "0.1 m/s"\nvelocity_by_bore = [["39 mm", "0.8 m/s"], ["50 mm", "0.7 m/s"]]', "keep = true", "0.70"),
+        (
+            'velocity = "0.1 m/s"\nvelocity_by_bore = [["40 mm", "0.8 m/s"], ["50 mm", "0.7 m/s"]]',
+            "keep = true",
+            "0.80",
+        ),
+        (
+            'velocity = "0.1 m/s"\nvelocity_by_bore = [["39 mm", "0.8 m/s"], ["50 mm", "0.7 m/s"]]',
+            "keep = true",
+            "0.70",
+        ),
         # Beyond the last bore: what is general.
         ('velocity = "0.9 m/s"\nvelocity_by_bore = [["39 mm", "0.8 m/s"]]', "keep = true", "0.90"),
         # Its class comes before its bore.
@@ -95,7 +104,9 @@ def test_the_nearest_limit_holds(limits: str, main: str, limit: str) -> None:
 
 
 def test_a_wider_limit_of_one_s_own_silences_the_general_one() -> None:
-    assert warnings_of(pipe('velocity = "0.5 m/s"\ngradient = 10', 'limit_velocity = "2 m/s", limit_gradient = 900')) == []
+    assert (
+        warnings_of(pipe('velocity = "0.5 m/s"\ngradient = 10', 'limit_velocity = "2 m/s", limit_gradient = 900')) == []
+    )
 
 
 def test_gradient_and_least_velocity_are_limited_by_class_too() -> None:
@@ -111,8 +122,10 @@ def test_a_run_out_has_a_class_of_its_own() -> None:
 
 
 def test_a_size_of_a_catalogue_line_is_doubted_at_its_size() -> None:
-    text = pipe('velocity = "0.5 m/s"').replace("roughness = 0.05", 'catalogue = "steel EN 10255 medium"').replace(
-        "bore = 40", 'size = "DN32"'
+    text = (
+        pipe('velocity = "0.5 m/s"')
+        .replace("roughness = 0.05", 'catalogue = "steel EN 10255 medium"')
+        .replace("bore = 40", 'size = "DN32"')
     )
     assert warnings_of(text) == [("velocity", "section.M1.size")]
 
@@ -146,7 +159,9 @@ def test_legs_that_meet_without_a_junction_stated_are_found() -> None:
 
 
 def test_a_stated_junction_or_a_tee_fitting_is_enough() -> None:
-    stated = TEE.replace("B1 = {", 'B1 = { takeoff = "none",').replace("B2 = {", 'B2 = { fittings = { "tee branch" = 1 },')
+    stated = TEE.replace("B1 = {", 'B1 = { takeoff = "none",').replace(
+        "B2 = {", 'B2 = { fittings = { "tee branch" = 1 },'
+    )
     assert [finding for finding in warnings_of(stated) if finding[0] == "junction"] == []
 
 
@@ -162,7 +177,10 @@ def test_run_outs_and_sections_meet_too() -> None:
     text = TEE.replace('T2 = { from = "B2"', 'T2 = { from = "M1", bore = 20, length = 1').replace(
         'B2 = { from = "M1", bore = 40, length = 1 }\n', ""
     )
-    assert [found for found in warnings_of(text) if found[0] == "junction"] == [("junction", "section.B1.takeoff"), ("junction", "terminal.T2.takeoff")]
+    assert [found for found in warnings_of(text) if found[0] == "junction"] == [
+        ("junction", "section.B1.takeoff"),
+        ("junction", "terminal.T2.takeoff"),
+    ]
 
 
 def test_legs_that_meet_on_the_way_back_are_found() -> None:
@@ -326,8 +344,10 @@ def test_the_limits_of_authority_are_the_run_s() -> None:
 
 
 def test_settings_with_diversity_hold_for_the_diversified_flow() -> None:
-    text = BALANCED.replace("KEYS", "").replace("DROP", "100").replace(
-        "[terminal]", '[section]\nM1 = { from = "P1", bore = 50, length = 0, diversity = 0.9 }\n[terminal]'
+    text = (
+        BALANCED.replace("KEYS", "")
+        .replace("DROP", "100")
+        .replace("[terminal]", '[section]\nM1 = { from = "P1", bore = 50, length = 0, diversity = 0.9 }\n[terminal]')
     )
     text = text.replace('{ from = "P1", flow', '{ from = "M1", flow')
     assert places(findings_of(text), "note") == [("settings-diversified", "section.M1.diversity")]
@@ -417,6 +437,8 @@ def test_names_with_braces_are_shown_as_they_are(name: str) -> None:
 
 
 def test_findings_speak_in_the_units_of_the_design() -> None:
-    text = pipe('velocity = "0.9 m/s"').replace('title = "Small run"', 'title = "Small run"\n[display]\nvelocity = "ft/s"')
+    text = pipe('velocity = "0.9 m/s"').replace(
+        'title = "Small run"', 'title = "Small run"\n[display]\nvelocity = "ft/s"'
+    )
     assert shown(text, "velocity")[0].message == "velocity 3.28 ft/s is above its limit, 2.95 ft/s"
     assert take(read_text(text)).level == "warning"

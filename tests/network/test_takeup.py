@@ -123,7 +123,8 @@ def test_a_flow_holding_device_takes_up_to_its_greatest_drop() -> None:
     assert taken(budget, "T1", "T2") == pytest.approx([3.0, 5.0])
     assert excess(budget) == pytest.approx({"T1": 0.0, "T2": 2.0, "T3": 0.0})
     found = device(budget, "T2")
-    assert (found.drop, found.setting, found.kv, found.holds) == (pytest.approx(25_000.0), None, None, "flow")
+    assert found.drop == pytest.approx(25_000.0)
+    assert (found.setting, found.kv, found.holds) == (None, None, "flow")
 
 
 def test_a_flow_holding_device_without_a_greatest_drop_takes_everything() -> None:
@@ -301,8 +302,10 @@ def test_a_damper_is_set_on_the_logarithm_of_its_coefficient() -> None:
 
 
 def test_a_damper_on_a_terminal_refers_to_its_neck() -> None:
-    text = DAMPERS.replace("DROP", "150").replace(', balance = "VD" }', " }").replace(
-        "drop = 0 }", 'drop = 0, neck = "100 mm", balance = "VD" }'
+    text = (
+        DAMPERS.replace("DROP", "150")
+        .replace(', balance = "VD" }', " }")
+        .replace("drop = 0 }", 'drop = 0, neck = "100 mm", balance = "VD" }')
     )
     # 20 m/s in the neck: 240 Pa fully open, more than the 150 of the other.
     found = device(budget_of(text), "S1")
@@ -312,9 +315,13 @@ def test_a_damper_on_a_terminal_refers_to_its_neck() -> None:
 
 
 def test_a_setting_outside_its_table_is_a_warning_and_excess_is_another() -> None:
-    text = LIQUID + VALVES + (
-        'T1 = { from = "P1", flow = "2 m3/h", drop = 0, balance = "LOG" }\n'
-        'T2 = { from = "P1", flow = 0.1, drop = 399 }\nT3 = { from = "P1", flow = 0.1, drop = 401 }\n'
+    text = (
+        LIQUID
+        + VALVES
+        + (
+            'T1 = { from = "P1", flow = "2 m3/h", drop = 0, balance = "LOG" }\n'
+            'T2 = { from = "P1", flow = 0.1, drop = 399 }\nT3 = { from = "P1", flow = 0.1, drop = 401 }\n'
+        )
     )
     assert places(findings_of(text), "warning") == [
         ("excess", "terminal.T2.balance"),
@@ -323,9 +330,13 @@ def test_a_setting_outside_its_table_is_a_warning_and_excess_is_another() -> Non
 
 
 def test_a_device_whose_circuit_can_t_be_computed_takes_nothing() -> None:
-    text = LIQUID + DEVICES + (
-        '[source]\nP1 = {}\n[terminal]\nT1 = { from = "P1", flow = 0.1, drop = "much", balance = "DRV" }\n'
-        'T2 = { from = "P1", flow = 0.1, drop = 6, balance = "DRV" }\n'
+    text = (
+        LIQUID
+        + DEVICES
+        + (
+            '[source]\nP1 = {}\n[terminal]\nT1 = { from = "P1", flow = 0.1, drop = "much", balance = "DRV" }\n'
+            'T2 = { from = "P1", flow = 0.1, drop = 6, balance = "DRV" }\n'
+        )
     )
     budget = evaluated_of(text)
     assert device(budget, "T1").take_up == 0.0

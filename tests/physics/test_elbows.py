@@ -40,7 +40,7 @@ def test_more_pieces_lose_less(radius: float) -> None:
 
 def test_tight_gored_elbow_is_tabulated_for_three_pieces_alone() -> None:
     assert float(elbows.round_gored(0.5, 3)) == 0.98
-    assert float(elbows.round_gored(0.625, 3)) == pytest.approx((0.98 + 0.54) / 2.0)
+    assert float(elbows.round_gored(np.sqrt(0.375), 3)) == pytest.approx(np.sqrt(0.98 * 0.54))
     assert float(elbows.round_gored(0.5, 5)) == 0.46
 
 
@@ -50,8 +50,9 @@ def test_a_mitre_loses_more_the_more_it_turns(aspect: float, angle: float, share
     assert float(elbows.rectangular_mitre(less, aspect)) <= float(elbows.rectangular_mitre(angle, aspect)) + 1e-12
 
 
-@given(st.floats(0.55, 1.0), st.floats(0.25, 8.0))
+@given(st.floats(0.55, 1.0), st.floats(0.25, 4.0))
 def test_a_splitter_helps(radius: float, aspect: float) -> None:
+    """Up to H/W 4: in tighter and higher elbows the printed tables have it no better than none."""
     assert float(elbows.rectangular_splitter(radius, aspect)) < float(elbows.rectangular_smooth(radius, aspect))
 
 

@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import tomllib
+from pathlib import Path
 
 import pytest
 
 from budget.description.finding import Level
-from budget.screens.shaping import new_id
-from tests.screens.conftest import SMALL, Hands, Stage
+from budget.document import Document
+from budget.screens.rows import tree
+from budget.screens.shaping import ShapingError, add_section, add_terminal, delete, duplicate, new_id, shift
+from tests.screens.conftest import EXAMPLES, SMALL, Hands, Stage
 
 
 def parts(text: str) -> dict[str, dict[str, dict[str, object]]]:
@@ -172,3 +175,43 @@ def test_an_empty_run_says_how_to_begin(play: Stage) -> None:
         assert "Text screen" in hands.foot
 
     play(act, "format = 1\n")
+
+
+ACTIONS = {
+    "after": lambda *at: add_section(*at, "after"),
+    "before": lambda *at: add_section(*at, "before"),
+    "beneath": lambda *at: add_section(*at, "beneath"),
+    "terminal": add_terminal,
+    "duplicate": duplicate,
+    "delete": delete,
+    "up": lambda *at: shift(*at, -1),
+    "down": lambda *at: shift(*at, 1),
+}
+FOLLOWS = {"set-point", "no-flow"}
+"""A longer circuit behind a device that holds a differential; a terminal that is no longer alone and has no flow."""
+
+LEAVES_A_GAP = {"beneath", "delete"}
+"""A new branch has no terminal yet; the section of a last terminal is left without one."""
+
+
+@pytest.mark.parametrize("action", ACTIONS)
+@pytest.mark.parametrize("example", sorted(EXAMPLES.glob("*.toml")), ids=lambda path: path.stem)
+def test_every_shape_is_whole_after_a_change_anywhere(example: Path, action: str) -> None:
+    document = Document.open(example)
+    before = document.snapshot
+    rows = tree(before.description)
+    known = {f.code for f in before.findings if f.level is Level.ERROR} | FOLLOWS
+    for place in range(0, len(rows), 1 + len(rows) // 6):
+        try:
+            change = ACTIONS[action](before.text, before.description, rows, place)
+        except ShapingError:
+            continue
+        after = document.apply(change.edit, change.label)
+        assert after.text != before.text
+        assert after.readable
+        new = {f.code for f in after.findings if f.level is Level.ERROR} - known
+        if action not in LEAVES_A_GAP and (action, rows[place].kind) != ("duplicate", "item"):
+            assert not new, (rows[place].id, new)
+        assert not change.path or action == "delete" or any(row.path == change.path for row in tree(after.description))
+        document.undo()
+        assert document.snapshot.text == before.text

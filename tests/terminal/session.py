@@ -29,7 +29,7 @@ RUN = "import sys; from pathlib import Path; from budget.screens import run; sys
 
 ENVIRONMENT = {"TERM": "xterm-256color", "LC_ALL": "C.UTF-8", "LANG": "C.UTF-8", "ESCDELAY": "20"}
 
-ANSWER, QUIET = 0.8, 0.07
+ANSWER, QUIET = 0.4, 0.06
 """Seconds in which the first byte of an answer comes, and after which nothing more of it does."""
 
 

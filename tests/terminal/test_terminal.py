@@ -149,9 +149,9 @@ def test_it_is_readable_on_any_terminal(opened: Open, environment: dict[str, str
 @pytest.mark.parametrize("theme", names_of_themes())
 def test_no_theme_paints_a_text_in_its_own_background_where_there_are_16_colours(opened: Open, theme: str) -> None:
     session = opened(config=f'theme = "{theme}"', environment={"TERM": "linux"})
-    for keys in (("down", "enter", "9"), ("escape", "v"), ("escape", "T"), ("escape", "?"), ("Units", "enter")):
+    for keys in (("down", "down", "enter", "9"), ("escape", "v"), ("escape", "T"), ("escape", "?", "Units", "enter")):
         session.press(*keys)
-        session.settle(0.3)
+        session.settle(0.1)
         for y, line in enumerate(session.lines):
             for x, letter in enumerate(line):
                 cell = session.screen.buffer[y][x]
