@@ -82,6 +82,7 @@ CODES: dict[str, Code] = {
     "flexible": Code("warning", "Flexible duct outside 150 to 250 mm or above 30 % compression: extrapolated."),
     "nothing-in-hand": Code("warning", "The duty is above what is available."),
     "heading": Code("warning", "More is spent under a heading than its budget."),
+    "leakage": Code("warning", "The ducts leak more by their class than the flow reserve covers."),
     "air-balance": Code("warning", "Supply and extract mass flows of a fan differ by more than 1 %."),
     "excess": Code("warning", "Pressure that no device takes up: the terminal is over-supplied."),
     "device-range": Code("warning", "A device outside its setting table or its range."),

@@ -102,6 +102,15 @@ def _fits(scope: Scope, found: Kind, line: Line | None, path: Path) -> bool:
     return False
 
 
+def check_leakage(scope: Scope, values: Mapping[str, Any], line: Line | None, path: Path) -> str | None:
+    """Return the tightness class of a duct; an error where a pipe states one."""
+    if "leakage" in values and line is not None and line.kind != "duct":
+        scope.reading.wrong("contradiction", "leakage belongs to ducts; remove it", (*path, "leakage"))
+        return None
+    found: str | None = values.get("leakage")
+    return found
+
+
 def check_takeoff(scope: Scope, values: Mapping[str, Any], path: Path) -> None:
     """Find a junction that would be counted twice: by `takeoff` and by a tee among the fittings."""
     takeoff = values.get("takeoff", scope.defaults.get("takeoff"))

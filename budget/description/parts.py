@@ -7,7 +7,7 @@ from typing import Any
 
 from budget.description.codes import CODES
 from budget.description.finding import Path, warning
-from budget.description.fittings import check_takeoff, read_fittings
+from budget.description.fittings import check_leakage, check_takeoff, read_fittings
 from budget.description.model import Geometry, Item, Line, Run, Section, Source, Terminal
 from budget.description.schema import RUN
 from budget.description.scope import Scope
@@ -150,7 +150,7 @@ def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
         junction=values.get("junction", defaults.get("junction", "tee-crane")),
         angle=values.get("angle", defaults.get("angle", 90.0)),
         transition=values.get("transition"),
-        leakage=values.get("leakage"),
+        leakage=check_leakage(scope, values, line, path),
         limit_velocity=values.get("limit_velocity"),
         limit_gradient=values.get("limit_gradient"),
         class_=values.get("class", defaults.get("class")),

@@ -12,6 +12,7 @@ from budget.description import Source
 from budget.network.arrays import DeviceUse
 from budget.network.computed import Computed
 from budget.network.layout import neck_area
+from budget.network.leakage import leakages, source_leakage
 from budget.network.media import pascals
 from budget.network.results import HEADINGS, FluidResult, SourceResult
 from budget.physics.power import (
@@ -143,6 +144,7 @@ def source_result(run: Computed, number: int) -> SourceResult:
         hydraulic_power=hydraulic,
         shaft_power=shaft,
         electrical_power=electrical,
+        leakage=source_leakage(run, leakages(run), number),
         sfp=None if electrical is None else float(specific_fan_power(electrical, flow * factor)),
         spent=spent_by_heading(run, number),
         budget={

@@ -10,6 +10,7 @@ from budget.description import Geometry
 from budget.network.arrays import DeviceUse, Floats
 from budget.network.circuits import path_sums
 from budget.network.computed import Computed
+from budget.network.leakage import leakages
 from budget.network.results import DeviceResult, LegResult, LossResult, RunResult, SectionResult, TerminalResult
 from budget.network.takeup import adjust
 from budget.physics.elbows import reynolds_factor
@@ -33,6 +34,7 @@ class Records:
         self._authority = authority
         self._devices = {use.carrier: number for number, use in enumerate(run.layout.devices)}
         self._numbers = {id_: number for number, id_ in enumerate(run.layout.terminals.ids)}
+        self._leakage = leakages(run)
         junctions = run.layout.junctions
         self._junctions: dict[int, int] = {}
         for legs, counts in (
@@ -121,6 +123,7 @@ class Records:
             items=items,
             static=math.fsum(drops.leg_static[both]),
             drop=friction + fittings + junction + transition + items,
+            leakage=_or_none(float(np.sum(self._leakage[both]))),
             legs=tuple(self._leg(leg) for leg in legs),
         )
 

@@ -100,6 +100,8 @@ class RunResult:
     items: float
     static: float
     drop: float
+    leakage: float | None
+    """Greatest leakage by its class at mean static pressure, m3/s; None where it states no class."""
     legs: tuple[LegResult, ...]
 
 
@@ -185,6 +187,8 @@ class SourceResult:
     shaft_power: float | None
     electrical_power: float | None
     sfp: float | None
+    leakage: float | None
+    """Of all ducts that state a class, m3/s."""
     spent: Mapping[str, float]
     budget: Mapping[str, float]
     items: tuple[ItemResult, ...]

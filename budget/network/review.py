@@ -55,6 +55,15 @@ def _sources(run: Computed) -> Iterator[Finding]:
                     (result.spent[heading], "pressure"),
                     (over, "pressure"),
                 )
+        allowed = source.flow_reserve * result.flow
+        if result.leakage is not None and result.leakage > allowed * (1.0 + 1e-9):
+            yield warning(
+                "leakage",
+                "the ducts may leak {0} by their class, the flow reserve covers {1}; raise flow_reserve",
+                (*source.path, "flow_reserve"),
+                (result.leakage, "flow"),
+                (allowed, "flow"),
+            )
         if result.kind == "air":
             yield from _air_balance(run, number, source.path)
 

@@ -97,6 +97,7 @@ def _source(description: Description, result: SourceResult) -> dict[str, Any]:
             "shaft_power",
             "electrical_power",
             "sfp",
+            "leakage",
         )
     }
     values |= {"items": result.items_drop, "spent": dict(result.spent), "budget": dict(result.budget)}
