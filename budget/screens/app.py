@@ -67,6 +67,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.at: Place = "ledger"
         self.returns_to: Place = "ledger"
         self.sought = ""
+        self.wide = False
         self.change: tuple[str, str] = ("", "")
         self.animation_level = "none"
         self._own_filters: tuple[LineFilter, ...] = (SafeFilter(), AsciiFilter()) if ascii_only else (SafeFilter(),)
@@ -121,7 +122,9 @@ class BudgetApp(App[int], inherit_bindings=False):
             self.returns_to = self.at
         self.at = place
         for widget in self.middle.children:
-            if widget.id != "beside":
+            if widget.id == "beside":
+                widget.display = self.wide and place in ("ledger", "list", "findings")
+            else:
                 widget.display = widget.id == place
         self.screen.set_focus({"text": self._text, "manual": self._manual}.get(place))
         self.tell()
@@ -250,7 +253,8 @@ class BudgetApp(App[int], inherit_bindings=False):
 
     def on_resize(self, event: events.Resize) -> None:
         """Put the row detail beside the ledger where there is room."""
-        turning.lay_out(self, event.size.width, WIDE)
+        self.wide = event.size.width >= WIDE
+        turning.lay_out(self, event.size.width)
 
     def close_with(self, code: int) -> None:
         """End from a signal handler or another thread."""

@@ -57,7 +57,7 @@ COLUMNS: tuple[Column, ...] = (
     Column("margin", "margin", "margin", 7, 95, Dimension.PRESSURE),
     Column("balance", "balance", "balance", 12, 40, left=True),
     Column("fittings", "fittings", "fittings", 20, 30, left=True),
-    Column("title", "title", "title", 14, 20, left=True),
+    Column("title", "title", "title", 14, 45, left=True),
 )
 BY_KEY = {column.key: column for column in COLUMNS}
 
@@ -65,33 +65,36 @@ MARK = 1
 """Cells at the left edge for the sign of the index circuit."""
 
 _WIDEST_ID = 30
-_ROOMY = 110
 
 
 def place_columns(width: int) -> tuple[Placed, ...]:
-    """Return the columns for which a line of so many cells has room, in order, the most needed ones first to stay."""
+    """Return the columns for which a line of so many cells has room, in order.
+
+    The most needed ones stay longest. What room is left goes to the ID, to whole titles, and to the title of the row.
+    """
     room = width - MARK
-    kept: set[str] = set()
-    roomy = width >= _ROOMY
+    widths: dict[str, int] = {}
     for column in sorted(COLUMNS, key=lambda column: -column.priority):
-        if _width(column, roomy) > room and kept:
+        if column.width > room and widths:
             break
-        kept.add(column.key)
-        room -= _width(column, roomy)
-    spare = max(room, 0)
+        widths[column.key] = min(column.width, max(room, 0))
+        room -= widths[column.key]
+    room = max(room, 0)
+    for column in COLUMNS:
+        if column.key in widths and column.dimension is not None:
+            more = max(0, len(column.title) + 1 - widths[column.key])
+            if "title" in widths and more <= room:
+                widths[column.key] += more
+                room -= more
+    extra = room if "title" not in widths else min(room, _WIDEST_ID - widths["id"])
+    widths["id"] += extra
+    if "title" in widths:
+        widths["title"] += room - extra
     placed, x = [], MARK
     for column in COLUMNS:
-        if column.key not in kept:
-            continue
-        taken = _width(column, roomy)
-        if column.key == "id":
-            extra = min(spare, _WIDEST_ID - taken if "title" in kept else spare)
-            taken, spare = taken + extra, spare - extra
-            taken = min(taken, width - MARK)
-        if column.key == "title":
-            taken, spare = taken + spare, 0
-        placed.append(Placed(column, x, taken))
-        x += taken
+        if column.key in widths:
+            placed.append(Placed(column, x, widths[column.key]))
+            x += widths[column.key]
     return tuple(placed)
 
 
@@ -107,8 +110,3 @@ def fit_figure(text: str, room: int) -> str:
     shorter = (f"{number:.{kept}f}" for kept in range(decimals - 1, -1, -1))
     powers = (f"{number:.{kept}e}".replace("e+0", "e").replace("e+", "e") for kept in (2, 1, 0))
     return next((figure for figure in (*shorter, *powers) if len(figure) <= room), "#" * room)
-
-
-def _width(column: Column, roomy: bool) -> int:
-    """Return the cells that a column takes; a roomy line has room for its whole title."""
-    return max(column.width, len(column.title) + 2) if roomy and not column.left else column.width

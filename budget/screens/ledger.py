@@ -143,7 +143,7 @@ class Ledger(Lines):
     def line(self, y: int, width: int) -> Iterable[Piece]:
         """Spell the headings, or a row."""
         if y == 0:
-            return self._titles(width)
+            return self._titles()
         if y == 1:
             return self._units()
         place = self.top + y - HEAD
@@ -158,12 +158,11 @@ class Ledger(Lines):
         self._keep_in_view()
         self.repaint()
 
-    def _titles(self, width: int) -> Iterator[Piece]:
-        roomy = width >= 110
+    def _titles(self) -> Iterator[Piece]:
         yield " " * MARK, "heading"
         for placed in self.placed:
             column = placed.column
-            text = column.title if roomy else column.short
+            text = column.title if len(column.title) < placed.width else column.short
             yield _aligned(clip(text, placed.width - 1), placed), "heading"
 
     def _units(self) -> Iterator[Piece]:

@@ -231,7 +231,7 @@ def _held_by(description: Description, row: Row) -> str | None:
 
 def _hanging_on(description: Description, id_: str, side: str) -> list[Section | Terminal]:
     """Return the sections and terminals that name an ID as what they hang on, on one side."""
-    parts = (*description.sections.values(), *description.terminals.values())
+    parts: list[Section | Terminal] = [*description.sections.values(), *description.terminals.values()]
     return [part for part in parts if (part.from_ if side == "from" else part.to) == id_]
 
 

@@ -75,19 +75,15 @@ def follow(app: BudgetApp) -> None:
         app.choosers["findings"].present(_findings(app), keep=True)
 
 
-def lay_out(app: BudgetApp, width: int, wide: int) -> None:
+def lay_out(app: BudgetApp, width: int) -> None:
     """Put the row detail beside the ledger where there is room, and take it away where there is none."""
-    beside = app.choosers.get("beside")
-    if width < wide:
-        if beside is not None:
-            beside.display = False
-        return
-    if beside is None:
-        beside = app.choosers["beside"] = Chooser(app.colours, "beside", passive=True)
-        app.middle.mount(beside)
-    beside.styles.width = max(width - LEDGER_AT_LEAST - 50, width - LEDGER_AT_LEAST if width < 140 else 56)
-    beside.display = True
-    follow(app)
+    if app.wide and "beside" not in app.choosers:
+        app.choosers["beside"] = Chooser(app.colours, "beside", passive=True)
+        app.middle.mount(app.choosers["beside"])
+    if app.wide:
+        most = width - LEDGER_AT_LEAST
+        app.choosers["beside"].styles.width = max(most - 50, min(most, 56))
+    app.turn_to(app.at)
 
 
 def edit(app: BudgetApp) -> None:
