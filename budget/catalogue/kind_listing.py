@@ -1,5 +1,6 @@
 """Kinds of fittings as blocks of plain text cells; the first line of a block names its columns."""
 
+import textwrap
 from collections.abc import Iterable
 from typing import TypeAlias
 
@@ -8,11 +9,17 @@ from budget.catalogue.provenance import how_known
 
 Block: TypeAlias = list[tuple[str, ...]]
 
+WIDTH = 110
+"""Columns of a paragraph."""
+
 
 def kinds_block(names: Iterable[str]) -> Block:
-    """One line for each kind: what carries it, its parameters, scatter and source; empty where no name is a kind's."""
-    lines = [_overview(entry) for entry in map(kind, names) if entry is not None]
-    return [("by kind", "carried by", "parameters", "scatter", "source", "known"), *lines] if lines else []
+    """A paragraph for each kind: parameters, method, range, source, a check; empty where no name is a kind's."""
+    entries = [entry for entry in map(kind, names) if entry is not None]
+    if not entries:
+        return []
+    heading = f"by kind, in [[section.ID.fitting]] or, without parameters, in fittings: {len(entries)}"
+    return [(heading,), *((line,) for entry in entries for line in _overview(entry))]
 
 
 def kind_blocks(entry: Kind) -> list[Block]:
@@ -32,10 +39,19 @@ def kind_blocks(entry: Kind) -> list[Block]:
     return [about, parameters, checks] if entry.parameters else [about, checks]
 
 
-def _overview(entry: Kind) -> tuple[str, ...]:
-    parameters = ", ".join(parameter.name for parameter in entry.parameters) or "none"
-    known = _known(entry.known_from, entry.confidence)
-    return (entry.name, entry.carries, parameters, entry.scatter or "not stated", entry.source, known)
+def _overview(entry: Kind) -> list[str]:
+    parameters = ", ".join(parameter.name for parameter in entry.parameters) or "no parameters"
+    where, value, within, source, known = _check(entry.checks[0])
+    about = (
+        f"method: {entry.formula}; holds for {entry.validity}",
+        f"source: {entry.source}; {_known(entry.known_from, entry.confidence)}",
+        f"scatter of published data: {entry.scatter or 'not stated'}",
+        f"check: {value} within {within} at {where}; {source}; {known}",
+    )
+    lines = [f"{entry.name} ({entry.carries}): {parameters}"]
+    for text in about:
+        lines += textwrap.wrap(text, WIDTH, initial_indent="    ", subsequent_indent="        ")
+    return lines
 
 
 def _parameter(parameter: Parameter) -> tuple[str, ...]:
