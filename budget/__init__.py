@@ -18,7 +18,7 @@ import os
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from budget.description import Description, Finding, Level, describe, read_text
+from budget.description import Description, Finding, Level, Library, describe, read_text
 from budget.description.edits import (
     AddTable,
     CopyTable,
@@ -34,7 +34,7 @@ from budget.description.edits import (
     apply_to_text,
 )
 from budget.network import Budget, SectionResult, SourceResult, TerminalResult, evaluate
-from budget.storage import ChangedOnDisk, Stamp, StorageError, load_text
+from budget.storage import ChangedOnDisk, Stamp, StorageError, load_text, read_libraries, renew
 from budget.storage import save as write
 
 if TYPE_CHECKING:
@@ -83,23 +83,29 @@ class Run:
     """What was on disk when it was read; None for a text that was not read from a file."""
     path: Path | None = None
     """The file that it was read from."""
+    libraries: tuple[Library, ...] = ()
+    """The libraries that it names."""
 
 
 def read(path: str | Path) -> Run:
     """Read a run's file. Raises StorageError where the file itself can't be read, or holds no text."""
     source, stamp = load_text(Path(path))
-    return Run(source.text, describe(source), stamp, _real(path))
+    libraries = read_libraries(source, Path(path))
+    return Run(source.text, describe(source, libraries), stamp, _real(path), libraries)
 
 
 def reads(text: str) -> Run:
-    """Read a run from text."""
+    """Read a run from text; it has no folder from which a library could be looked for."""
     return Run(text, describe(read_text(text)))
 
 
 def apply(run: Run, edit: Edit) -> Run:
     """Return the run with an edit made to its text, and nothing else changed. Raises EditError."""
-    text = apply_to_text(run.text, edit)
-    return dataclasses.replace(run, text=text, description=describe(read_text(text)))
+    source = read_text(apply_to_text(run.text, edit))
+    libraries = renew(source, run.path, run.libraries)
+    return dataclasses.replace(
+        run, text=source.text, description=describe(source, libraries), libraries=libraries
+    )
 
 
 def save(run: Run, path: str | Path, *, over: bool = False) -> Run:
@@ -110,7 +116,10 @@ def save(run: Run, path: str | Path, *, over: bool = False) -> Run:
     """
     same = _real(path) == run.path
     stamp = write(Path(path), run.text.encode("utf-8"), run.stamp if same and not over else None)
-    return dataclasses.replace(run, stamp=stamp, path=_real(path))
+    source = read_text(run.text)
+    libraries = read_libraries(source, Path(path))
+    description = run.description if libraries == run.libraries else describe(source, libraries)
+    return dataclasses.replace(run, description=description, stamp=stamp, path=_real(path), libraries=libraries)
 
 
 def quantity(value: float, dimension: str) -> pint.Quantity[Any]:

@@ -7,12 +7,12 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path as FilePath
 
-from budget.description import Description, Finding, Level, SourceText, describe, read_text
+from budget.description import Description, Finding, Level, Library, SourceText, describe, read_text
 from budget.description.edits import Edit, apply_to_text
 from budget.description.history import History
 from budget.network import Budget, evaluate
 from budget.report.located import Located, locate
-from budget.storage import Stamp, load_text, save
+from budget.storage import Stamp, load_text, read_libraries, renew, save
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,8 +34,13 @@ class Snapshot:
         return next((level for level in (Level.ERROR, Level.WARNING, Level.NOTE) if level in levels), None)
 
 
-def take(source: SourceText, revision: int = 0, before: Snapshot | None = None) -> Snapshot:
-    """Return all that follows from a text. One that is not TOML keeps what followed from the text before."""
+def take(
+    source: SourceText, revision: int = 0, before: Snapshot | None = None, libraries: tuple[Library, ...] = ()
+) -> Snapshot:
+    """Return all that follows from a text and the libraries that it names.
+
+    One that is not TOML keeps what followed from the text before.
+    """
     if source.data is None and before is not None:
         return dataclasses.replace(
             before,
@@ -44,7 +49,7 @@ def take(source: SourceText, revision: int = 0, before: Snapshot | None = None) 
             revision=revision,
             readable=False,
         )
-    description = describe(source)
+    description = describe(source, libraries)
     budget = evaluate(description)
     findings: Iterable[Finding] = budget.findings if source.data is not None else source.findings
     located = locate(findings, source, description)
@@ -58,7 +63,8 @@ class Document:
         """Start from a text that was read."""
         self.path = path
         """Where it is saved; None for a run that has no file yet."""
-        self.snapshot = take(source)
+        self._libraries = read_libraries(source, path)
+        self.snapshot = take(source, libraries=self._libraries)
         """The present state."""
         self._stamp = stamp
         self._saved = source.text if stamp is not None else None
@@ -86,8 +92,9 @@ class Document:
 
     def preview(self, edit: Edit) -> Snapshot:
         """Return what an edit would lead to; the document stays as it is. Raises EditError."""
-        text = apply_to_text(self.snapshot.text, edit, verify=False)
-        return take(read_text(text), self.snapshot.revision, self.snapshot)
+        source = read_text(apply_to_text(self.snapshot.text, edit, verify=False))
+        libraries = renew(source, self.path, self._libraries)
+        return take(source, self.snapshot.revision, self.snapshot, libraries)
 
     def replace_text(self, text: str, label: str, mark: object = None) -> Snapshot:
         """Put another text in place of the present one, as one step that can be undone."""
@@ -132,6 +139,15 @@ class Document:
         same = target == self.path and not over
         self._stamp = save(target, self.snapshot.text.encode("utf-8"), self._stamp if same else None)
         self.path, self._saved = target, self.snapshot.text
+        self.read_libraries()
+
+    def read_libraries(self) -> Snapshot:
+        """Read the libraries that the run names anew, as they are on disk by now."""
+        libraries = read_libraries(read_text(self.snapshot.text), self.path)
+        if libraries != self._libraries:
+            self._libraries = libraries
+            self._show(self.snapshot.text)
+        return self.snapshot
 
     def _travel(self, history: History) -> None:
         if history is not self._history:
@@ -139,4 +155,6 @@ class Document:
             self._show(history.text)
 
     def _show(self, text: str) -> None:
-        self.snapshot = take(read_text(text), self.snapshot.revision + 1, self.snapshot)
+        source = read_text(text)
+        self._libraries = renew(source, self.path, self._libraries)
+        self.snapshot = take(source, self.snapshot.revision + 1, self.snapshot, self._libraries)

@@ -11,7 +11,7 @@ from budget.description import Level, SourceText, read_bytes
 from budget.description.source import LARGEST_FILE
 from budget.document import Snapshot, take
 from budget.report.located import Located
-from budget.storage import Stamp, StorageError, load
+from budget.storage import Stamp, StorageError, load, read_libraries
 
 STDIN = "-"
 
@@ -47,8 +47,8 @@ def open_run(name: str) -> Opened:
 
 
 def opened(name: str, source: SourceText, stamp: Stamp | None = None) -> Opened:
-    """Compute a run from its text."""
-    snapshot = take(source)
+    """Compute a run from its text, with the libraries that it names beside its file."""
+    snapshot = take(source, libraries=read_libraries(source, None if name == STDIN else Path(name)))
     return Opened(name, snapshot.findings, snapshot if snapshot.readable else None, stamp)
 
 

@@ -2,6 +2,7 @@
 
 from budget.description.codes import CODES, Code
 from budget.description.finding import Finding, Level, Path, dotted, error, note, warning
+from budget.description.libraries import Library
 from budget.description.model import (
     Description,
     Design,
@@ -39,6 +40,7 @@ __all__ = [
     "Geometry",
     "Item",
     "Level",
+    "Library",
     "Limits",
     "Line",
     "OwnFitting",

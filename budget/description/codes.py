@@ -20,6 +20,7 @@ CODES: dict[str, Code] = {
     "nesting": Code("error", "Brackets or tables are nested deeper than any run needs."),
     "syntax": Code("error", "The file is not TOML 1.0; the place is where reading stopped."),
     "format": Code("error", "The first line must say which format the file has."),
+    "library": Code("error", "A library that can't be read, or that lies outside the run's repository."),
     "unknown-table": Code("error", "A table that this format does not have."),
     "unknown-key": Code("error", "A key that its table does not have."),
     "unused-key": Code("warning", "A key that has no effect with this fluid."),

@@ -37,6 +37,8 @@ class Finding:
     message: str
     path: Path = ()
     figures: tuple[Figure, ...] = ()
+    within: Path = ()
+    """The keys within the library that the path names, of what stands there."""
 
     @property
     def owner(self) -> str:

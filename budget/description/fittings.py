@@ -11,7 +11,7 @@ from budget.description.model import FittingCount, FittingUse, Line
 from budget.description.schema import FITTING_USE, Choice, Measure, Number, Spec
 from budget.description.scope import Scope
 from budget.description.values import nearest
-from budget.units import Dimension, Quantity
+from budget.units import Basis, Dimension, Quantity
 
 _DIMENSIONS = {
     "deg": Dimension.ANGLE,
@@ -68,8 +68,13 @@ def _parameters(scope: Scope, found: Kind, entry: Mapping[str, Any], path: Path)
     for parameter in found.parameters:
         value = read.get(parameter.name)
         if parameter.choices and value is not None and value not in parameter.choices:
-            listed = ", ".join(map(str, parameter.choices))
-            scope.reading.wrong("choice", f"{value:g} is not one of {listed}", (*path, parameter.name))
+            listed = ", ".join(f"{choice:g}" for choice in parameter.choices if not isinstance(choice, str))
+            text = f"{parameter.name} {value:g} is not one of the choices; known are {listed}"
+            scope.reading.wrong("choice", text, (*path, parameter.name))
+            read.pop(parameter.name)
+        if isinstance(value, Quantity) and value.basis is not Basis.PLAIN:
+            text = f"{parameter.name} is a head, of which liquid is not known; write a pressure such as 30 Pa"
+            scope.reading.wrong("wrong-dimension", text, (*path, parameter.name))
             read.pop(parameter.name)
     if len(read) < len(given) or not _complete(scope, found, given, path):
         return None
@@ -77,9 +82,9 @@ def _parameters(scope: Scope, found: Kind, entry: Mapping[str, Any], path: Path)
 
 
 def _spec(parameter: Parameter) -> Spec:
-    if parameter.choices:
-        words = tuple(choice for choice in parameter.choices if isinstance(choice, str))
-        return Choice(words) if words else Number()
+    words = tuple(choice for choice in parameter.choices if isinstance(choice, str))
+    if words:
+        return Choice(words)
     dimension = _DIMENSIONS.get(parameter.unit)
     # Beyond its published range a parameter is a finding of its own, not an error.
     return Number() if dimension is None else Measure(dimension)
@@ -114,7 +119,14 @@ def check_leakage(scope: Scope, values: Mapping[str, Any], line: Line | None, pa
 def check_takeoff(scope: Scope, values: Mapping[str, Any], path: Path) -> None:
     """Find a junction that would be counted twice: by `takeoff` and by a tee among the fittings."""
     takeoff = values.get("takeoff", scope.defaults.get("takeoff"))
-    tees = [name for name in values.get("fittings", {}) if name.startswith("tee ")]
-    if takeoff in ("straight", "branch") and tees:
-        text = f"takeoff {takeoff!r} and the fitting {tees[0]!r} would count the junction twice; keep one"
-        scope.reading.wrong("contradiction", text, (*path, "fittings", tees[0]))
+    if takeoff not in ("straight", "branch"):
+        return
+    remedy = "keep one" if "takeoff" in values else 'remove it, or state takeoff = "none" here'
+    places: list[tuple[str, Path]] = [(name, ("fittings", name)) for name in values.get("fittings", {})]
+    entries = enumerate(values.get("fitting", ()))
+    places += [(entry.get("kind", ""), ("fitting", number, "kind")) for number, entry in entries]
+    for name, place in places:
+        if name.startswith("tee "):
+            text = f"takeoff {takeoff!r} and the fitting {name!r} would count the junction twice; {remedy}"
+            scope.reading.wrong("contradiction", text, (*path, *place))
+            return

@@ -49,6 +49,8 @@ def _line(
     if "compression" in values and not flexible:
         reading.wrong("contradiction", "compression belongs to flexible duct; remove it", (*path, "compression"))
     roughness = values.get("roughness", listed.roughness if listed else None)
+    if reading.faulty((*path, "roughness")):
+        roughness = None  # the catalogue's would not be what was meant
     return Line(
         name=name,
         kind="pipe" if kind == "pipe" else "duct",

@@ -77,6 +77,8 @@ class Line:
     flexible: bool = False
     compression: float = 0.0
     source: str = ""
+    origin: str = ""
+    """The library that it stands in, as the run writes its path; "" for the run itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,6 +89,8 @@ class OwnFitting:
     k: float
     source: str = ""
     known_from: str = ""
+    origin: str = ""
+    """The library that it stands in, as the run writes its path; "" for the run itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,6 +149,9 @@ class Device:
     greatest_drop: Quantity | None = None
     holds: Literal["flow", "differential"] | None = None
     set_point: Quantity | None = None
+    source: str = ""
+    origin: str = ""
+    """The library that it stands in, as the run writes its path; "" for the run itself."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -162,6 +169,8 @@ class Run:
     fitting_method: str = "by size"
     junction: str = "tee-crane"
     angle: float = 90.0
+    own_junction: frozenset[str] = frozenset()
+    """Which of junction and angle are stated here, not by the defaults."""
     transition: float | Literal["abrupt"] | None = None
     leakage: str | None = None
     limit_velocity: float | None = None

@@ -149,6 +149,7 @@ def _run(scope: Scope, values: Mapping[str, Any], path: Path) -> Run:
         fitting_method=method,
         junction=values.get("junction", defaults.get("junction", "tee-crane")),
         angle=values.get("angle", defaults.get("angle", 90.0)),
+        own_junction=frozenset(values).intersection(("junction", "angle")),
         transition=values.get("transition"),
         leakage=check_leakage(scope, values, line, path),
         limit_velocity=values.get("limit_velocity"),

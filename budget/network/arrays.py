@@ -76,6 +76,8 @@ class Junctions:
     angle: Floats
     area_ratio: Floats
     """Branch to combined."""
+    unknown: Ints
+    """Legs that meet others and whose takeoff could not be read."""
 
     def __len__(self) -> int:
         """Return the number of junctions."""

@@ -9,10 +9,11 @@ from typing import TypeVar
 from budget.description import Description, Finding
 from budget.network.authority import authorities
 from budget.network.computed import Computed, compute
-from budget.network.duty import source_result
+from budget.network.duty import fluid_result, source_result
 from budget.network.layout import lay_out
+from budget.network.media import design_media
 from budget.network.records import Records
-from budget.network.results import SectionResult, SourceResult, TerminalResult
+from budget.network.results import FluidResult, SectionResult, SourceResult, TerminalResult
 from budget.network.review import accept, review
 
 T = TypeVar("T")
@@ -39,6 +40,12 @@ class Budget:
     @cached_property
     def _records(self) -> Records:
         return Records(self.run, self._authority)
+
+    @cached_property
+    def fluid(self) -> FluidResult | None:
+        """The fluid at the design's own temperatures, which a source may override; None where none is stated."""
+        stated = self.run.layout.description.fluid
+        return fluid_result(design_media(stated)) if stated.name is not None else None
 
     @cached_property
     def sources(self) -> Mapping[str, SourceResult]:

@@ -13,7 +13,7 @@ from budget.network.arrays import DeviceUse
 from budget.network.computed import Computed
 from budget.network.layout import neck_area
 from budget.network.leakage import leakages, source_leakage
-from budget.network.media import pascals
+from budget.network.media import Media, pascals
 from budget.network.results import HEADINGS, FluidResult, SourceResult
 from budget.physics.power import (
     electrical_power,
@@ -89,6 +89,18 @@ def spent_by_heading(run: Computed, source: int) -> dict[str, float]:
     return spent
 
 
+def fluid_result(media: Media) -> FluidResult:
+    """Return the properties of a fluid on both legs."""
+    return FluidResult(
+        media.name,
+        media.supply.density,
+        media.supply.viscosity,
+        media.supply.specific_heat,
+        media.back.density,
+        media.back.viscosity,
+    )
+
+
 def source_result(run: Computed, number: int) -> SourceResult:
     """Return the duty of one source and all that is reported with it."""
     layout, drops = run.layout, run.drops
@@ -117,14 +129,7 @@ def source_result(run: Computed, number: int) -> SourceResult:
     return SourceResult(
         id=source.id,
         kind=kind,
-        fluid=FluidResult(
-            media.name,
-            media.supply.density,
-            media.supply.viscosity,
-            media.supply.specific_heat,
-            media.back.density,
-            media.back.viscosity,
-        ),
+        fluid=fluid_result(media),
         flow=flow,
         mass_flow=mass,
         required=required,

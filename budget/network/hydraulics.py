@@ -133,6 +133,7 @@ def _junction_drops(layout: Layout, leg_mass: Floats) -> tuple[Floats, Floats]:
     """Return the junction loss of each leg, Pa, and its coefficient; the ratios are those of the legs that meet."""
     junctions, legs = layout.junctions, layout.legs
     drop, k = np.zeros(len(legs)), np.zeros(len(legs))
+    drop[junctions.unknown] = k[junctions.unknown] = np.nan
     if not len(junctions):
         return drop, k
     branch, straight, combined = junctions.branch, junctions.straight, junctions.combined

@@ -4,18 +4,21 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
-from budget.description import Description, Finding, Path, Section, Terminal, error, warning
+from budget.description import Description, Finding, Path, Run, Section, Terminal, error, warning
 from budget.network.arrays import AreaChanges, Bools, Ints, Junctions, Legs
 from budget.network.topology import Topology
 from budget.physics.area_changes import contraction, enlargement
 from budget.physics.junctions import FAMILIES
 
 STATED = ("straight", "branch")
+Broken = Mapping[Path, set[str]]
+"""Keys of each table that could not be read."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,38 +32,43 @@ class _Member:
     takeoff: str | None
     own: bool
     """Whether the takeoff is stated by the owner itself, not by the defaults."""
+    broken: bool
+    """Whether it is stated, but could not be read."""
     has_tee: bool
+    run: Run | None
 
     @property
     def place(self) -> Path:
-        return (*self.path, "takeoff") if self.own or self.takeoff is None else ("defaults", "takeoff")
+        return (*self.path, "takeoff")
 
 
 def find_junctions(
-    description: Description, topology: Topology, legs: Legs, used: Bools, findings: list[Finding]
+    description: Description, topology: Topology, legs: Legs, used: Bools, broken: Broken, findings: list[Finding]
 ) -> Junctions:
     """Return the junctions of a run; findings where legs meet and what is stated does not fit, or nothing is."""
     rows: dict[str, list[float]] = defaultdict(list)
-    found: dict[tuple[str, Path], Finding] = {}
-    for parent, members in _meeting(description, topology, used).items():
-        for finding in _doubts(parent, members):
-            found.setdefault((finding.code, finding.path), finding)  # a paired section meets others on both its legs
-        if parent < 0 or len(members) != 2 or {m.takeoff for m in members} in ({"straight"}, {"branch"}):
+    meeting = _meeting(description, topology, used, broken)
+    doubts: dict[tuple[str, Path], Finding] = {}
+    for finding in (*_misplaced(meeting), *_doubts(meeting)):
+        doubts.setdefault((finding.code, finding.path), finding)  # a paired section meets others on both its legs
+    findings += doubts.values()
+    unknown: list[int] = []
+    for parent, members in meeting.items():
+        if parent < 0 or len(members) < 2:
             continue
-        counted = [m for m in members if m.takeoff in STATED and m.leg >= 0]
-        if not counted or any(m.leg < 0 for m in members):
+        unknown += [member.leg for member in members if member.broken and member.leg >= 0]
+        if not _is_junction(members) or not any(member.takeoff in STATED for member in members):
             continue
         first, second = members if members[0].takeoff == "branch" or members[1].takeoff == "straight" else members[::-1]
-        owner = description.terminals[first.id].run if legs.run_out[first.leg] else description.sections[first.id].run
         rows["branch"].append(first.leg)
         rows["straight"].append(second.leg)
         rows["combined"].append(parent)
         rows["branch_counts"].append(first.takeoff == "branch")
         rows["straight_counts"].append(second.takeoff == "straight")
-        rows["family"].append(FAMILIES.index(owner.junction if owner else FAMILIES[0]))
+        rows["family"].append(FAMILIES.index(_stated("junction", first, second)))
         rows["converging"].append(not legs.outward[parent])
-        rows["angle"].append(owner.angle if owner else 90.0)
-    findings += found.values()
+        lost = any(_is_broken(broken, first.path, key) for key in ("junction", "angle"))
+        rows["angle"].append(math.nan if lost else _stated("angle", first, second))
     branch, combined = _whole(rows["branch"]), _whole(rows["combined"])
     return Junctions(
         branch=branch,
@@ -72,79 +80,137 @@ def find_junctions(
         converging=_truth(rows["converging"]),
         angle=np.array(rows["angle"], dtype=np.float64),
         area_ratio=legs.area[branch] / legs.area[combined],
+        unknown=_whole(unknown),
     )
 
 
-def _whole(values: list[float]) -> Ints:
+def _whole(values: Sequence[float]) -> Ints:
     return np.array(values, dtype=np.int64)
 
 
-def _truth(values: list[float]) -> Bools:
+def _truth(values: Sequence[float]) -> Bools:
     return np.array(values, dtype=np.bool_)
 
 
-def _meeting(description: Description, topology: Topology, used: Bools) -> dict[int, list[_Member]]:
+def _is_broken(broken: Broken, path: Path, key: str) -> bool:
+    """Whether a key could not be read, where it stands or among the defaults."""
+    return key in broken.get(path, ()) or ("defaults", key) in broken
+
+
+def _stated(key: str, branch: _Member, straight: _Member) -> Any:
+    """Return family or angle: what the branch itself states, else the straight leg, else the default."""
+    runs = [run for run in (branch.run, straight.run) if run is not None]
+    return getattr(next((run for run in runs if key in run.own_junction), runs[0]), key)
+
+
+def _is_junction(members: Sequence[_Member]) -> bool:
+    """Whether those that meet make a junction: two legs with a size, not both the same part of it."""
+    alike = members[0].takeoff == members[-1].takeoff and members[0].takeoff in STATED
+    return len(members) == 2 and all(member.leg >= 0 for member in members) and not alike
+
+
+_Meeting = Mapping[int, Sequence[_Member]]
+
+
+def _meeting(description: Description, topology: Topology, used: Bools, broken: Broken) -> _Meeting:
     """Return the members that meet at the end of each leg (at -1 - n: of source n), those that carry flow."""
     meeting: dict[int, dict[str, _Member]] = defaultdict(dict)
     for number, leg in enumerate(topology.legs):
         if used[number]:
             at = leg.parent if leg.parent >= 0 else -1 - leg.source
             owner = description.terminals[leg.owner] if leg.run_out else description.sections[leg.owner]
-            meeting[at][leg.owner] = _member(owner, number)
+            meeting[at][leg.owner] = _member(owner, number, broken)
     for ends in (topology.outward, topology.back):
         for id_, end in ends.items():
             if id_ not in topology.run_out_legs:
                 at = end if end >= 0 else -1 - topology.terminal_source[id_]
-                meeting[at][id_] = _member(description.terminals[id_], -1)
+                meeting[at][id_] = _member(description.terminals[id_], -1, broken)
     return {at: list(members.values()) for at, members in meeting.items()}
 
 
-def _member(owner: Section | Terminal, leg: int) -> _Member:
-    tee = owner.run is not None and any(use.name.startswith("tee ") for use in owner.run.fittings)
-    return _Member(owner.id, owner.path, leg, owner.takeoff, owner.takeoff_stated, tee)
+def _member(owner: Section | Terminal, leg: int, broken: Broken) -> _Member:
+    run = owner.run
+    names = [] if run is None else [use.name for use in run.fittings] + [use.kind for use in run.uses]
+    lost = not owner.takeoff_stated and _is_broken(broken, owner.path, "takeoff")
+    return _Member(
+        id=owner.id,
+        path=owner.path,
+        leg=leg,
+        takeoff=None if lost else owner.takeoff,
+        own=owner.takeoff_stated,
+        broken=lost,
+        has_tee=any(name.startswith("tee ") for name in names),
+        run=run,
+    )
 
 
-def _doubts(parent: int, members: list[_Member]) -> Iterator[Finding]:
-    """Find what is stated and does not fit, and what is not stated where it should be."""
-    if parent < 0:
-        yield from _misplaced(members, 'at a source only "none" fits; state "none", and k for a header')
-        return
-    if len(members) == 1:
-        yield from _misplaced(members, "no other leg meets it there; remove it")
-        return
+def _misplaced(meeting: _Meeting) -> Iterator[Finding]:
+    """Find what is stated where nothing meets: on no leg of its owner there is a junction."""
+    meets = {member.id for at, members in meeting.items() for member in members if at >= 0 and len(members) > 1}
+    for at, members in meeting.items():
+        for member in members:
+            if member.own and member.takeoff in STATED and member.id not in meets:
+                remedy = (
+                    'at a source only "none" fits; state "none", and k for a header'
+                    if at < 0
+                    else "no other leg meets it there; remove it"
+                )
+                yield error("takeoff", f"takeoff {member.takeoff!r} does not fit: {remedy}", member.place)
+
+
+def _doubts(meeting: _Meeting) -> Iterator[Finding]:
+    """Find what is stated of legs that meet and does not fit, and what is not stated where it should be."""
+    for at, members in meeting.items():
+        if at < 0 or len(members) < 2:
+            continue
+        fits = _is_junction(members)
+        for member in members:
+            stated = member.takeoff in STATED
+            if stated and member.own and not fits:
+                text = f"takeoff {member.takeoff!r} does not fit: {_why(members)}"
+                yield error("takeoff", text, member.place)
+            elif (member.takeoff is None or (stated and not fits)) and not (member.has_tee or member.broken):
+                yield warning(
+                    "junction",
+                    'legs meet and the junction is not stated, its loss is not counted; state takeoff, or "none"',
+                    member.place,
+                )
+        yield from _contradictions(members)
+
+
+def _why(members: Sequence[_Member]) -> str:
+    """Say why members that meet make no junction, and what to do."""
     if len(members) > 2:
-        text = f'{len(members)} legs meet, a junction has two; state "none", and k as an item'
-        yield from _misplaced(members, text)
-    elif {m.takeoff for m in members} in ({"straight"}, {"branch"}):
-        text = 'of two legs one is the branch and one goes straight on; of a symmetrical split state "none", and k'
-        yield from _misplaced(members, text)
-    elif any(m.leg < 0 for m in members):
-        name = next(m.id for m in members if m.leg < 0)
-        yield from _misplaced(members, f"{name!r} meets it without a size, which a junction needs; give it one")
-    for member in members:
-        counted = len(members) == 2 and all(m.leg >= 0 for m in members)
-        unstated = member.takeoff is None or (not member.own and member.takeoff in STATED and not counted)
-        if unstated and not member.has_tee:
-            yield warning(
-                "junction",
-                'legs meet and the junction is not stated, its loss is not counted; state takeoff, or "none"',
-                (*member.path, "takeoff"),
-            )
+        return f'{len(members)} legs meet, a junction has two; state "none", and k as an item'
+    sizeless = [member.id for member in members if member.leg < 0]
+    if sizeless:
+        return f"{sizeless[0]!r} meets it without a size, which a junction needs; give it one"
+    return 'of two legs one is the branch and one goes straight on; of a symmetrical split state "none", and k'
 
 
-def _misplaced(members: list[_Member], remedy: str) -> Iterator[Finding]:
-    for member in members:
-        if member.own and member.takeoff in STATED:
-            yield error("takeoff", f"takeoff {member.takeoff!r} does not fit: {remedy}", member.place)
+def _contradictions(members: Sequence[_Member]) -> Iterator[Finding]:
+    """Find a family or an angle that both legs of a junction state, and not the same."""
+    runs = [(member, member.run) for member in members if member.run is not None]
+    if not _is_junction(members) or len(runs) != 2:
+        return
+    (first, one), (second, other) = runs
+    for key in ("junction", "angle"):
+        if key in one.own_junction & other.own_junction and getattr(one, key) != getattr(other, key):
+            text = f"{key} is not that of {first.id!r}, which it meets; a junction has one, state it on the branch"
+            yield error("takeoff", text, (*second.path, key))
 
 
-def find_area_changes(description: Description, topology: Topology, legs: Legs, findings: list[Finding]) -> AreaChanges:
+def find_area_changes(
+    description: Description, topology: Topology, legs: Legs, broken: Broken, findings: list[Finding]
+) -> AreaChanges:
     """Return the change of area that each leg states toward its source; abrupt or by its included angle."""
     count = len(legs)
     k, area = np.zeros(count), np.ones(count)
     for number, leg in enumerate(topology.legs):
         owner = description.terminals[leg.owner] if leg.run_out else description.sections[leg.owner]
         stated = owner.run.transition if owner.run else None
+        if "transition" in broken.get(owner.path, ()):
+            k[number] = math.nan
         if stated is None:
             continue
         if leg.parent < 0:
@@ -153,11 +219,11 @@ def find_area_changes(description: Description, topology: Topology, legs: Legs, 
                 findings.append(error("takeoff", text, (*owner.path, "transition")))
             continue
         own, other = float(legs.area[number]), float(legs.area[leg.parent])
-        small, large = min(own, other), max(own, other)
-        area[number] = small
-        if math.isnan(small):
+        if math.isnan(own) or math.isnan(other):
             k[number] = math.nan
             continue
+        small, large = sorted((own, other))
+        area[number] = small
         widening = (own > other) == leg.outward
         angle = 180.0 if stated == "abrupt" else float(stated)
         change = enlargement if widening else contraction

@@ -49,8 +49,8 @@ def lay_out(description: Description) -> Layout:
         topology,
         tuple(media),
         legs,
-        find_junctions(description, topology, legs, end > start, findings),
-        find_area_changes(description, topology, legs, findings),
+        find_junctions(description, topology, legs, end > start, broken, findings),
+        find_area_changes(description, topology, legs, broken, findings),
         terminals,
         items,
         devices,
@@ -65,8 +65,9 @@ def lay_out(description: Description) -> Layout:
 def _broken(description: Description) -> Broken:
     broken: Broken = defaultdict(set)
     for finding in description.findings:
-        if finding.level is Level.ERROR and finding.code != "later" and len(finding.path) > 1:
-            broken[finding.path[:2]].add(str(finding.path[2]) if len(finding.path) > 2 else "")
+        path = finding.within or finding.path
+        if finding.level is Level.ERROR and finding.code != "later" and len(path) > 1:
+            broken[path[:2]].add(str(path[2]) if len(path) > 2 else "")
     return broken
 
 

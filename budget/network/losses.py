@@ -34,8 +34,9 @@ def _counted(description: Description, run: Run, use: FittingCount, findings: li
     """Return a fitting that is counted by its name: one's own, or of the catalogue by the run's method."""
     own = description.fittings.get(use.name)
     if own is not None:
-        known_from = own.known_from or "stated in the run"
-        return Loss(use.name, use.count, own.k, 0.0, 0.0, "own", own.source, known_from, IN_SECTION)
+        known_from = own.known_from or ("stated in a library" if own.origin else "stated in the run")
+        source = ", ".join(filter(None, (own.source, own.origin and f"from {own.origin}")))
+        return Loss(use.name, use.count, own.k, 0.0, 0.0, "own", source, known_from, IN_SECTION)
     if run.geometry is None:
         return _unknown(use.name, use.count)
     bore = hydraulic_diameter(run.geometry)

@@ -53,10 +53,18 @@ def media_of(description: Description) -> tuple[list[Media], list[Finding]]:
     return media, list(dict.fromkeys(findings))
 
 
-def leg_temperatures(fluid: Fluid, source: Source) -> tuple[float, float]:
-    """Return supply and return temperature of a source, K; NaN where none is stated."""
-    supply = source.temperature if source.temperature is not None else fluid.temperature
-    back = source.return_temperature if source.return_temperature is not None else fluid.return_temperature
+def design_media(fluid: Fluid) -> Media:
+    """Return the fluid on both legs at the design's own temperatures, which a source may override."""
+    supply, back = leg_temperatures(fluid)
+    return Media(fluid.name or "", medium_at(fluid, supply), medium_at(fluid, back))
+
+
+def leg_temperatures(fluid: Fluid, source: Source | None = None) -> tuple[float, float]:
+    """Return supply and return temperature, of a source where one is given, K; NaN where none is stated."""
+    supply, back = fluid.temperature, fluid.return_temperature
+    if source is not None:
+        supply = source.temperature if source.temperature is not None else supply
+        back = source.return_temperature if source.return_temperature is not None else back
     if supply is None:
         supply = back if back is not None else math.nan
     return supply, supply if back is None else back

@@ -115,7 +115,7 @@ class Records:
             height=geometry.height if geometry and geometry.shape != "round" else None,
             hydraulic_diameter=float(arrays.diameter[first]),
             area=float(arrays.area[first]),
-            k_total=sum(loss.count * loss.k for loss in self._losses(first)) if arrays.losses[first] else 0.0,
+            k_total=self._k_total(first),
             friction=friction,
             fittings=fittings,
             junction=junction,
@@ -126,6 +126,11 @@ class Records:
             leakage=_or_none(float(np.sum(self._leakage[both]))),
             legs=tuple(self._leg(leg) for leg in legs),
         )
+
+    def _k_total(self, leg: int) -> float:
+        if math.isnan(self._run.layout.legs.constant[leg]):
+            return math.nan  # one of the fittings could not be read
+        return math.fsum(loss.count * loss.k for loss in self._losses(leg))
 
     def _leg(self, leg: int) -> LegResult:
         drops = self._run.drops
@@ -201,7 +206,7 @@ class Records:
                     "by angle",
                     source,
                     known_from,
-                    "velocity in the smaller area",
+                    IN_SMALLER,
                     velocity,
                 )
             )
@@ -244,6 +249,7 @@ class Records:
             signal=adjusted.signal,
             holds=use.device.holds,
             set_point=float(run.circuits.required[use.zone]) if use.zone >= 0 else None,
+            origin=use.device.origin,
         )
 
 

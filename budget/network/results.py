@@ -79,6 +79,8 @@ class DeviceResult:
     signal: float | None
     holds: str | None
     set_point: float | None = None
+    origin: str = ""
+    """The library that it stands in; "" for the run itself."""
 
 
 @dataclass(frozen=True, slots=True)

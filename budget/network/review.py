@@ -18,6 +18,11 @@ from budget.physics.shapes import FLEXIBLE_COMPRESSION, FLEXIBLE_DIAMETERS
 SMALL = 1e-3
 """Pa below which a remaining pressure is rounding."""
 
+SAME_AREA = 0.9
+"""Ratio of areas above which two sizes count as the same one in two lines."""
+SMALLER = "velocity in the smaller"
+"""How the catalogue's changes of area say to which velocity they refer."""
+
 Authorities = dict[int, tuple[float | None, float | None]]
 
 
@@ -209,39 +214,45 @@ def _junctions(run: Computed) -> Iterator[Finding]:
     within = in_range(
         junctions.family, junctions.converging, np.zeros(len(junctions)), junctions.area_ratio, junctions.angle
     )
-    known = ~np.isnan(junctions.area_ratio)
-    for number in np.flatnonzero(known & ~within).tolist():
-        owner, _ = _owner(run, int(junctions.branch[number]))
+    known = ~np.isnan(junctions.area_ratio) & ~np.isnan(junctions.angle)
+    # Both legs of a paired section have the same ratio.
+    beyond = {_owner(run, int(junctions.branch[n]))[0].path: n for n in np.flatnonzero(known & ~within).tolist()}
+    for path, number in beyond.items():
         text = (
             f"area ratio {float(junctions.area_ratio[number]):.2f} of branch to combined is outside what the junction "
             "was published for, up to 1; the nearest is used"
         )
-        yield warning("junction-range", text, (*owner.path, "takeoff"))
+        yield warning("junction-range", text, (*path, "takeoff"))
     gaining = (run.drops.junction < 0.0) & run.circuits.leg_index
     for leg in np.flatnonzero(gaining).tolist():
         owner, _ = _owner(run, leg)
         text = (
-            f"its junction coefficient is {float(run.drops.junction_k[leg]):.3f}: the other flow draws this one along, "
+            f"the junction coefficient of its {run.layout.topology.legs[leg].side} leg is "
+            f"{float(run.drops.junction_k[leg]):.3f}: the other flow draws this one along, "
             "a gain of {0} that the index circuit counts"
         )
         yield note("junction-gain", text, (*owner.path, "takeoff"), (-float(run.drops.junction[leg]), "pressure"))
 
 
 def _area_changes(run: Computed) -> Iterator[Finding]:
-    """Offer a transition where a section goes straight on in another size and states none."""
+    """Offer a transition where a section goes straight on in another size and nothing counts the change.
+
+    A reducer or transition among the fittings counts it, and a branch has its area in its junction.
+    """
     layout, legs = run.layout, run.layout.legs
-    if not len(legs):
-        return
-    meeting = np.bincount(legs.parent[(legs.parent >= 0) & (layout.end > layout.start)], minlength=len(legs))
+    used = layout.end > layout.start
+    meeting = np.bincount(legs.parent[(legs.parent >= 0) & used], minlength=len(legs))
     for ends in (layout.terminals.out, layout.terminals.back):
-        on_leg = (ends >= 0) & ~legs.run_out[ends]
-        meeting += np.bincount(ends[on_leg], minlength=len(legs))
-    for leg in np.flatnonzero((legs.parent >= 0) & legs.first & (layout.end > layout.start)).tolist():
+        sizeless = [end for end in ends.tolist() if end >= 0 and not legs.run_out[end]]
+        meeting += np.bincount(np.array(sizeless, dtype=np.int64), minlength=len(legs))
+    straight_on = (legs.parent >= 0) & (meeting[legs.parent] == 1) if len(legs) else legs.first
+    straight_on[layout.junctions.straight[layout.junctions.straight_counts]] = True
+    for leg in np.flatnonzero(straight_on & legs.first & used).tolist():
         owner, built = _owner(run, leg)
         parent = int(legs.parent[leg])
         own, other = float(legs.area[leg]), float(legs.area[parent])
-        straight_on = meeting[parent] == 1 or owner.takeoff == "straight"
-        if built.transition is None and straight_on and abs(own - other) > 1e-9 * other:
+        counted = any(loss.reference.startswith(SMALLER) for loss in (*legs.losses[leg], *legs.losses[parent]))
+        if built.transition is None and not counted and min(own, other) < SAME_AREA * max(own, other):
             toward = layout.topology.legs[parent].owner
             text = (
                 f"its size differs from that of {_plain(repr(toward))} and no transition is stated, its loss is not "

@@ -12,7 +12,6 @@ from budget.description import Description
 from budget.network import (
     Budget,
     DeviceResult,
-    FluidResult,
     RunResult,
     SectionResult,
     SourceResult,
@@ -34,13 +33,12 @@ def results(
     program = {"version": version, "catalogue": CATALOGUE_VERSION}
     if budget is None:
         return {"format": FORMAT, "program": program, "file": file, "findings": shown}
-    design_fluid = next(iter(budget.sources.values())).fluid if budget.sources else None
     found = {
         "format": FORMAT,
         "program": program,
         "file": file,
         "design": dataclasses.asdict(description.design),
-        "fluid": _design_fluid(description, budget, design_fluid),
+        "fluid": None if budget.fluid is None else dataclasses.asdict(budget.fluid),
         "sources": {id_: _source(description, result) for id_, result in budget.sources.items()},
         "sections": {id_: _section(result) for id_, result in budget.sections.items()},
         "terminals": {id_: _terminal(result) for id_, result in budget.terminals.items()},
@@ -58,14 +56,6 @@ def _clean(value: Any) -> Any:
     if isinstance(value, list | tuple):
         return [_clean(inner) for inner in value]
     return value
-
-
-def _design_fluid(description: Description, budget: Budget, fallback: FluidResult | None) -> dict[str, Any] | None:
-    """Return the fluid of the design: that of a source that does not override it, where there is one."""
-    for id_, result in budget.sources.items():
-        if not _overrides(description, id_):
-            return dataclasses.asdict(result.fluid)
-    return dataclasses.asdict(fallback) if fallback is not None else None
 
 
 def _overrides(description: Description, id_: str) -> bool:

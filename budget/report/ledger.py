@@ -275,7 +275,27 @@ def devices(budget: Budget, figures: Figures) -> list[str]:
             plain_number(device.setting),
             figures.pressure(device.signal, density),
         ))  # fmt: skip
-    return [*table(columns, rows), *wrapped(_LEGEND_OF_DEVICES, "  ", "  ")] if rows else []
+    if not rows:
+        return []
+    origins = dict.fromkeys((device.name, device.origin) for _, device, _ in _devices(budget) if device.origin)
+    said = [line for name, origin in origins for line in wrapped(f"{plain(name)}: from {plain(origin)}", "  ", "    ")]
+    return [*table(columns, rows), *wrapped(_LEGEND_OF_DEVICES, "  ", "  "), *said]
+
+
+def libraries(description: Description) -> list[str]:
+    """Return every library with what the run takes from it."""
+    shared: dict[str, list[str]] = {}
+    for (kind, name), line in description.lines.items():
+        shared.setdefault(line.origin, []).append(f"{kind} {plain(name)}")
+    for what, entries in (("fitting", description.fittings), ("device", description.devices)):
+        for name, entry in entries.items():
+            shared.setdefault(entry.origin, []).append(f"{what} {plain(name)}")
+    return [
+        line
+        for origin, names in shared.items()
+        if origin
+        for line in wrapped(f"{plain(origin)}: {', '.join(names)}", "  ", "    ")
+    ]
 
 
 def _devices(budget: Budget) -> Iterator[tuple[str, DeviceResult, float]]:

@@ -14,7 +14,7 @@ from budget.description.edits import Edit
 from budget.description.finding import Path
 from budget.document import Document, Snapshot
 from budget.report.figures import Figures
-from budget.screens import entering, turning
+from budget.screens import choosing, entering, turning
 from budget.screens.actions import Place
 from budget.screens.budget_line import BudgetLine
 from budget.screens.chooser import Chooser, Offer
@@ -272,7 +272,7 @@ class BudgetApp(App[int], inherit_bindings=False):
                 entering.press(self, self.entry, field)
             return True
         if self.at == "list":
-            return turning.write(self, event.key, event.character)
+            return choosing.write(self, event.key, event.character)
         return False
 
 

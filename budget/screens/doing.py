@@ -6,7 +6,7 @@ from collections.abc import Callable, Mapping
 from functools import partial
 from typing import TYPE_CHECKING
 
-from budget.screens import changing, entering, moving, shaping, turning
+from budget.screens import changing, choosing, entering, moving, shaping, turning
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -39,12 +39,12 @@ DOINGS: Mapping[str, Doing] = {
     "accept": entering.accept,
     "accept_next": lambda app: entering.accept_and_move(app, 1),
     "accept_previous": lambda app: entering.accept_and_move(app, -1),
-    "leave": turning.leave,
-    "pick": turning.pick,
-    "pick_size": lambda app: turning.pick_key(app, "size"),
-    "pick_fitting": lambda app: turning.pick_key(app, "fittings"),
-    "pick_instead": turning.pick_instead,
-    "choose": turning.choose,
+    "leave": choosing.leave,
+    "pick": choosing.pick,
+    "pick_size": lambda app: choosing.pick_key(app, "size"),
+    "pick_fitting": lambda app: choosing.pick_key(app, "fittings"),
+    "pick_instead": choosing.pick_instead,
+    "choose": choosing.choose,
     "add_after": lambda app: changing.reshape(app, shaping.add_section, "after"),
     "add_before": lambda app: changing.reshape(app, shaping.add_section, "before"),
     "add_beneath": lambda app: changing.reshape(app, shaping.add_section, "beneath"),
@@ -63,7 +63,7 @@ DOINGS: Mapping[str, Doing] = {
     "show_findings": turning.show_findings,
     "show_text": turning.show_text,
     "show_manual": turning.show_manual,
-    "commands": turning.show_commands,
+    "commands": choosing.show_commands,
     "back": turning.back,
     "apply_text": turning.apply_text,
     "undo_text": turning.undo_text,

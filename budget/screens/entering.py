@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 from typing import TYPE_CHECKING
 
 from budget.description.edits import Edit, EditError, SetValue, Unset, rename_everywhere
@@ -20,6 +22,10 @@ Attempt = Callable[[str], Snapshot | None]
 """Tries a text out; returns what the run would be, None for no change; raises WritingError or EditError."""
 
 
+SLOW, PAUSE = 0.15, 0.25
+"""Seconds: a trial that takes longer waits until so long no key came."""
+
+
 @dataclass(slots=True)
 class Entry:
     """A field that is being written in: what it is for, how a text is tried out, and what Enter does with it."""
@@ -31,6 +37,9 @@ class Entry:
     in_cell: bool = False
     problem: str = ""
     path: Path = ()
+    slow: bool = False
+    tried: str | None = None
+    """The last text that could stand."""
 
 
 def begin(app: BudgetApp, entry: Entry) -> None:
@@ -44,25 +53,31 @@ def begin(app: BudgetApp, entry: Entry) -> None:
 def press(app: BudgetApp, entry: Entry, field: Field) -> None:
     """Take a keystroke: the value is tried out, and the budget runs along with every valid one.
 
-    Of keys that came faster than a large run is computed only the last is tried out.
+    Where a run is so large that this takes a while, it waits for a pause in the typing.
     """
     typed = field.text != entry.field.text
     entry.field = field
     _paint(app, entry)
     if typed:
-        app.call_later(_try_out, app, entry, field.text)
+        try_out = partial(_try_out, app, entry, field.text)
+        if entry.slow:
+            app.set_timer(PAUSE, try_out)
+        else:
+            app.call_later(try_out)
 
 
 def _try_out(app: BudgetApp, entry: Entry, text: str) -> None:
     if app.entry is not entry or entry.field.text != text:
         return
+    begun = time.perf_counter()
     try:
         tried = entry.attempt(text)
-        entry.problem = ""
+        entry.problem, entry.tried = "", text
     except (WritingError, EditError) as wrong:
         tried, entry.problem = None, plain(str(wrong))
     app.show(tried or app.document.snapshot, before=app.document.snapshot)
     _paint(app, entry)
+    entry.slow = time.perf_counter() - begun > SLOW
 
 
 def accept(app: BudgetApp) -> bool:
@@ -72,7 +87,8 @@ def accept(app: BudgetApp) -> bool:
         return True
     text = entry.field.text
     try:
-        entry.attempt(text)
+        if text != entry.tried:
+            entry.attempt(text)
         end(app)
         entry.accept(text)
     except (WritingError, EditError) as wrong:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-import tomllib
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from itertools import pairwise
@@ -13,7 +12,7 @@ from budget.description.edits import AddTable, CopyTable, Edit, MoveTable, Remov
 from budget.description.finding import Path
 from budget.description.model import Description, Section, Terminal
 from budget.screens.rows import Row, beneath
-from budget.screens.writing import index_of, is_stated, stated_keys
+from budget.screens.writing import copied, index_of, last_table, start_of, stated_keys
 
 Where = Literal["after", "before", "beneath"]
 
@@ -57,7 +56,7 @@ def add_section(text: str, description: Description, rows: tuple[Row, ...], plac
     if not parent:
         raise ShapingError(f"{row.id} hangs on nothing; write what it hangs on first")
     model = _section_model(description, row)
-    values = {side: parent, **_copied(text, model, _COPIED_TO_A_SECTION)}
+    values = {side: parent, **copied(text, model, _COPIED_TO_A_SECTION)}
     if not ({"size", "bore"} & set(values)):
         values["length"] = values.get("length", 1)
     hung: list[Edit] = []
@@ -65,7 +64,7 @@ def add_section(text: str, description: Description, rows: tuple[Row, ...], plac
         hung = [SetValue((*row.path, side), id_)]
     elif where == "after":
         hung = [SetValue((*part.path, side), id_) for part in _hanging_on(description, row.id, side)]
-    anchor = row.path if where == "before" else _last_path(text, row.path)
+    anchor = row.path if where == "before" else last_table(text, row.path)
     added = AddTable(path, values, after=None if where == "before" else anchor)
     moved = [MoveTable(path, before=row.path)] if where == "before" else []
     return Change(Several((added, *moved, *hung)), f"add section {id_}", path)
@@ -91,12 +90,12 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
     path: Path = ("terminal", id_)
     values: dict[str, Any] = {side: parent}
     if sibling is not None:
-        values |= _copied(text, sibling.path, _COPIED_TO_A_TERMINAL)
+        values |= copied(text, sibling.path, _COPIED_TO_A_TERMINAL)
         if sibling.to is not None and sibling.from_ is not None and side == "from":
             values["to"] = sibling.to
     if not {"flow", "load"} & set(values):
         values |= _first_terminal(description)
-    after = _last_path(text, sibling.path if sibling else row.path)
+    after = last_table(text, sibling.path if sibling else row.path)
     return Change(AddTable(path, values, after=after), f"add terminal {id_}", path)
 
 
@@ -179,7 +178,7 @@ def shift(text: str, description: Description, rows: tuple[Row, ...], place: int
         edits: tuple[Edit, ...] = tuple(MoveTable(part.path, before=other.path) for part in branch)
     else:
         behind = (other, *beneath(rows, rows.index(other)))
-        anchor = max((part.path for part in behind), key=lambda path: _start(text, path))
+        anchor = max((part.path for part in behind), key=lambda path: start_of(text, path))
         chain = [anchor, *(part.path for part in branch)]
         edits = tuple(MoveTable(path, after=before) for before, path in pairwise(chain))
     return Change(Several(edits), f"move {row.id} {'up' if step < 0 else 'down'}", row.path)
@@ -278,34 +277,10 @@ def _first_terminal(description: Description) -> dict[str, Any]:
     return {"flow": "50 L/s", "drop": "25 Pa"} if gas else {"flow": "0.1 L/s", "drop": "10 kPa"}
 
 
-def _copied(text: str, table: Path | None, keys: tuple[str, ...]) -> dict[str, Any]:
-    """Return some of the values of a table, as they are written."""
-    if table is None:
-        return {}
-    index = index_of(text)
-    found: dict[str, Any] = {}
-    for key in keys:
-        span = index.value((*table, key))
-        if span is not None:
-            found[key] = tomllib.loads(f"x = {text[span.start : span.end]}")["x"]
-    return found
-
-
-def _last_path(text: str, table: Path) -> Path:
-    """Return the last table that belongs to a part: its own, or the last of its items and fittings."""
-    tables = [path for path in index_of(text).tables() if path[:2] == table[:2]]
-    return tables[-1] if tables else table
-
-
-def _start(text: str, path: Path) -> int:
-    header = index_of(text).header(path)
-    return header.start if header else 0
-
-
 def _duplicate_item(text: str, row: Row) -> Change:
     array = row.path[:3]
     count = sum(path[:3] == array and len(path) == 4 for path in index_of(text).tables())
-    values = _copied(text, row.path, stated_keys(text, row.path))
+    values = copied(text, row.path, stated_keys(text, row.path))
     path = (*array, count)
     return Change(AddTable(array, values, after=row.path, array=True), f"duplicate an item of {row.id}", path)
 
@@ -315,7 +290,7 @@ def _without_in_cases(text: str, gone: set[str]) -> list[Edit]:
     edits: list[Edit] = []
     index = index_of(text)
     for case in (path for path in index.tables() if path[:1] == ("case",) and len(path) == 2):
-        data: Mapping[str, Any] = _copied(text, case, ("off", "share", "stroke"))
+        data: Mapping[str, Any] = copied(text, case, ("off", "share", "stroke"))
         for key, value in data.items():
             kept = [i for i in value if i not in gone]
             if len(kept) == len(value):
@@ -324,18 +299,3 @@ def _without_in_cases(text: str, gone: set[str]) -> list[Edit]:
             edits.append(SetValue((*case, key), left))
     return edits
 
-
-__all__ = [
-    "Change",
-    "ShapingError",
-    "Where",
-    "add_section",
-    "add_terminal",
-    "delete",
-    "duplicate",
-    "is_stated",
-    "new_id",
-    "parents_for",
-    "rehang",
-    "shift",
-]  # fmt: skip

@@ -104,6 +104,31 @@ def stated_keys(text: str, table: Path) -> tuple[str, ...]:
     return tuple(dict.fromkeys(keys))
 
 
+def copied(text: str, table: Path | None, keys: tuple[str, ...]) -> dict[str, Any]:
+    """Return some of the values that a table states, of the kinds that they are written in."""
+    if table is None:
+        return {}
+    index = index_of(text)
+    found: dict[str, Any] = {}
+    for key in keys:
+        span = index.value((*table, key))
+        if span is not None:
+            found[key] = tomllib.loads(f"x = {text[span.start : span.end]}")["x"]
+    return found
+
+
+def last_table(text: str, table: Path) -> Path:
+    """Return the last table that belongs to a part: its own, or the last of its items and fittings."""
+    tables = [path for path in index_of(text).tables() if path[:2] == table[:2]]
+    return tables[-1] if tables else table
+
+
+def start_of(text: str, path: Path) -> int:
+    """Return where the header of a table begins."""
+    header = index_of(text).header(path)
+    return header.start if header else 0
+
+
 def value_of(typed: str, path: Path, before: str) -> Any:
     """Return the value that a typed text means at a key, of the kind that the key takes.
 

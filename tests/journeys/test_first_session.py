@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+import json
+import subprocess
+import sys
 import tomllib
 from pathlib import Path
+from typing import Any
 
 from budget.document import Document
 from budget.report.figures import Figures
@@ -22,6 +26,14 @@ def required(text: str) -> str:
 def index(text: str) -> str:
     """Name the index terminal of a text's source."""
     return Document.of(text).snapshot.budget.sources["P1"].index[0]
+
+
+def checked(file: Path) -> dict[str, Any]:
+    """Return what `budget check --json` says of a file."""
+    command = [sys.executable, "-c", "import sys; from budget.commands import main; sys.exit(main())"]
+    ended = subprocess.run([*command, "check", str(file), "--json"], capture_output=True, text=True, check=False)
+    found: dict[str, Any] = json.loads(ended.stdout)
+    return found
 
 
 def test_a_first_session(tmp_path: Path) -> None:
@@ -68,13 +80,18 @@ def test_a_first_session(tmp_path: Path) -> None:
         assert " saved" in session.lines[0]
         assert "not saved" not in session.lines[0]
         session.press("U", "ctrl+s")
-        session.wait_for("saved")
+        session.wait_for("saved /")
+        shown = session.lines[1].split()
         session.send("ctrl+q")
         assert session.wait_for_end() == 0
 
     saved = file.read_text()
     assert saved == changed
     assert tomllib.loads(saved)["section"]["B1"]["length"] == 30
+    results = checked(file)["sources"]["P1"]
+    for name in ("required", "reserve", "duty", "available"):
+        assert shown[shown.index(name) + 1] == f"{results[name] / 1000.0:.2f}"
+    assert shown[shown.index("hand") + 1].rstrip("!") == f"{results['in_hand'] / 1000.0:.2f}"
     assert sum(a != b for a, b in zip(saved.splitlines(), SMALL.splitlines(), strict=True)) == 1
 
 

@@ -344,7 +344,7 @@ def test_the_same_run_in_si_and_in_ip_gives_the_same(size: dict[str, float]) -> 
 NULLABLE = {
     *("available", "in_hand", "discharge_required", "suction_required", "static_pressure", "external_total"),
     *("external_static", "shaft_power", "electrical_power", "sfp", "bore", "width", "height", "differential"),
-    *("authority", "authority_low", "device", "run_out", "kv", "k", "setting", "signal", "specific_heat"),
+    *("authority", "authority_low", "device", "run_out", "kv", "k", "setting", "signal", "specific_heat", "leakage"),
 }
 
 

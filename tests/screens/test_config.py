@@ -1,5 +1,7 @@
 """The user's settings: every mistake is told, and the app opens all the same."""
 
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -103,3 +105,9 @@ def test_keys_are_spelled_for_people() -> None:
     assert spelled("shift+up") == "Shift+Up"
     assert known_key("/") == "slash"
     assert known_key("shift+a") is None
+
+
+def test_the_config_is_read_without_the_toolkit() -> None:
+    code = "import sys; from budget.screens.config import load_config; load_config(); print('textual' in sys.modules)"
+    ended = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, timeout=30, check=True)
+    assert ended.stdout.strip() == "False"
