@@ -13,6 +13,7 @@ from budget.description import Description, describe, read_bytes
 from budget.network import Budget, evaluate
 from budget.report.json import results
 from budget.report.located import Located, locate
+from budget.storage import read_libraries
 
 FOLDER = Path(__file__).parents[1] / "examples"
 
@@ -44,8 +45,9 @@ SOUND = [name for name in FINDINGS if name != "faulty-cottage"]
 
 
 def load(name: str) -> tuple[Description, Budget, tuple[Located, ...]]:
-    source = read_bytes((FOLDER / f"{name}.toml").read_bytes())
-    description = describe(source)
+    path = FOLDER / f"{name}.toml"
+    source = read_bytes(path.read_bytes())
+    description = describe(source, read_libraries(source, path))
     budget = evaluate(description)
     return description, budget, locate(budget.findings, source, description)
 
@@ -71,7 +73,18 @@ def test_an_example_finds_what_it_is_meant_to_find(name: str) -> None:
 
 @pytest.mark.parametrize("name", FINDINGS)
 def test_an_example_opens_with_a_comment_that_says_what_it_shows(name: str) -> None:
-    text = (FOLDER / f"{name}.toml").read_text(encoding="utf-8")
+    assert_well_written((FOLDER / f"{name}.toml").read_text(encoding="utf-8"))
+
+
+def test_a_library_among_the_examples_is_in_use() -> None:
+    assert_well_written((FOLDER / "office" / "valves.toml").read_text(encoding="utf-8"))
+    description, _, _ = load("three-floor-heating")
+    taken = {device.name for device in description.devices.values() if device.origin == "office/valves.toml"}
+    assert taken == {"PIV 15", "PIV 20"}
+    assert taken < {terminal.balance for terminal in description.terminals.values()}
+
+
+def assert_well_written(text: str) -> None:
     assert text.startswith("# ")
     assert text.isascii()
     assert text.endswith("\n")

@@ -5,6 +5,7 @@ text as it is in the file, CRLF included, so a splice at a span changes nothing 
 line and a column.
 """
 
+import re
 from bisect import bisect_right
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -19,7 +20,6 @@ from budget.description.scan import (
     Scan,
     SpanError,
     Table,
-    line_and_column,
     line_start,
     look_into,
     look_into_around,
@@ -137,7 +137,12 @@ class SpanIndex:
 
     def line_and_column(self, offset: int) -> tuple[int, int]:
         """Return line and column, from 1, of a character."""
-        return line_and_column(self.text, offset)
+        line = bisect_right(self._line_starts, offset)
+        return line, offset - self._line_starts[line - 1] + 1
+
+    @cached_property
+    def _line_starts(self) -> list[int]:
+        return [0, *(found.end() for found in re.finditer("\n", self.text))]
 
     def path_at(self, offset: int) -> Path:
         """Return the path of what stands at a character: a value, a key, else the table around it."""
