@@ -12,7 +12,7 @@ from typing import Any
 from budget.commands.dispatch import OK, REFUSED, say
 from budget.commands.opening import STDIN, Opened, open_run, opened
 from budget.description import Level, Path, read_text
-from budget.description.edits import Edit, EditError, apply_to_text, dotted
+from budget.description.edits import Edit, EditError, apply_to_text, read_path
 from budget.report.figures import Figures
 from budget.report.lines import finding_line
 from budget.report.located import Located
@@ -34,7 +34,7 @@ def change(file: str, key: str, make: Callable[[Path], Edit]) -> int:
         return _refuse("the file can't be changed", file, before.findings)
     try:
         data: Mapping[str, Any] = tomllib.loads(before.snapshot.text)
-        path = dotted(key, data)
+        path = read_path(key, data)
         text = apply_to_text(before.snapshot.text, make(path), data=data)
     except EditError as wrong:
         say(f"{wrong}; {file} was not changed")

@@ -72,7 +72,7 @@ def show(path: Path) -> str:
     return ".".join(str(part) if isinstance(part, int) else render_key(part) for part in path) or "the file"
 
 
-def dotted(text: str, data: Mapping[str, Any] | None = None) -> Path:
+def read_path(text: str, data: Mapping[str, Any] | None = None) -> Path:
     """Read a key typed by hand: `section.M1.length`, `terminal."FCU 1".item[0].kv`, `section.M1.item.0.kv`.
 
     A position in a list is `[0]` or a bare number. With ``data`` a bare number is a position where there is a

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from budget.description.edits import EditError, dotted
+from budget.description.edits import EditError, read_path
 from budget.description.spans import Path
 from budget.description.spelling import render_dotted, show
 
@@ -33,7 +33,7 @@ DATA = {
     ],
 )
 def test_a_key_is_read(text: str, path: Path) -> None:
-    assert dotted(text) == path
+    assert read_path(text) == path
 
 
 @pytest.mark.parametrize(
@@ -48,7 +48,7 @@ def test_a_key_is_read(text: str, path: Path) -> None:
     ],
 )
 def test_the_data_tells_a_position_from_a_name(text: str, path: Path) -> None:
-    assert dotted(text, DATA) == path
+    assert read_path(text, DATA) == path
 
 
 @pytest.mark.parametrize(
@@ -70,7 +70,7 @@ def test_the_data_tells_a_position_from_a_name(text: str, path: Path) -> None:
 )
 def test_a_key_that_is_refused(text: str, place: str) -> None:
     with pytest.raises(EditError) as caught:
-        dotted(text)
+        read_path(text)
     assert place in str(caught.value)
     assert str(caught.value).isprintable()
 
@@ -79,4 +79,4 @@ def test_a_key_that_is_refused(text: str, place: str) -> None:
 def test_a_path_that_is_shown_is_read_back(names: list[str]) -> None:
     path: tuple[Any, ...] = tuple(names)
     assert render_dotted(path) == show(path)
-    assert tuple(map(str, dotted(show(path)))) == path
+    assert tuple(map(str, read_path(show(path)))) == path
