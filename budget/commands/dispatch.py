@@ -45,7 +45,7 @@ COMMANDS: Mapping[str, Command] = {
     "set": Command("Set one key in a run's file.", "budget set heating.toml section.M1.length '14.5 m'"),
     "unset": Command("Take one key out of a run's file.", "budget unset heating.toml section.M1.note"),
     "list": Command("List pipes, ducts, fittings, fluids, limits or units.", "budget list fittings 'elbow 90'"),
-    "explain": Command("Say what a finding code means.", "budget explain transitional"),
+    "explain": Command("Show every figure of a row as a calculation, or what a code means.", "budget explain run.toml M1"),
     "manual": Command("Read the manual.", "budget manual file"),
     "config": Command("Find or check the settings of the app.", "budget config --check"),
     "completion": Command("Print a completion script for a shell.", "budget completion bash > ~/.budget-completion"),

@@ -3,29 +3,12 @@
 from __future__ import annotations
 
 import argparse
-from collections.abc import Mapping
-from importlib.resources import files
 
 from budget.commands.dispatch import OK, REFUSED, say
 from budget.description import nearest
+from budget.manual import TOPICS, page, titles
 
-TOPICS = (
-    "start",
-    "file",
-    "units",
-    "connections",
-    "results",
-    "findings",
-    "fittings",
-    "fluids",
-    "friction",
-    "devices",
-    "keys",
-    "config",
-    "accuracy-and-caution",
-)
-"""Every topic, in the order in which one would read them."""
-
+__all__ = ["TOPICS", "add_arguments", "completions", "page", "run", "titles"]
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take a topic."""
@@ -50,13 +33,3 @@ def run(options: argparse.Namespace) -> int:
 def completions() -> tuple[str, ...]:
     """Return what may stand for the topic."""
     return TOPICS
-
-
-def titles() -> Mapping[str, str]:
-    """Return the title of every topic's page."""
-    return {topic: page(topic).partition("\n")[0].removeprefix("# ").strip() for topic in TOPICS}
-
-
-def page(topic: str) -> str:
-    """Return the Markdown of a topic."""
-    return files("budget").joinpath("manual", f"{topic}.md").read_text(encoding="utf-8")

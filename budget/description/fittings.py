@@ -46,11 +46,11 @@ def read_fittings(
                 scope.reading.wrong("missing", 'the fitting has no kind; write kind = "..."', where)
             continue
         count = entry.get("count", 1)
-        found = kind(name)
+        found = kind(name) if name not in scope.own_fittings else None
         if found is not None:
             parameters = _parameters(scope, found, entry, where)
             if parameters is not None and _fits(scope, found, line, (*where, "kind")):
-                uses.append(FittingUse(found.name, count, parameters, where))
+                uses.append(FittingUse(found.name, count, parameters, (*where, "kind")))
         elif scope.known_fitting(name):
             scope.reading.table(entry, FITTING_USE, where, "a fitting without parameters")
             counts.append(FittingCount(name, count, (*where, "kind")))

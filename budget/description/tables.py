@@ -67,7 +67,10 @@ def own_fitting(reading: Reading, id_: str, values: dict[str, Any], path: Path) 
     """Read a fitting of one's own."""
     if "k" not in values and not reading.faulty((*path, "k")):
         reading.wrong("missing", f"the fitting {id_!r} has no loss coefficient; write k = 0.75", path)
-    if id_ in fitting_names() or kind(id_) is not None:
+    counted = kind(id_)
+    # A kind that needs parameters can't be meant by a name alone.
+    alike = counted is not None and all(parameter.default is not None for parameter in counted.parameters)
+    if id_ in fitting_names() or alike:
         reading.wrong(
             "contradiction", f"{id_!r} is a fitting of the catalogue too; give one's own another name", path
         )

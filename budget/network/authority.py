@@ -27,10 +27,10 @@ def authorities(run: Computed) -> dict[int, tuple[float | None, float | None]]:
             found[carrier] = (None, None)
             continue
         drop = float(run.drops.item_drop[number])
-        rest = _only_its_flow(run, carrier, item.control == "three-port") - drop
+        rest = only_its_flow(run, carrier, item.control == "three-port") - drop
         whole = drop + rest
         authority = drop / whole if whole > 0 else math.nan
-        held = _held_differential(run, carrier)
+        held = held_differential(run, carrier)
         found[carrier] = (_finite(authority), _finite(drop / held if held > 0 else math.nan))
     return found
 
@@ -43,7 +43,7 @@ def _held_flow(run: Computed, carrier: int) -> bool:
     return any(use.carrier == carrier and use.device.holds == "flow" for use in run.layout.devices)
 
 
-def _only_its_flow(run: Computed, carrier: int, three_port: bool) -> float:
+def only_its_flow(run: Computed, carrier: int, three_port: bool) -> float:
     """Return all that carries only the item's flow, the item included, on the largest circuit through it, Pa."""
     layout, drops, legs = run.layout, run.drops, run.layout.legs
     if carrier >= len(legs):
@@ -95,7 +95,7 @@ def _at_source(run: Computed, zone: int, terminal: int, served: set[int]) -> flo
     return run.required_of(source) - float(run.circuits.required[zone])
 
 
-def _held_differential(run: Computed, carrier: int) -> float:
+def held_differential(run: Computed, carrier: int) -> float:
     """Return the differential over the carrier's circuit when all others are shut, Pa."""
     layout = run.layout
     legs = layout.legs

@@ -113,7 +113,7 @@ def source_result(run: Computed, number: int) -> SourceResult:
     paths = list(index_paths(run, number))
     required = run.required_of(number)
     static = sum(_static(run, path) for path in paths)
-    held = sum(_held_constant(run, path) for path in paths)
+    held = held_part(run, number)
     factor = 1.0 + source.flow_reserve
     duty = static + (1.0 + source.reserve) * ((required - static - held) * factor**2 + held)
     mass = float(drops.source_mass[number])
@@ -166,6 +166,11 @@ def _or_none(value: float) -> float | None:
 def _static(run: Computed, path: IndexPath) -> float:
     on_legs = math.fsum(run.drops.leg_static[list(path.legs)])
     return on_legs + float(run.drops.terminal_static[path.terminal])
+
+
+def held_part(run: Computed, source: int) -> float:
+    """Return the part of a source's required pressure that holding devices keep constant, Pa: H of its duty."""
+    return sum(_held_constant(run, path) for path in index_paths(run, source))
 
 
 def _held_constant(run: Computed, path: IndexPath) -> float:

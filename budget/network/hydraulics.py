@@ -133,9 +133,6 @@ def _junction_drops(layout: Layout, leg_mass: Floats) -> tuple[Floats, Floats]:
     """Return the junction loss of each leg, Pa, and its coefficient; the ratios are those of the legs that meet."""
     junctions, legs = layout.junctions, layout.legs
     drop, k = np.zeros(len(legs)), np.zeros(len(legs))
-    drop[junctions.unknown] = k[junctions.unknown] = np.nan
-    if not len(junctions):
-        return drop, k
     branch, straight, combined = junctions.branch, junctions.straight, junctions.combined
     whole = leg_mass[branch] + leg_mass[straight]
     ratio = np.divide(leg_mass[branch], whole, out=np.zeros_like(whole), where=whole > 0.0)
@@ -150,6 +147,7 @@ def _junction_drops(layout: Layout, leg_mass: Floats) -> tuple[Floats, Floats]:
     ):
         k[leg] = np.where(counts, coefficient, 0.0)
         drop[leg] = k[leg] * pv
+    drop[junctions.unknown] = k[junctions.unknown] = np.nan
     return drop, k
 
 

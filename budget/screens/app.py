@@ -14,6 +14,7 @@ from budget.description.edits import Edit
 from budget.description.finding import Path
 from budget.document import Document, Snapshot
 from budget.report.figures import Figures
+from budget.report.plain import plain
 from budget.screens import choosing, entering, turning
 from budget.screens.actions import Place
 from budget.screens.budget_line import BudgetLine
@@ -23,9 +24,9 @@ from budget.screens.doing import DOINGS
 from budget.screens.foot import Foot
 from budget.screens.ledger import Ledger, Mark
 from budget.screens.rows import View
-from budget.screens.safe import plain
 from budget.screens.themes import Theme
 from budget.screens.toolkit import AsciiFilter, FrugalScreen, SafeFilter, widget_theme
+from budget.screens.trials import Trials
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -64,6 +65,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.document, self.config, self.colours = document, config, theme
         self.keymap, self.notes = config.keymap, notes
         self.entry: entering.Entry | None = None
+        self.trials = Trials(self)
         self.at: Place = "ledger"
         self.returns_to: Place = "ledger"
         self.sought = ""

@@ -7,9 +7,10 @@ from collections.abc import Iterable, Iterator
 from budget.description.finding import Level
 from budget.network.results import HEADINGS, SourceResult
 from budget.report.figures import share
+from budget.report.plain import plain
 from budget.screens.lines import Lines, Piece
 from budget.screens.rows import INDEX_SIGN, OVER_SIGN, View
-from budget.screens.safe import plain, steady, width_of
+from budget.screens.safe import steady, width_of
 from budget.screens.themes import Theme
 from budget.units import Dimension
 

@@ -7,10 +7,10 @@ from typing import TYPE_CHECKING
 
 from budget.description.edits import EditError
 from budget.document import Snapshot
+from budget.report.plain import plain
 from budget.screens import shaping
 from budget.screens.chooser import Choice, Offer
 from budget.screens.ledger import Mark
-from budget.screens.safe import plain
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp

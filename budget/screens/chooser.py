@@ -6,34 +6,44 @@ import re
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
 
+from textual.timer import Timer
+
 from budget.screens.field import Field
 from budget.screens.ledger import field_pieces
 from budget.screens.lines import Lines, Piece
-from budget.screens.safe import clip, fit, width_of
+from budget.screens.safe import clip, fit, width_of, wrapped
 from budget.screens.themes import Theme
+from budget.screens.trials import PAUSE
 
 HEAD = 2
 """Lines above the entries: what the list is and the filter, and the headings."""
 
+BENEATH = 5
+"""Lines under the entries that tell more of the marked one, where a list has them; fewer on a low terminal."""
+
 _WIDEST = 34
+_SEEN_WHOLE = 300
+"""Entries of which all are looked at for the widths of the columns; of a longer list, those in view."""
 _FIGURE = re.compile(r"-|-?[0-9.]+(e[+-]?[0-9]+)?!?|")
 
 
 @dataclass(frozen=True, slots=True)
 class Choice:
-    """One entry: its safe texts by column, what it stands for, and the role of its style."""
+    """One entry: its safe texts by column, what it stands for, the role of its style, further words to find it by."""
 
     cells: tuple[str, ...]
     value: object = None
     role: str = ""
+    words: str = ""
 
 
 @dataclass(frozen=True, slots=True)
 class Offer:
     """A list to pick from: its title, the headings, the entries, and what is done with one.
 
-    `more` computes further cells of an entry when it comes into view; `write` makes an entry of what was typed, where
-    that is allowed; `step` says what left and right do with an entry.
+    `more` computes further cells of an entry when it comes into view, of a `slow` one only when the cursor rests on it;
+    `beneath` tells more of the marked entry in paragraphs under the list; `write` makes an entry of what was typed,
+    where that is allowed; `step` says what left and right do with an entry.
     """
 
     title: str
@@ -42,6 +52,8 @@ class Offer:
     take: Callable[[object], None]
     filters: bool = True
     more: Callable[[object], tuple[str, ...]] | None = None
+    slow: bool = False
+    beneath: Callable[[object], tuple[str, ...]] | None = None
     write: Callable[[str], Choice | None] | None = None
     step: Callable[[object, int], None] | None = None
     leave: Callable[[], None] | None = None
@@ -62,6 +74,7 @@ class Chooser(Lines):
         self.cursor = 0
         self.top = 0
         self._more: dict[int, tuple[str, ...]] = {}
+        self._waiting: Timer | None = None
 
     def present(self, offer: Offer, *, keep: bool = False) -> None:
         """Show a list; with `keep` cursor and filter stay, as for the same list after a change."""
@@ -83,7 +96,11 @@ class Chooser(Lines):
     @property
     def page(self) -> int:
         """Entries on a page."""
-        return max(1, self.size.height - HEAD)
+        return max(1, self.size.height - HEAD - self._tail)
+
+    @property
+    def _tail(self) -> int:
+        return min(BENEATH, self.size.height // 4) if self.offer.beneath is not None else 0
 
     def go(self, place: int) -> None:
         """Move the cursor to an entry by its place."""
@@ -122,6 +139,8 @@ class Chooser(Lines):
         widths, right = self._shape(width)
         if y == 1:
             return self._cells(self.offer.heads, widths, right, "heading")
+        if y >= HEAD + self.page and self._tail:
+            return self._told(y - HEAD - self.page, width)
         place = self.top + y - HEAD
         if place >= len(self.kept):
             return ((f" {self.offer.empty}", "faint"),) if place == 0 else ()
@@ -136,6 +155,15 @@ class Chooser(Lines):
         if not self.passive:
             yield f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}", "faint"
 
+    def _told(self, y: int, width: int) -> Iterator[Piece]:
+        """Spell a line of what is told of the marked entry; where there is more, the last line ends in an ellipsis."""
+        if self.offer.beneath is None or self.marked is None:
+            return
+        lines = [line for text in self.offer.beneath(self.marked.value) for line in wrapped(text, width - 2)]
+        if y < len(lines):
+            more = y == self._tail - 1 and len(lines) > self._tail
+            yield f" {clip(lines[y] + '  ' + lines[y + 1], width - 2) if more else lines[y]}", "faint"
+
     @staticmethod
     def _cells(cells: Sequence[str], widths: Sequence[int], right: Sequence[bool], roles: str) -> Iterator[Piece]:
         yield " ", roles
@@ -147,7 +175,9 @@ class Chooser(Lines):
 
         The last takes what remains.
         """
-        view = [self.offer.heads, *(self._all_cells(choice) for choice in self.kept[self.top : self.top + self.page])]
+        few = self.offer.more is None and len(self.offer.choices) <= _SEEN_WHOLE
+        seen = self.offer.choices if few else self.kept[self.top : self.top + self.page]
+        view = [self.offer.heads, *(self._all_cells(choice) for choice in seen)]
         columns = max((len(cells) for cells in view), default=1)
         widths = [
             min(_WIDEST, max((width_of(cells[column]) for cells in view if column < len(cells)), default=0)) + 2
@@ -163,17 +193,33 @@ class Chooser(Lines):
     def _all_cells(self, choice: Choice) -> tuple[str, ...]:
         if self.offer.more is None:
             return choice.cells
-        key = id(choice)
-        if key not in self._more:
-            self._more[key] = self.offer.more(choice.value)
-        return (*choice.cells[:1], *self._more[key], *choice.cells[1:])
+        found = self._more.get(id(choice))
+        if found is None and self.offer.slow:
+            if choice is self.marked:
+                self._look_later()
+            found = ("",) * (len(self.offer.heads) - len(choice.cells))
+        elif found is None:
+            found = self._more[id(choice)] = self.offer.more(choice.value)
+        return (*choice.cells[:1], *found, *choice.cells[1:])
+
+    def _look_later(self) -> None:
+        """Compute the further cells of the marked entry when no key comes for a while."""
+        if self._waiting is not None:
+            self._waiting.stop()
+        self._waiting = self.set_timer(PAUSE, self._look)
+
+    def _look(self) -> None:
+        marked, more = self.marked, self.offer.more
+        if self.display and marked is not None and more is not None and id(marked) not in self._more:
+            self._more[id(marked)] = more(marked.value)
+            self.repaint()
 
     def _filter(self) -> None:
         words = self.field.text.casefold().split()
         self.kept = [
             choice
             for choice in self.offer.choices
-            if all(any(word in cell.casefold() for cell in choice.cells) for word in words)
+            if all(any(word in cell.casefold() for cell in (*choice.cells, choice.words)) for word in words)
         ]
         text = self.field.text.strip()
         if text:

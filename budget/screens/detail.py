@@ -17,8 +17,8 @@ from budget.network.results import (
     TerminalResult,
 )
 from budget.report.figures import Figures, plain_number
+from budget.report.plain import plain
 from budget.screens.rows import Row, find_item
-from budget.screens.safe import plain
 from budget.screens.writing import index_of, stated_keys, written
 from budget.units import Dimension
 

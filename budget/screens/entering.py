@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import time
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
@@ -11,8 +10,8 @@ from typing import TYPE_CHECKING
 from budget.description.edits import Edit, EditError, SetValue, Unset, rename_everywhere
 from budget.description.finding import Path, dotted
 from budget.document import Snapshot
+from budget.report.plain import plain
 from budget.screens.field import Field
-from budget.screens.safe import plain
 from budget.screens.writing import WritingError, key_of_cell, objection, value_of, written
 
 if TYPE_CHECKING:
@@ -20,10 +19,6 @@ if TYPE_CHECKING:
 
 Attempt = Callable[[str], Snapshot | None]
 """Tries a text out; returns what the run would be, None for no change; raises WritingError or EditError."""
-
-
-SLOW, PAUSE = 0.15, 0.25
-"""Seconds: a trial that takes longer waits until so long no key came."""
 
 
 @dataclass(slots=True)
@@ -37,7 +32,6 @@ class Entry:
     in_cell: bool = False
     problem: str = ""
     path: Path = ()
-    slow: bool = False
     tried: str | None = None
     """The last text that could stand."""
 
@@ -59,17 +53,12 @@ def press(app: BudgetApp, entry: Entry, field: Field) -> None:
     entry.field = field
     _paint(app, entry)
     if typed:
-        try_out = partial(_try_out, app, entry, field.text)
-        if entry.slow:
-            app.set_timer(PAUSE, try_out)
-        else:
-            app.call_later(try_out)
+        app.trials.later(partial(_try_out, app, entry, field.text))
 
 
 def _try_out(app: BudgetApp, entry: Entry, text: str) -> None:
     if app.entry is not entry or entry.field.text != text:
         return
-    begun = time.perf_counter()
     try:
         tried = entry.attempt(text)
         entry.problem, entry.tried = "", text
@@ -77,7 +66,6 @@ def _try_out(app: BudgetApp, entry: Entry, text: str) -> None:
         tried, entry.problem = None, plain(str(wrong))
     app.show(tried or app.document.snapshot, before=app.document.snapshot)
     _paint(app, entry)
-    entry.slow = time.perf_counter() - begun > SLOW
 
 
 def accept(app: BudgetApp) -> bool:
@@ -150,7 +138,7 @@ def try_value(app: BudgetApp, path: Path, before: str, text: str) -> Snapshot | 
     """Return what the run would be with a value; raises WritingError where the value can't stand."""
     if text == before:
         return None
-    after = app.document.preview(edit_of(path, before, text))
+    after = app.trials.preview(edit_of(path, before, text))
     wrong = objection(app.document.snapshot, after, path)
     if wrong:
         raise WritingError(wrong)
@@ -214,7 +202,7 @@ def rename(app: BudgetApp) -> None:
     def attempt(text: str) -> Snapshot | None:
         if text == row.id:
             return None
-        after = app.document.preview(edit(text))
+        after = app.trials.preview(edit(text))
         wrong = objection(app.document.snapshot, after, (row.path[0], text))
         if wrong:
             raise WritingError(wrong)

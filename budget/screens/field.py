@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from budget.screens.safe import plain, width_of
+from budget.report.plain import plain
+from budget.screens.safe import width_of
 
 LONGEST = 2000
 """Characters; no value of a run is longer."""

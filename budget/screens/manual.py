@@ -2,32 +2,11 @@
 
 from __future__ import annotations
 
-from functools import cache
-from importlib import resources
-
 from textual.app import ComposeResult
 from textual.containers import VerticalScroll
 from textual.widgets import Markdown
 
-
-@cache
-def pages() -> tuple[tuple[str, str], ...]:
-    """Return the pages of the manual, name and title, in the order of their names; `index` first."""
-    folder = resources.files("budget") / "manual"
-    if not folder.is_dir():
-        return ()
-    found = [
-        (entry.name, title_of(entry.read_text("utf-8"), entry.name))
-        for entry in folder.iterdir()
-        if entry.name.endswith(".md")
-    ]
-    return tuple(sorted(found, key=lambda page: (page[0] != "index.md", page[0])))
-
-
-def title_of(text: str, name: str) -> str:
-    """Return the first heading of a page, or its name."""
-    headings = (line.lstrip("# ").strip() for line in text.splitlines() if line.startswith("#"))
-    return next(headings, name.removesuffix(".md"))
+from budget.manual import page
 
 
 class ManualScreen(VerticalScroll):
@@ -42,8 +21,7 @@ class ManualScreen(VerticalScroll):
         """One page."""
         yield self.page
 
-    def open(self, name: str) -> None:
+    def open(self, topic: str) -> None:
         """Show a page from its beginning."""
-        text = (resources.files("budget") / "manual" / name).read_text("utf-8")
-        self.page.update(text)
+        self.page.update(page(topic))
         self.scroll_home(animate=False)

@@ -5,11 +5,11 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from budget.description.finding import Level, Path
+from budget.report.plain import plain
 from budget.screens.chooser import Choice, Offer
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
 from budget.screens.rows import Row
-from budget.screens.safe import plain
 
 if TYPE_CHECKING:
     from budget.document import Snapshot

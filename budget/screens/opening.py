@@ -6,9 +6,9 @@ import sys
 from pathlib import Path
 
 from budget.document import Document
+from budget.report.plain import plain
 from budget.screens.app import BudgetApp
 from budget.screens.config import Config, config_folder
-from budget.screens.safe import plain
 from budget.screens.signals import Guard
 from budget.screens.themes import load_theme
 from budget.storage import StorageError

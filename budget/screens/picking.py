@@ -12,9 +12,9 @@ from budget.description.model import Line, Run
 from budget.document import Snapshot
 from budget.network.results import LossResult, RunResult
 from budget.report.figures import NONE, Figures, plain_number
+from budget.report.plain import plain
 from budget.screens.chooser import Choice, Offer
 from budget.screens.rows import OVER_SIGN
-from budget.screens.safe import plain
 from budget.screens.writing import is_stated, spec_of
 from budget.units import Dimension, spell
 
@@ -115,7 +115,7 @@ def fittings(app: BudgetApp, table: Path) -> Offer | None:
     def step(name: object, by: int) -> None:
         counts[str(name)] = max(0, counts.get(str(name), 0) + by)
         try:
-            app.show(app.document.preview(edit(counts)), before=snapshot)
+            app.show(app.trials.preview(edit(counts)), before=snapshot)
         except EditError as refused:
             app.say(plain(str(refused)), "error")
         app.choosers["list"].refresh_more()
@@ -181,7 +181,7 @@ def _heads(figures: Figures) -> tuple[str, ...]:
 def _figures_with(app: BudgetApp, table: Path, edit: Edit, figures: Figures) -> tuple[str, ...]:
     """Return velocity, gradient, drop and required pressure of a row as they would be after an edit."""
     try:
-        after = app.document.preview(edit)
+        after = app.trials.preview(edit)
     except EditError:
         return (NONE, NONE, NONE, NONE)
     run = _result_of(after, table)
@@ -201,7 +201,7 @@ def _figures_with(app: BudgetApp, table: Path, edit: Edit, figures: Figures) -> 
 
 def _loss_of(app: BudgetApp, table: Path, edit: Edit, name: str) -> LossResult | None:
     try:
-        run = _result_of(app.document.preview(edit), table)
+        run = _result_of(app.trials.preview(edit), table)
     except EditError:
         return None
     losses = run.legs[0].losses if run is not None and run.legs else ()

@@ -11,7 +11,9 @@ from budget.description.model import Description, Item, Run, Section, Source, Te
 from budget.document import Snapshot
 from budget.network.results import ItemResult, RunResult, SectionResult, SourceResult, TerminalResult
 from budget.report.figures import NONE, Figures, plain_number
-from budget.screens.safe import plain, steady
+from budget.report.plain import plain
+from budget.report.tree import hang
+from budget.screens.safe import steady
 from budget.units import Dimension
 
 Kind = Literal["source", "section", "terminal", "item"]
@@ -59,20 +61,11 @@ def tree(description: Description) -> tuple[Row, ...]:
 
     What hangs on nothing known stands at the end, so that it can be mended.
     """
-    children = _children(description)
-    seen: set[str] = set()
+    hung = tuple(hang(description))
     rows: list[Row] = []
-    known = description.rank()
-    loose = (id_ for id_ in description.order if _parent(description, id_) not in known)
-    for root in (*description.sources, *loose, *description.order):
-        pending = [(root, 0)]
-        while pending:
-            id_, depth = pending.pop()
-            if id_ in seen:
-                continue
-            seen.add(id_)
-            rows += _own_rows(description, id_, depth, bool(children.get(id_)))
-            pending += [(child, depth + 1) for child in reversed(children.get(id_, ())) if child not in seen]
+    for place, (id_, depth) in enumerate(hung):
+        branch = place + 1 < len(hung) and hung[place + 1].depth > depth
+        rows += _own_rows(description, id_, depth, branch)
     return tuple(rows)
 
 
@@ -253,25 +246,3 @@ def _own_rows(description: Description, id_: str, depth: int, branch: bool) -> l
     rows = [Row(part.path, kind, id_, depth, branch or bool(part.items))]
     rows += [Row(item.path, "item", id_, depth + 1) for item in part.items]
     return rows
-
-
-def _children(description: Description) -> dict[str, list[str]]:
-    """Return what hangs on each ID, nearest the source first: discharge sections, then suction and return ones."""
-    outward: dict[str, list[str]] = {}
-    inward: dict[str, list[str]] = {}
-    for id_ in description.order:
-        part = description.sections.get(id_) or description.terminals.get(id_)
-        if part is None:
-            continue
-        if part.from_ is not None:
-            outward.setdefault(part.from_, []).append(id_)
-        elif part.to is not None:
-            inward.setdefault(part.to, []).append(id_)
-    for parent, ids in inward.items():
-        outward.setdefault(parent, []).extend(ids)
-    return outward
-
-
-def _parent(description: Description, id_: str) -> str | None:
-    part = description.sections.get(id_) or description.terminals.get(id_)
-    return None if part is None else part.from_ or part.to

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import unicodedata
+from collections.abc import Iterable
 from functools import lru_cache
 
 from rich.cells import get_character_cell_size
 
-UNKNOWN = "\N{REPLACEMENT CHARACTER}"
+from budget.report.plain import UNKNOWN, plain
 
 _ASCII = str.maketrans({
     "»": ">", "█": "#", "░": "-", "▓": "#", "▒": "=", "▸": ">", "…": "~", "·": ".", "→": ">", "×": "x",
@@ -24,14 +25,6 @@ _ASCII = str.maketrans({
 
 
 @lru_cache(8192)
-def plain(text: str) -> str:
-    """Return a text as one line without controls, direction marks or invisible characters."""
-    if text.isascii() and text.isprintable():
-        return text
-    return "".join(_shown(c) for c in unicodedata.normalize("NFC", text))
-
-
-@lru_cache(8192)
 def steady(text: str) -> str:
     """Return a text of which every terminal agrees how wide it is: for IDs that stand before other columns.
 
@@ -39,7 +32,7 @@ def steady(text: str) -> str:
     """
     if text.isascii() and text.isprintable():
         return text
-    return "".join(c if _is_steady(c) else "?" for c in plain(text))
+    return "".join(c if _is_steady(c) else "?" for c in plain(unicodedata.normalize("NFC", text)))
 
 
 def width_of(text: str) -> int:
@@ -74,6 +67,23 @@ def clip(text: str, width: int) -> str:
     return "".join(kept) + "…"
 
 
+def wrapped(text: str, width: int) -> list[str]:
+    """Return a text in lines of at most so many cells, broken at spaces; a longer word stands on a line of its own."""
+    return packed(text.split(), width, " ")
+
+
+def packed(pieces: Iterable[str], width: int, gap: str = "  ") -> list[str]:
+    """Return pieces of text in lines of at most so many cells, none of them broken; a longer one has its own line."""
+    lines: list[str] = []
+    for piece in pieces:
+        joined = f"{lines[-1]}{gap}{piece}" if lines else piece
+        if lines and width_of(joined) <= width:
+            lines[-1] = joined
+        elif piece:
+            lines.append(piece)
+    return lines
+
+
 @lru_cache(8192)
 def harmless(text: str) -> str:
     """Return a piece of a painted line without control characters, as wide as it was counted."""
@@ -88,14 +98,6 @@ def ascii_only(text: str) -> str:
     if text.isascii():
         return text
     return "".join(_ascii_of(c) for c in text.translate(_ASCII))
-
-
-def _shown(c: str) -> str:
-    if c.isprintable() or c == "\xa0":
-        return c
-    if c in "\n\r\t\v\f" or unicodedata.category(c) == "Zs":
-        return " "
-    return UNKNOWN
 
 
 def _is_steady(c: str) -> bool:

@@ -6,10 +6,10 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from budget.report.plain import plain
 from budget.screens.chooser import Choice, Offer
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
-from budget.screens.safe import plain
 from budget.screens.writing import WritingError
 from budget.storage import ChangedOnDisk, StorageError
 

@@ -6,12 +6,13 @@ from typing import TYPE_CHECKING, cast
 
 from budget.description import read_text
 from budget.description.finding import Level, dotted
+from budget.manual import titles
 from budget.report.located import Located
+from budget.report.plain import plain
 from budget.screens import choosing, entering, moving, saving
 from budget.screens.chooser import Choice, Chooser, Offer
 from budget.screens.detail import lines_of
 from budget.screens.rows import Row
-from budget.screens.safe import plain
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -163,19 +164,14 @@ def undo_text(app: BudgetApp) -> None:
 
 def show_manual(app: BudgetApp) -> None:
     """List the pages of the manual; Enter opens one."""
-    from budget.screens.manual import pages  # noqa: PLC0415 - heavy, and seldom needed
-
-    found = pages()
-    if not found:
-        app.say("the manual has no pages in this installation", "warning")
-        return
 
     def take(name: object) -> None:
         page = app.manual
         app.turn_to("manual")
         app.call_after_refresh(page.open, str(name))
 
-    app.offer(Offer("Manual", ("",), [Choice((plain(title),), name) for name, title in found], take))
+    choices = [Choice((title, topic), topic) for topic, title in titles().items()]
+    app.offer(Offer("Manual", ("", "topic"), choices, take))
 
 
 def back(app: BudgetApp) -> None:

@@ -7,15 +7,15 @@ import time
 import pytest
 
 from budget.description import CODES
-from tests.description import faults, wrong_runs
 from budget.report.located import FAULTS_OF_KEYS
+from tests.description import faults, wrong_fittings, wrong_runs
 from tests.description.faults import Fault
 from tests.description.reading import findings_in
 from tests.description.sound import SOUND, SOUND_AIR, SOUND_OPEN
 
 GROUPS = {
     name: group
-    for module in (faults, wrong_runs)
+    for module in (faults, wrong_fittings, wrong_runs)
     for name, group in vars(module).items()
     if isinstance(group, tuple) and group and isinstance(group[0], Fault)
 }

@@ -203,16 +203,6 @@ AIR = (
 )
 
 LATER = (
-    Fault("takeoff", M1, M1 + '\ntakeoff = "branch"',
-          "later", "section.M1", "takeoff", '"branch"', "remove it"),
-    Fault("default", 'takeoff = "none"', 'takeoff = "straight"',
-          "later", "defaults", "takeoff", '"straight"', "remove it"),
-    Fault("transition", B1, B1 + "\ntransition = 30",
-          "later", "section.B1", "transition", "30\n", "remove it"),
-    Fault("leakage", 'size = "DN20"', 'size = "DN20"\nleakage = "ATC 3"',
-          "later", "terminal.T1", "leakage", '"ATC', "remove it"),
-    Fault("fitting", M1, M1 + '\nfitting = [{ kind = "x" }]',
-          "later", "section.M1", "fitting.0.kind", '"x"', "remove it"),
     Fault("link", PIPE, '[link.L]\nfrom = "B1"\nto = "B2"\n' + PIPE,
           "later", "link.L", "", "L]", "remove it"),
     Fault("case", PIPE, '[case.C]\noff = ["T1"]\n' + PIPE, "later", "case.C", "", "C]", "remove it"),
@@ -233,6 +223,8 @@ JUDGEMENTS = (
           "transitional", "terminal.T1", "size", '"DN20"', "2300 to 4000", "warning"),
     Fault("tees", 'takeoff = "none"\n', "",
           "junction", "section.B1", "takeoff", "B1]\nfrom", "state takeoff", "warning"),
+    Fault("leakage", 'size = "DN20"', 'size = "DN20"\nleakage = "ATC 3"',
+          "contradiction", "terminal.T1", "leakage", '"ATC', "belongs to ducts"),
     Fault("globe", M1, M1 + '\nfitting_method = "hooper"', "fitting-method",
           "section.M1", 'fittings."foot valve"', "4, ",
           "it is taken", "note", SOUND.replace("elbow 90", "foot valve")),
@@ -265,7 +257,9 @@ JUDGEMENTS = (
          "extract-gain", "terminal.L1", "static_drop", '"2 Pa"', "check both", level="warning"),
     _air("flexible", 'size = "200 mm"', 'size = "125 mm"\ncompression = "20 %"',
          "flexible", "terminal.G2", "size", '"125 mm"', "extrapolated", level="warning"),
+    _air("leaky", 'length = "9 m"', 'length = "9 m"\nleakage = "ATC 6"',
+         "leakage", "source.SF", "flow_reserve", "SF]", "raise flow_reserve", level="warning"),
     _air("pipe fitting", 'length = "9 m"', 'length = "9 m"\nfittings = { "elbow 90" = 1 }',
-         "fitting-range", "section.S1", 'fittings."elbow 90"', "1 }", "state k", level="warning"),
+         "fitting-range", "section.S1", 'fittings."elbow 90"', "1 }", "take a kind for ducts", level="warning"),
 )
 """What a designer must look at in the results."""

@@ -176,3 +176,15 @@ def test_a_damper_in_one_of_two_mains_does_not() -> None:
 def test_a_thing_without_a_control_item_has_no_authority() -> None:
     assert authority(tree(), "T2") == (None, None)
     assert authority(tree(), "M1") == (None, None)
+
+
+def test_static_parts_do_not_count() -> None:
+    text = LIQUID.replace("paired = true\n", "") + (
+        "[source]\nP1 = { open = true }\n[section]\n"
+        'M1 = { from = "P1", bore = 40, length = 0, rise = 5, item = [{ drop = 3 }] }\n[terminal]\n'
+        'T1 = { from = "M1", flow = 0.1, drop = 10, rise = 2, outlet_pressure = 9, '
+        'item = [{ drop = 4, control = "two-port" }] }\n'
+        'T2 = { from = "P1", flow = 0.1, drop = 90, rise = 5, outlet_pressure = 9 }\n'
+    )
+    # 4/(3 + 10 + 4); T2 needs 90 + 9 + 5 x 9.80665.
+    assert authority(budget_of(text)) == pytest.approx((4 / 17, 4 / 148.03325))

@@ -302,3 +302,61 @@ def test_a_falling_run_may_need_less_than_nothing() -> None:
     assert budget.sources["P1"].required == pytest.approx(-45_033.25)
     assert budget.sources["P1"].index == ("T1",)
     assert kilopascals(budget, "margin") == pytest.approx({"T1": 0.0, "T2": 1.0})
+
+
+def test_a_holding_device_s_section_costs_both_its_legs_outside() -> None:
+    text = HELD.replace("SET_POINT", "").replace(
+        'B1 = { from = "M1", bore = 40, length = 0', 'B1 = { from = "M1", bore = 20, length = 8'
+    )
+    budget = budget_of(text.replace("drop = 20", "drop = 90"))
+    run = budget.sections["B1"].run
+    assert len(run.legs) == 2
+    assert run.friction > 100.0
+    # Outside: 6 + 5 + 3 + 2 + 10 and the friction of B1, of 6 + 5 + 90.
+    assert budget.sections["B1"].margin == pytest.approx(75_000.0 - run.friction)
+    assert budget.terminals["T1"].circuit == pytest.approx(26_000.0 + run.friction)
+    # Behind, nothing of it counts.
+    assert kilopascals(budget, "margin") == pytest.approx({"T1": 0.0, "T2": 4.0, "T3": 0.0})
+
+
+def test_two_holding_devices_side_by_side_have_systems_of_their_own() -> None:
+    text = HELD.replace("SET_POINT", "").replace(
+        "[terminal]", 'B2 = { from = "M1", bore = 40, length = 0, balance = "DPV" }\n[terminal]'
+    )
+    budget = budget_of(
+        text + 'T4 = { from = "B2", flow = 0.1, drop = 8 }\nT5 = { from = "B2", flow = 0.1, drop = 5 }\n'
+    )
+    assert kilopascals(budget, "margin") == pytest.approx({"T1": 0.0, "T2": 4.0, "T3": 0.0, "T4": 0.0, "T5": 3.0})
+    # B2: 6 + 5 + 2 + 8 = 21 of 31
+    margins = {id_: section.margin / 1000 for id_, section in budget.sections.items()}
+    assert margins == pytest.approx({"M1": 0.0, "B1": 5.0, "C1": 0.0, "B2": 10.0})
+
+
+def test_three_holding_devices_one_behind_the_other() -> None:
+    text = (
+        LIQUID
+        + """
+[device.DPV]
+holds = "differential"
+least_drop = 2
+[source]
+P1 = {}
+[section]
+A = { from = "P1", bore = 40, length = 0, balance = "DPV" }
+B = { from = "A", bore = 40, length = 0, balance = "DPV" }
+C = { from = "B", bore = 40, length = 0, balance = "DPV" }
+[terminal]
+T1 = { from = "C", flow = 0.1, drop = 4 }
+T2 = { from = "B", flow = 0.1, drop = 9 }
+T3 = { from = "A", flow = 0.1, drop = 16 }
+T4 = { from = "P1", flow = 0.1, drop = 25 }
+"""
+    )
+    budget = budget_of(text)
+    # Held behind C 4, behind B max(2 + 4, 9), behind A max(2 + 9, 16); outside max(2 + 16, 25).
+    margins = {id_: section.margin / 1000 for id_, section in budget.sections.items()}
+    assert margins == pytest.approx({"A": 7.0, "B": 5.0, "C": 3.0})
+    taken = {id_: section.device.take_up / 1000 for id_, section in budget.sections.items() if section.device}
+    assert taken == pytest.approx({"A": 7.0, "B": 5.0, "C": 3.0})
+    assert kilopascals(budget, "circuit") == pytest.approx({"T1": 10.0, "T2": 13.0, "T3": 18.0, "T4": 25.0})
+    assert budget.sources["P1"].index == ("T4",)

@@ -327,3 +327,47 @@ def test_a_source_without_terminals_has_no_duty() -> None:
     assert found.index == ()
     assert found.duty != found.duty
     assert found.flow == 0.0
+
+
+def test_what_is_spent_follows_the_index_terminal_that_is_named() -> None:
+    text = LIQUID + (
+        "[source]\nP1 = {}\n[section]\n"
+        'M1 = { from = "P1", bore = 40, length = 0, item = [{ drop = 5 }] }\n'
+        'M2 = { from = "P1", bore = 40, length = 0, item = [{ drop = 9, heading = "control" }] }\n'
+        '[terminal]\nT1 = { from = "M1", flow = 0.1, drop = 12 }\nT2 = { from = "M2", flow = 0.1, drop = 8 }\n'
+    )
+    found = budget_of(text).sources["P1"]
+    # A tie at 17: the first is named, and its path is what is spent.
+    assert found.index == ("T1",)
+    assert (found.spent["distribution"], found.spent["control"], found.spent["terminal"]) == (5000.0, 0.0, 12_000.0)
+
+
+def test_the_items_of_an_index_terminal_count_wherever_it_stands_in_the_file() -> None:
+    text = LIQUID + (
+        '[source]\nP1 = {}\n[terminal]\nT1 = { from = "P1", flow = 0.1, drop = 1 }\n'
+        'T2 = { from = "P1", flow = 0.1, drop = 2, item = [{ drop = 1, heading = "control" }] }\n'
+        'T3 = { from = "P1", flow = 0.1, drop = 8, item = [{ drop = 3, heading = "plant" }] }\n'
+    )
+    found = budget_of(text).sources["P1"]
+    assert (found.spent["plant"], found.spent["terminal"], found.spent["control"]) == (3000.0, 8000.0, 0.0)
+    # The same for what stands inside an air handling unit.
+    lines = [line for line in FAN.replace("FAN", "").splitlines() if not line.startswith("S1")]
+    fan_source = budget_of(
+        "\n".join([*lines, 'S1 = { from = "D1", flow = 500, drop = 40, item = [{ drop = 7, inside = true }] }'])
+    )
+    assert fan_source.sources["F1"].external_total == pytest.approx(108.0)
+
+
+def test_a_flow_holding_terminal_in_an_open_circuit_leaves_static_to_static() -> None:
+    text = LIFT.replace("RESERVES", RESERVES).replace("[source]", DEVICES + "[source]")
+    found = budget_of(text.replace("T1 = {", 'T1 = { balance = "PIV",')).sources["P1"]
+    # Static 167.6798; H = 10 + 5; N = 6 + 4.
+    assert found.static == pytest.approx(167_679.8)
+    assert found.duty == pytest.approx(167_679.8 + 10_000 * 1.21275 + 15_000 * 1.1)
+
+
+def test_a_flow_holding_section_in_an_open_circuit_leaves_static_to_static() -> None:
+    text = LIFT.replace("RESERVES", RESERVES).replace("[source]", DEVICES + "[source]")
+    found = budget_of(text.replace("M1 = {", 'M1 = { balance = "PIV",')).sources["P1"]
+    # H = 4 + 5 + 10; N = 6.
+    assert found.duty == pytest.approx(167_679.8 + 6000 * 1.21275 + 19_000 * 1.1)

@@ -410,3 +410,21 @@ def test_static_is_the_weight_of_the_column_and_the_pressure_needed_at_the_outle
     assert budget.sources["P1"].static == pytest.approx(118_259.85)
     # Static is no part of a section's drop.
     assert budget.sections["M1"].run.drop == 0.0
+
+
+def test_items_of_a_paired_section_stand_in_its_supply_leg() -> None:
+    text = LIQUID.replace('name = "custom"\ndensity = 1000\nviscosity = 1\nspecific_heat = 4\n', 'name = "water"\n') + (
+        "[source]\nP1 = {}\n[section]\n"
+        'M1 = { from = "P1", bore = 40, length = 0, item = [{ kv = 5 }, { k = 2 }] }\n[terminal]\n'
+        'T1 = { from = "M1", flow = "1 kg/s", bore = 20, length = 0, item = [{ k = 2 }, { kv = 5 }] }\n'
+    )
+    budget = budget_of(text)
+    density = budget.sources["P1"].fluid.density
+    # (3600/(rho Kv))^2 rho/1000 bar at 1 kg/s; k by 8 m^2/(pi^2 rho D^4)
+    valve = 720.0**2 * 100 / density
+    assert [item.drop for item in budget.sections["M1"].items] == pytest.approx(
+        [valve, 2 * 8 / (math.pi**2 * density * 0.04**4)]
+    )
+    assert [item.drop for item in budget.terminals["T1"].items] == pytest.approx(
+        [2 * 8 / (math.pi**2 * density * 0.02**4), valve]
+    )

@@ -228,6 +228,13 @@ def test_the_freezing_point_in_fahrenheit_is_not_frozen() -> None:
     assert doubts('name = "water"\ntemperature = "32 degF"') == [("near-freezing", "fluid.temperature")]
 
 
+def test_a_doubt_names_the_temperature_and_the_freezing_point() -> None:
+    text = run('name = "propylene glycol"\ntemperature = {}\nconcentration = "30 %"\nconcentration_by = "mass"')
+    found = {f.code: f.message for t in (-11, -14) for f in findings_of(text.replace("{}", str(t)))}
+    assert found["near-freezing"] == "-11 degC is within 3 K of freezing at -12.8 degC"
+    assert found["frozen"].startswith("-14 degC is below the freezing point, -12.8 degC")
+
+
 def test_a_frozen_fluid_is_computed_all_the_same() -> None:
     budget = evaluated_of(run('name = "water"\ntemperature = "-1 degC"'))
     assert budget.sources["P1"].required == pytest.approx(1000.0)

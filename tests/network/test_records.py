@@ -211,3 +211,13 @@ def test_laying_out_twice_gives_the_same() -> None:
     first, second = lay_out(description), lay_out(description)
     assert first.legs.parent.tolist() == second.legs.parent.tolist()
     assert first.order.tolist() == second.order.tolist()
+
+
+def test_cumulative_does_not_hang_on_the_order_of_the_file() -> None:
+    lines = RING.splitlines()
+    first = lines.index("[section]") + 1
+    lines[first : first + 4] = reversed(lines[first : first + 4])
+    sections = budget_of("\n".join(lines)).sections
+    assert list(sections) == ["R2", "R1", "S2", "S1"]
+    found = {id_: section.cumulative / 1000 for id_, section in sections.items()}
+    assert found == pytest.approx({"S1": 5.0, "S2": 6.0, "R1": 18.0, "R2": 20.0})

@@ -139,8 +139,11 @@ def test_catalogue_agrees_with_the_lines_of_the_chart() -> None:
     ],
 )  # fmt: skip
 def test_compressed_flexible_duct(d_in: float, compression: float, factor: float) -> None:
-    """Abushakra, Walker and Sherman (2004), read and from memory; derived from the inch form, whose 0.126 is 0.00496 in mm."""
-    assert float(flexible_factor(compression, d_in * INCH)) == pytest.approx(factor, rel=2e-4)
+    """Abushakra, Walker and Sherman (2004), read and from memory; derived from the form in inches.
+
+    Its exponent 0.126 per inch is printed as 0.00496 per mm, which is 0.012 % less.
+    """
+    assert float(flexible_factor(compression, d_in * INCH)) == pytest.approx(factor, rel=4e-4)
 
 
 def test_equal_friction_diameters_of_1956() -> None:

@@ -9,7 +9,8 @@ from rich.cells import cell_len
 from rich.segment import Segment
 from textual.color import Color
 
-from budget.screens.safe import ascii_only, clip, fit, harmless, plain, steady, width_of
+from budget.report.plain import plain
+from budget.screens.safe import ascii_only, clip, fit, harmless, steady, width_of
 from budget.screens.toolkit import AsciiFilter, SafeFilter
 
 PAYLOADS = [

@@ -5,9 +5,9 @@ from __future__ import annotations
 import pytest
 
 from budget.description.model import Line
+from budget.manual import TOPICS, titles
 from budget.screens.actions import ACTIONS
 from budget.screens.chooser import Chooser
-from budget.screens.manual import title_of
 from budget.screens.picking import sizes_of
 from tests.screens.conftest import SMALL, Hands, Stage
 
@@ -245,6 +245,11 @@ def test_leaving_a_saved_run_is_at_once(play: Stage) -> None:
     play(act)
 
 
-def test_pages_of_the_manual_are_titled_by_their_first_heading() -> None:
-    assert title_of("text\n\n## Sizes of pipes\n# Other\n", "sizes.md") == "Sizes of pipes"
-    assert title_of("no heading", "sizes.md") == "sizes"
+def test_the_manual_lists_its_pages_as_one_would_read_them(play: Stage) -> None:
+    async def act(hands: Hands) -> None:
+        await hands.press("question_mark")
+        chooser = hands.app.choosers["list"]
+        assert [choice.value for choice in chooser.kept] == list(TOPICS)
+        assert kept(hands) == list(titles().values())
+
+    play(act)

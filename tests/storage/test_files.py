@@ -217,8 +217,10 @@ def test_the_owner_and_the_group_are_kept(file: Path) -> None:
         pytest.skip("only root can give a file to somebody else")
     os.chown(file, 1234, 2345)
     file.chmod(0o664)
+    inode = file.stat().st_ino
     save(file, NEW, load(file)[1])
     status = file.stat()
+    assert status.st_ino != inode
     assert (status.st_uid, status.st_gid, stat.S_IMODE(status.st_mode)) == (1234, 2345, 0o664)
 
 
