@@ -1,15 +1,18 @@
-"""`budget list`: the catalogue and the units, each figure with its source and how it is known."""
+"""`budget list`: the catalogue and the units, each figure with its source and how it is known; the examples."""
 
 from __future__ import annotations
 
 import argparse
+import textwrap
+from itertools import takewhile
 
 from budget.catalogue.listing import Row, aligned, rows
 from budget.commands.dispatch import OK, REFUSED, say
 from budget.description import nearest
+from budget.shipped import shipped
 from budget.units import Basis, factors
 
-KINDS = ("pipes", "ducts", "fittings", "fluids", "limits", "units")
+KINDS = ("pipes", "ducts", "fittings", "fluids", "limits", "units", "examples")
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -21,13 +24,27 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 def run(options: argparse.Namespace) -> int:
     """Print the list; 2 where there is no such name."""
     try:
-        found = _units(options.name) if options.kind == "units" else rows(options.kind, options.name)
+        others = {"units": _units, "examples": _examples}
+        found = others[options.kind](options.name) if options.kind in others else rows(options.kind, options.name)
     except LookupError as wrong:
         say(str(wrong.args[0]))
         return REFUSED
     for line in aligned(found).split("\n"):
         print(line.rstrip())
     return OK
+
+
+def _examples(name: str | None) -> list[Row]:
+    """List the shipped examples: where each is, and what it shows."""
+    files = [file for file in sorted(shipped("examples").glob("*.toml")) if (name or "") in file.stem]
+    if not files:
+        raise LookupError(f"there is no example {name!r}; budget list examples names them")
+    listing = []
+    for file in files:
+        lines = takewhile(lambda line: line.startswith("#"), file.read_text("utf-8").splitlines())
+        about = " ".join(line.lstrip("# ") for line in lines)
+        listing += [Row((str(file),), heading=True), *(Row((line,)) for line in textwrap.wrap(about, 100))]
+    return listing
 
 
 def _units(name: str | None) -> list[Row]:
