@@ -23,6 +23,8 @@ class Completion:
     options: Mapping[str, str] = field(default_factory=dict)
     words_of_options: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
     words: tuple[str, ...] = ()
+    files: bool = False
+    """Whether a file may stand where the words do."""
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
@@ -52,7 +54,8 @@ def gather() -> dict[str, Completion]:
                     words_of_options[long] = tuple(map(str, action.choices))
             elif action.choices:
                 words = tuple(map(str, action.choices))
-        found[name] = Completion(command.summary, options, words_of_options, words)
+        files = getattr(module, "TAKES_FILES_TOO", False)
+        found[name] = Completion(command.summary, options, words_of_options, words, files)
     return found
 
 
@@ -61,7 +64,7 @@ def bash(commands: Mapping[str, Completion]) -> str:
     lines = [
         "# Completion of budget for bash. Load it in ~/.bashrc: source FILE",
         "_budget() {",
-        "    local word=${COMP_WORDS[COMP_CWORD]} before=${COMP_WORDS[COMP_CWORD-1]} offer=",
+        "    local word=${COMP_WORDS[COMP_CWORD]} before=${COMP_WORDS[COMP_CWORD-1]} offer= files=",
         "    local IFS=$'\\n'",
         "    COMPREPLY=()",
         '    case "$COMP_CWORD:${COMP_WORDS[1]}:$before:$word" in',
@@ -72,15 +75,16 @@ def bash(commands: Mapping[str, Completion]) -> str:
             lines.append(f"        *:{name}:{option}:*) offer={_lines(words)} ;;")
         lines.append(f"        *:{name}:*:-*) offer={_lines(one.options)} ;;")
         if one.words:
-            lines.append(f"        2:{name}:*) offer={_lines(one.words)} ;;")
+            lines.append(f"        2:{name}:*) offer={_lines(one.words)}{' files=too' if one.files else ''} ;;")
     lines += [
         "    esac",
         '    if [ -n "$offer" ]; then',
         '        COMPREPLY=($(compgen -W "$offer" -- "$word"))',
         '        COMPREPLY=("${COMPREPLY[@]// /\\\\ }")',
-        "    else",
+        "    fi",
+        '    if [ -z "$offer" ] || [ -n "$files" ]; then',
         "        compopt -o filenames 2>/dev/null",
-        '        COMPREPLY=($(compgen -f -- "$word"))',
+        '        COMPREPLY+=($(compgen -f -- "$word"))',
         "    fi",
         "}",
         "complete -F _budget budget",
@@ -95,6 +99,7 @@ def zsh(commands: Mapping[str, Completion]) -> str:
         "# Completion of budget for zsh. Save it as _budget in a folder of $fpath, or source it after compinit.",
         "_budget() {",
         "    local -a offer",
+        "    local files=",
         "    if (( CURRENT == 2 )); then",
         "        offer=(",
         *(f"            {_single(f'{name}:{one.summary}')}" for name, one in commands.items()),
@@ -109,12 +114,13 @@ def zsh(commands: Mapping[str, Completion]) -> str:
             lines.append(f"        *:{name}:{option}:*) offer=({_spaced(words)}) ;;")
         lines.append(f"        *:{name}:*:-*) offer=({_spaced(one.options)}) ;;")
         if one.words:
-            lines.append(f"        3:{name}:*) offer=({_spaced(one.words)}) ;;")
+            lines.append(f"        3:{name}:*) offer=({_spaced(one.words)}){'; files=too' if one.files else ''} ;;")
     lines += [
         "    esac",
         "    if (( ${#offer} )); then",
         "        compadd -a offer",
-        "    else",
+        "    fi",
+        '    if (( ! ${#offer} )) || [[ -n "$files" ]]; then',
         "        _files",
         "    fi",
         "}",
@@ -139,7 +145,8 @@ def fish(commands: Mapping[str, Completion]) -> str:
             takes = f" -x -a {_fish(' '.join(map(_fish, words)))}" if words else ""
             lines.append(f"{after} -l {option.removeprefix('--')}{takes} -d {_fish(said)}")
         if one.words:
-            lines.append(f"{after} -f -a {_fish(' '.join(map(_fish, one.words)))}")
+            alone = "" if one.files else " -f"
+            lines.append(f"{after}{alone} -a {_fish(' '.join(map(_fish, one.words)))}")
     return "\n".join(lines)
 
 

@@ -12,6 +12,9 @@ from budget.description.remedies import REMEDIES
 from budget.report.explain import explain_text
 from budget.report.lines import finding_line
 
+TAKES_FILES_TOO = True
+"""A shell offers files beside the codes."""
+
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take a code, or a file and an ID."""
@@ -52,8 +55,9 @@ def _figures(file: str, id_: str) -> int:
             print(finding_line(one.name, finding), file=sys.stderr)
         return REFUSED
     description = one.snapshot.description
-    if id_ not in description.order:
-        say(f"{file} has no {id_!r}; {nearest(id_, description.order, 3)}")
+    known = [*description.sources, *description.sections, *description.terminals]
+    if id_ not in known:
+        say(f"{file} has no {id_!r}; {nearest(id_, known, 3)}")
         return REFUSED
     print(explain_text(description, one.snapshot.budget, id_), end="")
     return OK

@@ -9,10 +9,10 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
-Place = Literal["ledger", "detail", "findings", "manual", "text", "list", "entry"]
-"""Where the hands are: a screen, a list to pick from, or a field that is being written in."""
+Place = Literal["ledger", "detail", "explain", "findings", "manual", "text", "list", "form", "entry"]
+"""Where the hands are: a screen, a list to pick from, a form to fill in, or a field that is being written in."""
 
-SCREENS: tuple[Place, ...] = ("ledger", "detail", "findings", "manual")
+SCREENS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", "manual")
 """Screens on which a letter is a command."""
 
 EVERYWHERE: tuple[Place, ...] = (*SCREENS, "text")
@@ -32,7 +32,8 @@ class Action:
     """Place in the footer, the first six are shown; 99 is never shown."""
 
 
-_LISTS: tuple[Place, ...] = ("ledger", "detail", "findings", "list")
+_PICKS: tuple[Place, ...] = ("ledger", "detail", "findings")
+_LISTS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", "list")
 
 ACTIONS: tuple[Action, ...] = (
     Action("up", "Move up", ("up",), _LISTS),
@@ -47,9 +48,12 @@ ACTIONS: tuple[Action, ...] = (
     Action("next_cell", "Move to the next cell that can be edited", ("tab",)),
     Action("previous_cell", "Move to the cell before that can be edited", ("shift+tab",)),
     Action("set", "Set a key of the row, in words of the file", ("equals_sign",), ("ledger", "detail"), "set key"),
-    Action("pick", "Pick for the cell from a list", ("p",), ("ledger", "detail"), "pick", 3),
-    Action("pick_size", "Pick a size", ("s",)),
-    Action("pick_fitting", "Pick fittings", ("f",)),
+    Action("pick", "Pick from a list for the cell, or for the key of a finding", ("p",), _PICKS, "pick", 3),
+    Action("pick_size", "Pick a size", ("s",), ("ledger", "detail")),
+    Action("pick_fitting", "Pick fittings, count them, change or remove them", ("f",), ("ledger", "detail")),
+    Action("pick_takeoff", "Pick what it is at its junction", ("y",), ("ledger", "detail")),
+    Action("pick_family", "Pick the family of its junction", (), ("ledger", "detail")),
+    Action("pick_transition", "Pick the change of area at its junction", ("w",), ("ledger", "detail")),
     Action("add_after", "Add a section after this one", ("a",), short="add", rank=2),
     Action("add_before", "Add a section before this one", ("b",)),
     Action("add_beneath", "Add a section beneath this one", ("c",)),
@@ -62,32 +66,35 @@ ACTIONS: tuple[Action, ...] = (
     Action("rename", "Rename the ID, everywhere", ("r",)),
     Action("fold", "Fold or unfold the branch", ("space",)),
     Action("fold_all", "Fold or unfold every branch", ("z",)),
-    Action("undo", "Undo", ("u",), ("ledger", "detail", "findings"), "undo", 5),
-    Action("redo", "Redo", ("U", "ctrl+r"), ("ledger", "detail", "findings")),
+    Action("undo", "Undo", ("u",), ("ledger", "detail", "explain", "findings"), "undo", 5),
+    Action("redo", "Redo", ("U", "ctrl+r"), ("ledger", "detail", "explain", "findings")),
     Action("search", "Search the ledger", ("slash",), short="search"),
     Action("next_match", "Next match", ("n",)),
     Action("previous_match", "Match before", ("N",)),
-    Action("go_to", "Go to an ID", ("g",), ("ledger", "detail", "findings")),
+    Action("go_to", "Go to an ID", ("g",), ("ledger", "detail", "explain", "findings")),
     Action("go_to_index", "Go to the index terminal", ("i",)),
     Action("next_finding", "Go to the next finding", ("e",)),
     Action("next_source", "Switch to the next source", ("P",)),
     Action("show_ledger", "Ledger", ("f2",), EVERYWHERE),
-    Action("show_detail", "Row detail", ("v", "f3"), ("ledger", "findings"), "detail"),
-    Action("show_findings", "Findings", ("F", "f4"), ("ledger", "detail", "manual"), "findings"),
+    Action("show_detail", "Row detail", ("v", "f3"), ("ledger", "explain", "findings"), "detail"),
+    Action("explain", "Explain the figures of the row", ("E", "f6"), ("ledger", "detail"), "explain"),
+    Action("show_findings", "Findings", ("F", "f4"), ("ledger", "detail", "explain", "manual"), "findings"),
     Action("show_text", "Text", ("T", "f5"), SCREENS),
     Action("show_manual", "Manual", ("question_mark", "f1"), SCREENS),
     Action("commands", "Command list", ("colon", "ctrl+p"), EVERYWHERE, "commands", 6),
-    Action("back", "Back to the ledger", ("escape",), ("ledger", "detail", "findings", "manual", "text"), "back"),
+    Action("back", "Back to the ledger", ("escape",), EVERYWHERE, "back"),
     Action("save", "Save", ("ctrl+s",), EVERYWHERE, "save"),
     Action("save_as", "Save under another name", (), SCREENS),
     Action("suspend", "Suspend to the shell", ("ctrl+z",), SCREENS),
-    Action("quit", "Quit", ("ctrl+q",), (*EVERYWHERE, "list", "entry")),
+    Action("quit", "Quit", ("ctrl+q",), (*EVERYWHERE, "list", "form", "entry")),
     Action("choose", "Take what is marked", ("enter",), ("list", "findings"), "take", 1),
-    Action("leave", "Leave things as they were", ("escape", "ctrl+c"), ("list", "entry"), "leave", 3),
-    Action("accept", "Enter what is written", ("enter",), ("entry",), "take", 1),
+    Action("leave", "Leave things as they were", ("escape", "ctrl+c"), ("list", "form", "entry"), "leave", 3),
+    Action("accept", "Enter what is written", ("enter",), ("form", "entry"), "take", 1),
     Action("accept_next", "Enter it and edit the next cell", ("tab",), ("entry",), "next cell", 2),
     Action("accept_previous", "Enter it and edit the cell before", ("shift+tab",), ("entry",)),
     Action("pick_instead", "Pick from a list instead", ("down",), ("entry",), "pick"),
+    Action("next_field", "Write the next value", ("tab", "down"), ("form",), "next"),
+    Action("previous_field", "Write the value before", ("shift+tab", "up"), ("form",)),
     Action("apply_text", "Put the text into the design", ("ctrl+e",), ("text",), "apply", 1),
     Action("undo_text", "Undo in the text", ("ctrl+z",), ("text",)),
 )
@@ -99,11 +106,13 @@ LETTERS: Mapping[str, str] = {"h": "left", "j": "down", "k": "up", "l": "right"}
 
 FOOTER: Mapping[Place, tuple[str, ...]] = {
     "ledger": ("edit", "add_after", "add_terminal", "undo", "save", "commands"),
-    "detail": ("edit", "pick", "undo", "save", "back", "commands"),
-    "findings": ("choose", "show_detail", "back", "commands"),
+    "detail": ("edit", "pick", "explain", "undo", "back", "commands"),
+    "explain": ("show_detail", "undo", "back", "commands"),
+    "findings": ("choose", "pick", "show_detail", "undo", "back", "commands"),
     "manual": ("back", "show_findings", "commands"),
     "text": ("apply_text", "save", "back", "commands"),
     "list": ("choose", "leave"),
+    "form": ("accept", "next_field", "leave"),
     "entry": ("accept", "accept_next", "leave", "pick_instead"),
 }
 """What the footer shows at each place, in order of use; six at most."""

@@ -22,6 +22,7 @@ from budget.screens.chooser import Chooser, Offer
 from budget.screens.config import Config
 from budget.screens.doing import DOINGS
 from budget.screens.foot import Foot
+from budget.screens.form import Form
 from budget.screens.ledger import Ledger, Mark
 from budget.screens.rows import View
 from budget.screens.themes import Theme
@@ -70,6 +71,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.returns_to: Place = "ledger"
         self.sought = ""
         self.wide = False
+        self.beside_width = 0
         self.change: tuple[str, str] = ("", "")
         self.animation_level = "none"
         self._own_filters: tuple[LineFilter, ...] = (SafeFilter(), AsciiFilter()) if ascii_only else (SafeFilter(),)
@@ -82,6 +84,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.budget_line = BudgetLine(theme, view, self.ledger.source)
         self.foot = Foot(theme, config.keymap)
         self.choosers: dict[str, Chooser] = {}
+        self._form: Form | None = None
         self._text: TextScreen | None = None
         self._manual: ManualScreen | None = None
 
@@ -120,12 +123,12 @@ class BudgetApp(App[int], inherit_bindings=False):
 
     def turn_to(self, place: Place) -> None:
         """Bring a screen to the front, in the place of the ledger."""
-        if place == "list" and self.at != "list":
+        if place == "list" and self.at not in ("list", "form"):
             self.returns_to = self.at
         self.at = place
         for widget in self.middle.children:
             if widget.id == "beside":
-                widget.display = self.wide and place in ("ledger", "list", "findings")
+                widget.display = self.wide and place in ("ledger", "list", "form", "findings")
             else:
                 widget.display = widget.id == place
         self.screen.set_focus({"text": self._text, "manual": self._manual}.get(place))
@@ -142,6 +145,14 @@ class BudgetApp(App[int], inherit_bindings=False):
             self.choosers[place] = Chooser(self.colours, place)
             self.middle.mount(self.choosers[place])
         return self.choosers[place]
+
+    @property
+    def form(self) -> Form:
+        """The form; it is made when it is first asked for."""
+        if self._form is None:
+            self._form = Form(self.colours)
+            self.middle.mount(self._form)
+        return self._form
 
     @property
     def text(self) -> TextScreen:
@@ -234,6 +245,8 @@ class BudgetApp(App[int], inherit_bindings=False):
             entering.press(self, self.entry, self.entry.field.insert(event.text))
         elif self.at == "list":
             self.choosers["list"].write(self.choosers["list"].field.insert(event.text))
+        elif self.at == "form" and self.form.blank is not None:
+            choosing.fill_in(self, self.form.put(self.form.fields[self.form.place].insert(event.text)))
 
     def on_click(self, event: events.Click) -> None:
         """Go to the cell or entry that was clicked; twice edits or takes it."""
@@ -245,12 +258,12 @@ class BudgetApp(App[int], inherit_bindings=False):
 
     def on_mouse_scroll_down(self) -> None:
         """Move down with the wheel."""
-        if self.entry is None and self.at not in ("text", "manual"):
+        if self.entry is None and self.at not in ("text", "manual", "form"):
             self.do("down")
 
     def on_mouse_scroll_up(self) -> None:
         """Move up with the wheel."""
-        if self.entry is None and self.at not in ("text", "manual"):
+        if self.entry is None and self.at not in ("text", "manual", "form"):
             self.do("up")
 
     def on_resize(self, event: events.Resize) -> None:
@@ -275,6 +288,9 @@ class BudgetApp(App[int], inherit_bindings=False):
             return True
         if self.at == "list":
             return choosing.write(self, event.key, event.character)
+        if self.at == "form":
+            choosing.fill_in(self, self.form.press(event.key, event.character))
+            return True
         return False
 
 

@@ -13,7 +13,7 @@ from budget.screens.ledger import field_pieces
 from budget.screens.lines import Lines, Piece
 from budget.screens.safe import clip, fit, width_of, wrapped
 from budget.screens.themes import Theme
-from budget.screens.trials import PAUSE
+from budget.screens.trials import BREATH, PAUSE, Pace
 
 HEAD = 2
 """Lines above the entries: what the list is and the filter, and the headings."""
@@ -41,9 +41,9 @@ class Choice:
 class Offer:
     """A list to pick from: its title, the headings, the entries, and what is done with one.
 
-    `more` computes further cells of an entry when it comes into view, of a `slow` one only when the cursor rests on it;
-    `beneath` tells more of the marked entry in paragraphs under the list; `write` makes an entry of what was typed,
-    where that is allowed; `step` says what left and right do with an entry.
+    `more` computes further cells of the entries in view: all at once, one by one between the keys, or of the marked
+    one alone when no key comes, by the `pace`; `beneath` tells more of the marked entry in paragraphs under the list;
+    `write` makes an entry of what was typed, where that is allowed; `step` says what left and right do with an entry.
     """
 
     title: str
@@ -52,7 +52,7 @@ class Offer:
     take: Callable[[object], None]
     filters: bool = True
     more: Callable[[object], tuple[str, ...]] | None = None
-    slow: bool = False
+    pace: Pace = "at once"
     beneath: Callable[[object], tuple[str, ...]] | None = None
     write: Callable[[str], Choice | None] | None = None
     step: Callable[[object, int], None] | None = None
@@ -194,25 +194,30 @@ class Chooser(Lines):
         if self.offer.more is None:
             return choice.cells
         found = self._more.get(id(choice))
-        if found is None and self.offer.slow:
-            if choice is self.marked:
-                self._look_later()
-            found = ("",) * (len(self.offer.heads) - len(choice.cells))
-        elif found is None:
+        if found is None and self.offer.pace == "at once":
             found = self._more[id(choice)] = self.offer.more(choice.value)
+        elif found is None:
+            found = ("",) * (len(self.offer.heads) - len(choice.cells))
+            if choice is self.marked or self.offer.pace == "one by one":
+                self._look_later(PAUSE)
         return (*choice.cells[:1], *found, *choice.cells[1:])
 
-    def _look_later(self) -> None:
-        """Compute the further cells of the marked entry when no key comes for a while."""
+    def _look_later(self, pause: float) -> None:
         if self._waiting is not None:
             self._waiting.stop()
-        self._waiting = self.set_timer(PAUSE, self._look)
+        self._waiting = self.set_timer(pause, self._look)
 
     def _look(self) -> None:
-        marked, more = self.marked, self.offer.more
-        if self.display and marked is not None and more is not None and id(marked) not in self._more:
-            self._more[id(marked)] = more(marked.value)
-            self.repaint()
+        """Compute the further cells of one entry, the marked one first, and go on with the next if there is time."""
+        more, view = self.offer.more, self.kept[self.top : self.top + self.page]
+        one_by_one = self.offer.pace == "one by one"
+        wanted = [c for c in (self.marked, *(view if one_by_one else ())) if c is not None and id(c) not in self._more]
+        if not self.display or more is None or not wanted:
+            return
+        self._more[id(wanted[0])] = more(wanted[0].value)
+        self.repaint()
+        if one_by_one and wanted[1:]:
+            self._look_later(BREATH)
 
     def _filter(self) -> None:
         words = self.field.text.casefold().split()

@@ -5,7 +5,8 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from budget.description.finding import Path
-from budget.screens import changing, entering
+from budget.report.located import Located
+from budget.screens import changing, entering, fitting_form
 from budget.screens.actions import ACTIONS, Place
 from budget.screens.chooser import Choice, Offer
 from budget.screens.picking import offer_for
@@ -14,6 +15,9 @@ from budget.screens.writing import key_of_cell
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
 
+MOST = 10_000
+"""Fittings of a kind on a section: no more can be counted, or taken away at once."""
+
 
 def pick(app: BudgetApp) -> None:
     """Offer what can stand in the cell, or in the line of the row detail."""
@@ -21,9 +25,12 @@ def pick(app: BudgetApp) -> None:
     if app.at == "detail":
         marked = app.choosers["detail"].marked
         path = marked.value if marked is not None and isinstance(marked.value, tuple) else None
+    elif app.at == "findings":
+        marked = app.choosers["findings"].marked
+        path = marked.value.path if marked is not None and isinstance(marked.value, Located) else None
     else:
         path = key_of_cell(app.document.snapshot.text, row, app.ledger.column) if row is not None else None
-    if path is not None and row is not None and path == row.path:
+    if path is not None and row is not None and path == row.path and app.at != "findings":
         changing.move(app)
         return
     _offer_for(app, path)
@@ -66,6 +73,9 @@ def leave(app: BudgetApp) -> None:
     if app.entry is not None:
         entering.leave(app)
         return
+    if app.at == "form" and app.form.sheet is not None:
+        app.form.sheet.leave()
+        return
     app.turn_to(app.returns_to)
     app.show(app.document.snapshot)
     app.tell()
@@ -78,11 +88,26 @@ def write(app: BudgetApp, key: str, character: str | None) -> bool:
     if step is not None and key in ("left", "right", "minus", "plus") and marked is not None:
         step(marked.value, 1 if key in ("right", "plus") else -1)
         return True
+    if step is not None and key == "delete" and marked is not None and not chooser.field.text:
+        step(marked.value, -MOST)
+        return True
     field = chooser.field.press(key, character)
     if field is not None:
         chooser.write(field)
         app.tell()
     return field is not None
+
+
+def next_field(app: BudgetApp, step: int) -> None:
+    """Go to another value of the form."""
+    app.form.go(step)
+    app.tell()
+
+
+def fill_in(app: BudgetApp, changed: bool) -> None:
+    """Tell what the values in the form lead to, where one of them was changed."""
+    if changed:
+        app.trials.later(lambda: fitting_form.try_out(app))
 
 
 def show_commands(app: BudgetApp) -> None:

@@ -3,34 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 
 from budget.description.finding import Path
 from budget.document import Snapshot
-from budget.network.results import (
-    DeviceResult,
-    ItemResult,
-    LegResult,
-    RunResult,
-    SectionResult,
-    SourceResult,
-    TerminalResult,
-)
+from budget.network.results import RunResult, SectionResult, SourceResult, TerminalResult
 from budget.report.figures import Figures, plain_number
 from budget.report.plain import plain
+from budget.screens.joining import STATED, hangs_on_section, part_of
+from budget.screens.losses import Losses
+from budget.screens.page import Line
 from budget.screens.rows import Row, find_item
-from budget.screens.writing import index_of, stated_keys, written
+from budget.screens.writing import index_of, is_stated, stated_keys, written
 from budget.units import Dimension
-
-
-@dataclass(frozen=True, slots=True)
-class Line:
-    """One line: what it is, its text, the role of its style, and the keys of the value where it can be edited."""
-
-    label: str
-    text: str = ""
-    role: str = ""
-    path: Path | None = None
 
 
 def lines_of(snapshot: Snapshot, row: Row) -> list[Line]:
@@ -41,7 +25,7 @@ def lines_of(snapshot: Snapshot, row: Row) -> list[Line]:
         for finding in snapshot.findings
         if finding.owner == row.id and row.kind != "item"
     ]
-    lines += [Line("as written", "", "heading"), *_written(snapshot.text, row.path)]
+    lines += [Line("as written", "", "heading"), *_written(snapshot.text, row.path), *_unstated(snapshot, row)]
     return [*lines, *_Computed(snapshot, row).lines()]
 
 
@@ -53,6 +37,23 @@ def _written(text: str, table: Path) -> Iterator[Line]:
         if len(path) == len(table) + 2 and path[: len(table)] == table:
             name = written(text, (*path, "name")) or written(text, (*path, "kind"))
             yield Line(f"  {plain(str(path[-2]))} {path[-1]}", plain(name), "")
+
+
+def _unstated(snapshot: Snapshot, row: Row) -> Iterator[Line]:
+    """Yield what could be stated of the junction that a row hangs on, with what stands for it now."""
+    part = part_of(snapshot.description, row.id) if row.kind in ("section", "terminal") else None
+    if part is None or part.run is None or not hangs_on_section(snapshot.description, part):
+        return
+    run, joined = part.run, part.takeoff in STATED
+    for key, value, shown in (
+        ("takeoff", part.takeoff, True),
+        ("junction", run.junction, joined),
+        ("angle", f"{run.angle:g} deg", joined),
+        ("transition", None, True),
+    ):
+        path = (*row.path, key)
+        if shown and not is_stated(snapshot.text, path):
+            yield Line(f"  {key}", f"not stated: {value}" if value else "not stated", "faint", path)
 
 
 class _Computed:
@@ -98,6 +99,7 @@ class _Computed:
         ):  # fmt: skip
             yield from self._pressure(label, value)
         yield self._flow("duty flow", result.duty_flow, None)
+        yield from self._leakage(result.leakage)
         for label, value in (
             ("hydraulic power", result.hydraulic_power), ("shaft power", result.shaft_power),
             ("electrical power", result.electrical_power),
@@ -113,11 +115,14 @@ class _Computed:
             over = limit is not None and value > limit
             spent = self.figures.pressure(value, self.density, unit=True)
             yield Line(f"  {heading}", spent + of, "over" if over else "")
-        yield from self._items(result.items)
+        if result.items:
+            yield Line("items", "", "heading")
+        yield from Losses(self.figures, self.density).items(result.items)
 
     def _section(self, result: SectionResult) -> Iterator[Line]:
         self._take_density(result.source)
-        yield from self._run(result.run)
+        yield from self._size(result.run)
+        yield from Losses(self.figures, self.density).run(result.run, result.items, result.device)
         yield Line("in the circuit", "", "heading")
         yield from self._pressure("sum so far", result.cumulative)
         yield from self._pressure("differential", result.differential)
@@ -125,8 +130,6 @@ class _Computed:
         yield Line("  index circuit", "yes" if result.index else "no", "index" if result.index else "")
         yield Line("  serves", f"{len(result.serves)}: {plain(', '.join(result.serves[:12]))}")
         yield from self._authority(result.authority, result.authority_low)
-        yield from self._device(result.device)
-        yield from self._items(result.items)
 
     def _terminal(self, result: TerminalResult) -> Iterator[Line]:
         self._take_density(result.source)
@@ -141,11 +144,12 @@ class _Computed:
         yield Line("  index circuit", "yes" if result.index else "no", "index" if result.index else "")
         yield Line("  path", plain(" ".join(result.path)))
         yield from self._authority(result.authority, result.authority_low)
-        yield from self._device(result.device)
-        yield from self._items(result.items)
+        losses = Losses(self.figures, self.density)
+        yield from losses.items(result.items)
+        yield from losses.device(result.device)
         if result.run_out is not None:
-            yield Line("run-out", "", "heading")
-            yield from self._run(result.run_out)
+            yield from self._size(result.run_out, "run-out")
+            yield from losses.run(result.run_out)
 
     def _item(self) -> Iterator[Line]:
         item, result, source = find_item(self.snapshot, self.row)
@@ -159,55 +163,17 @@ class _Computed:
         if item.control:
             yield Line("  control", item.control)
 
-    def _run(self, run: RunResult) -> Iterator[Line]:
-        yield Line("computed", "", "heading")
+    def _size(self, run: RunResult, what: str = "computed") -> Iterator[Line]:
+        yield Line(what, "", "heading")
         yield self._flow("flow", run.flow, run.mass_flow)
         for label, value in (("bore", run.bore), ("width", run.width), ("height", run.height)):
             if value is not None:
                 yield Line(f"  {label}", self.figures.text(value, Dimension.LENGTH, small=True, unit=True))
-        for leg in run.legs:
-            yield from self._leg(leg)
-        yield Line("drop", "", "heading")
-        for label, value in (
-            ("friction", run.friction), ("fittings", run.fittings), ("junction", run.junction),
-            ("transition", run.transition), ("items", run.items), ("static", run.static), ("drop", run.drop),
-        ):  # fmt: skip
-            yield from self._pressure(label, value)
+        yield from self._leakage(run.leakage)
 
-    def _leg(self, leg: LegResult) -> Iterator[Line]:
-        figures = self.figures
-        yield Line(f"{leg.leg} leg", "", "heading")
-        yield Line("  velocity", figures.text(leg.velocity, Dimension.VELOCITY, unit=True))
-        yield from self._pressure("velocity pressure", leg.velocity_pressure)
-        yield Line("  Reynolds number", f"{plain_number(leg.reynolds)} ({leg.regime})")
-        yield Line("  friction factor", plain_number(leg.friction_factor))
-        yield Line("  gradient", figures.text(leg.gradient, Dimension.GRADIENT, unit=True))
-        yield from self._pressure("friction", leg.friction)
-        yield from self._pressure("junction", leg.junction)
-        for loss in leg.losses:
-            drop = figures.pressure(loss.drop, self.density, unit=True)
-            source = ", ".join(plain(part) for part in (loss.method, loss.source, loss.known_from) if part)
-            yield Line(f"  {loss.count} {plain(loss.name)}", f"K {plain_number(loss.k)}  {drop}  {source}")
-
-    def _device(self, device: DeviceResult | None) -> Iterator[Line]:
-        if device is None:
-            return
-        yield Line("device", plain(device.name), "heading")
-        for label, value in (
-            ("base drop", device.base), ("take-up", device.take_up), ("drop", device.drop),
-            ("signal", device.signal), ("set point", device.set_point),
-        ):  # fmt: skip
-            yield from self._pressure(label, value)
-        for label, value in (("setting", device.setting), ("Kv", device.kv), ("k", device.k)):
-            if value is not None:
-                yield Line(f"  {label}", plain_number(value))
-
-    def _items(self, items: tuple[ItemResult, ...]) -> Iterator[Line]:
-        if items:
-            yield Line("items", "", "heading")
-        for item in items:
-            drop = self.figures.pressure(item.drop, self.density, unit=True)
-            yield Line(f"  {item.heading}", f"{drop}  {plain(item.name)}")
+    def _leakage(self, leakage: float | None) -> Iterator[Line]:
+        if leakage is not None:
+            yield Line("  leakage", f"{self.figures.text(leakage, Dimension.FLOW, unit=True)} at mean static pressure")
 
     def _authority(self, authority: float | None, low: float | None) -> Iterator[Line]:
         if authority is not None:

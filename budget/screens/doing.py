@@ -6,7 +6,7 @@ from collections.abc import Callable, Mapping
 from functools import partial
 from typing import TYPE_CHECKING
 
-from budget.screens import changing, choosing, entering, moving, shaping, turning
+from budget.screens import changing, choosing, entering, fitting_form, moving, shaping, telling, turning
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -36,13 +36,18 @@ DOINGS: Mapping[str, Doing] = {
     "previous_cell": lambda app: entering.next_cell(app, -1),
     "set": entering.set_key,
     "rename": entering.rename,
-    "accept": entering.accept,
+    "accept": lambda app: fitting_form.enter(app) if app.at == "form" else entering.accept(app),
     "accept_next": lambda app: entering.accept_and_move(app, 1),
     "accept_previous": lambda app: entering.accept_and_move(app, -1),
     "leave": choosing.leave,
     "pick": choosing.pick,
     "pick_size": lambda app: choosing.pick_key(app, "size"),
     "pick_fitting": lambda app: choosing.pick_key(app, "fittings"),
+    "pick_takeoff": lambda app: choosing.pick_key(app, "takeoff"),
+    "pick_family": lambda app: choosing.pick_key(app, "junction"),
+    "pick_transition": lambda app: choosing.pick_key(app, "transition"),
+    "next_field": lambda app: choosing.next_field(app, 1),
+    "previous_field": lambda app: choosing.next_field(app, -1),
     "pick_instead": choosing.pick_instead,
     "choose": choosing.choose,
     "add_after": lambda app: changing.reshape(app, shaping.add_section, "after"),
@@ -59,7 +64,8 @@ DOINGS: Mapping[str, Doing] = {
     "save": turning.save,
     "save_as": turning.save_as,
     "show_ledger": lambda app: app.turn_to("ledger"),
-    "show_detail": turning.show_detail,
+    "show_detail": telling.show_detail,
+    "explain": telling.show_explain,
     "show_findings": turning.show_findings,
     "show_text": turning.show_text,
     "show_manual": turning.show_manual,

@@ -22,7 +22,7 @@ SAME_IN_A_TERMINAL: Mapping[str, str] = {
 }
 """Keys that a plain terminal can't tell apart."""
 
-WRITTEN_IN: tuple[Place, ...] = ("entry", "list", "text")
+WRITTEN_IN: tuple[Place, ...] = ("entry", "list", "form", "text")
 """Places where a letter or sign is written, not a command."""
 
 _SIGNS: Mapping[str, str] = {
@@ -142,7 +142,7 @@ def _by_place(draft: _Draft) -> dict[Place, dict[str, str]]:
         for place in action.places:
             keys = found.setdefault(place, {})
             for key in draft.keys[action.id]:
-                if place in ("entry", "list") and _is_sign(key):
+                if place in ("entry", "list", "form") and _is_sign(key):
                     if LETTERS.get(key) != action.id:
                         draft.problems.append(f'keys.{action.id}: a field needs "{spelled(key)}"; choose another')
                 elif keys.setdefault(key, action.id) != action.id:

@@ -1,20 +1,21 @@
-"""Lists to pick a value from: sizes with their bore, fittings with their coefficient, and what each would drop."""
+"""Lists to pick a value from: sizes with their bore, words, and what each would drop."""
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from budget.catalogue import fitting, fitting_names, pipe_line, standard_sizes
+from budget.catalogue import pipe_line, standard_sizes
 from budget.description import schema
 from budget.description.edits import Edit, EditError, SetValue, Several, Unset
 from budget.description.finding import Level, Path, dotted
-from budget.description.model import Line, Run
-from budget.document import Snapshot
-from budget.network.results import LossResult, RunResult
-from budget.report.figures import NONE, Figures, plain_number
+from budget.description.model import Line
+from budget.report.figures import NONE, Figures
 from budget.report.plain import plain
+from budget.screens import joining
 from budget.screens.chooser import Choice, Offer
+from budget.screens.fitting_list import fittings
 from budget.screens.rows import OVER_SIGN
+from budget.screens.runs import result_of, run_of
 from budget.screens.writing import is_stated, spec_of
 from budget.units import Dimension, spell
 
@@ -26,6 +27,8 @@ def offer_for(app: BudgetApp, path: Path) -> Offer | None:
     """Return the list from which a value can be picked, or None where it can only be written."""
     key = str(path[2]) if len(path) == 3 else str(path[-1])
     description = app.document.snapshot.description
+    if key in joining.KEYS and len(path) == 3:
+        return joining.joints(app, path)
     spec = spec_of(path)
     if key in ("size", "bore") and len(path) == 3:
         return sizes(app, path[:2])
@@ -74,7 +77,7 @@ def sizes(app: BudgetApp, table: Path) -> Offer | None:
     start = next((place for place, (size, _) in enumerate(known) if size == now), 0)
     return Offer(
         f"size of {plain(str(table[1]))}", heads, choices, lambda size: _set(app, edit(size), path),
-        more=more, write=write, start=start,
+        more=more, pace=app.trials.pace, write=write, start=start,
     )  # fmt: skip
 
 
@@ -88,69 +91,6 @@ def sizes_of(line: Line, units: str) -> tuple[tuple[str, float | None], ...]:
     system = "IP" if units == "IP" else "SI"
     unit = "in" if system == "IP" else "mm"
     return tuple((spell(side, unit, Dimension.LENGTH, 6), side) for side in standard_sizes("round", system).sides)
-
-
-def fittings(app: BudgetApp, table: Path) -> Offer | None:
-    """Offer every fitting; left and right count it, Enter enters the counts (one of it, if nothing was counted)."""
-    snapshot, figures = app.document.snapshot, Figures(app.document.snapshot.description)
-    run = run_of(snapshot, table)
-    if run is None:
-        return None
-    before = {use.name: use.count for use in run.fittings if len(use.path) > 2 and use.path[2] == "fittings"}
-    counts = dict(before)
-    path = (*table, "fittings")
-
-    def edit(wanted: dict[str, int]) -> Edit:
-        kept = {name: count for name, count in wanted.items() if count}
-        return SetValue(path, kept) if kept else Unset(path)
-
-    def more(name: object) -> tuple[str, ...]:
-        count = counts.get(str(name), 0)
-        loss = _loss_of(app, table, edit({**counts, str(name): max(1, count)}), str(name))
-        if loss is None:
-            return (str(count or ""), NONE, NONE)
-        each = figures.text(loss.drop / loss.count if loss.count else None, Dimension.PRESSURE)
-        return (str(count or ""), plain_number(loss.k), each)
-
-    def step(name: object, by: int) -> None:
-        counts[str(name)] = max(0, counts.get(str(name), 0) + by)
-        try:
-            app.show(app.trials.preview(edit(counts)), before=snapshot)
-        except EditError as refused:
-            app.say(plain(str(refused)), "error")
-        app.choosers["list"].refresh_more()
-
-    def take(name: object) -> None:
-        if counts == before:
-            counts[str(name)] = counts.get(str(name), 0) + 1
-        _set(app, edit(counts), path)
-
-    own = snapshot.description.fittings
-    names = [(name, own[name].source) for name in own]
-    names += [(name, f.source if (f := fitting(name)) else "") for name in fitting_names()]
-    names.sort(key=lambda entry: entry[0] not in before)
-    heads = ("fitting", "count", "K", f"drop of one {figures.unit(Dimension.PRESSURE)}", "source")
-    choices = [Choice((plain(name), plain(source)), name, _mark(name in before)) for name, source in names]
-    title = f"fittings of {plain(str(table[1]))}, left and right count"
-    return Offer(title, heads, choices, take, more=more, step=step)
-
-
-def run_of(snapshot: Snapshot, table: Path) -> Run | None:
-    """Return the pipe or duct of a section or of a terminal's run-out."""
-    description, id_ = snapshot.description, str(table[1])
-    if table[0] == "section" and id_ in description.sections:
-        return description.sections[id_].run
-    if table[0] == "terminal" and id_ in description.terminals:
-        return description.terminals[id_].run
-    return None
-
-
-def _result_of(snapshot: Snapshot, table: Path) -> RunResult | None:
-    section = snapshot.budget.sections.get(str(table[1]))
-    if section is not None:
-        return section.run
-    terminal = snapshot.budget.terminals.get(str(table[1]))
-    return terminal.run_out if terminal is not None else None
 
 
 def _words(app: BudgetApp, path: Path, words: tuple[str, ...]) -> Offer | None:
@@ -167,7 +107,7 @@ def _words(app: BudgetApp, path: Path, words: tuple[str, ...]) -> Offer | None:
 
     return Offer(
         f"{dotted(path[2:])} of {plain(str(path[1]))}", ("", *_heads(figures)), [Choice((plain(w),), w) for w in words],
-        lambda word: _set(app, edit(word), path), more=more,
+        lambda word: _set(app, edit(word), path), more=more, pace=app.trials.pace,
     )  # fmt: skip
 
 
@@ -184,7 +124,7 @@ def _figures_with(app: BudgetApp, table: Path, edit: Edit, figures: Figures) -> 
         after = app.trials.preview(edit)
     except EditError:
         return (NONE, NONE, NONE, NONE)
-    run = _result_of(after, table)
+    run = result_of(after, table)
     source = after.budget.sources.get(app.ledger.source)
     required = figures.text(source.required if source else None, Dimension.PRESSURE)
     if run is None or not run.legs:
@@ -197,15 +137,6 @@ def _figures_with(app: BudgetApp, table: Path, edit: Edit, figures: Figures) -> 
         figures.text(run.drop, Dimension.PRESSURE),
         required,
     )
-
-
-def _loss_of(app: BudgetApp, table: Path, edit: Edit, name: str) -> LossResult | None:
-    try:
-        run = _result_of(app.trials.preview(edit), table)
-    except EditError:
-        return None
-    losses = run.legs[0].losses if run is not None and run.legs else ()
-    return next((loss for loss in losses if loss.name == name), None)
 
 
 def _set(app: BudgetApp, edit: Edit, path: Path) -> None:

@@ -9,10 +9,8 @@ from budget.description.finding import Level, dotted
 from budget.manual import titles
 from budget.report.located import Located
 from budget.report.plain import plain
-from budget.screens import choosing, entering, moving, saving
+from budget.screens import entering, moving, saving, telling
 from budget.screens.chooser import Choice, Chooser, Offer
-from budget.screens.detail import lines_of
-from budget.screens.rows import Row
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -23,6 +21,8 @@ LEDGER_AT_LEAST = 82
 
 def about(app: BudgetApp) -> tuple[str, str]:
     """Return what is to be told of the row under the cursor, with the role of its style."""
+    if app.at == "form" and app.form.blank is not None:
+        return app.form.blank.meaning, "faint"
     if app.at in app.choosers:
         marked = app.choosers[app.at].marked
         if app.at == "findings" and marked is not None:
@@ -43,36 +43,6 @@ def about(app: BudgetApp) -> tuple[str, str]:
 # The row detail
 
 
-def show_detail(app: BudgetApp) -> None:
-    """Show everything written and computed for the row under the cursor."""
-    row = app.ledger.row
-    if app.at == "findings":
-        choosing.choose(app)
-        row = app.ledger.row
-    if row is None:
-        return
-    app.chooser("detail").present(_detail(app, row))
-    app.turn_to("detail")
-
-
-def _detail(app: BudgetApp, row: Row) -> Offer:
-    lines = lines_of(app.ledger.view.snapshot, row)
-    choices = [Choice((line.label, line.text), line.path, line.role) for line in lines]
-    return Offer("Row detail", ("", ""), choices, lambda _: None, filters=False)
-
-
-def follow(app: BudgetApp) -> None:
-    """Let the row detail follow the cursor, and the lists the run, where they are in view."""
-    row = app.ledger.row
-    beside = app.choosers.get("beside")
-    if row is not None and beside is not None and beside.display:
-        beside.present(_detail(app, row))
-    if app.at == "detail" and row is not None:
-        app.choosers["detail"].present(_detail(app, row), keep=True)
-    if app.at == "findings":
-        app.choosers["findings"].present(_findings(app), keep=True)
-
-
 def lay_out(app: BudgetApp, width: int) -> None:
     """Put the row detail beside the ledger where there is room, and take it away where there is none."""
     if app.wide and "beside" not in app.choosers:
@@ -80,7 +50,8 @@ def lay_out(app: BudgetApp, width: int) -> None:
         app.middle.mount(app.choosers["beside"])
     if app.wide:
         most = width - LEDGER_AT_LEAST
-        app.choosers["beside"].styles.width = max(most - 50, min(most, 56))
+        app.beside_width = max(most - 50, min(most, 56))
+        app.choosers["beside"].styles.width = app.beside_width
     app.turn_to(app.at)
 
 
@@ -94,6 +65,13 @@ def edit(app: BudgetApp) -> None:
         app.say("this line is computed; Enter works on the lines as written", "note")
         return
     entering.edit_key(app, marked.value)
+
+
+def follow(app: BudgetApp) -> None:
+    """Let what is told of the row follow the cursor, and the findings the run, where they are in view."""
+    telling.follow(app)
+    if app.at == "findings":
+        app.choosers["findings"].present(_findings(app), keep=True)
 
 
 # Findings

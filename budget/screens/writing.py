@@ -117,6 +117,13 @@ def copied(text: str, table: Path | None, keys: tuple[str, ...]) -> dict[str, An
     return found
 
 
+def length_of(text: str, array: Path) -> int:
+    """Return how many elements a list has, of tables with a header each or written in a line."""
+    index = index_of(text)
+    tables = {path[len(array)] for path in index.tables() if path[: len(array)] == array and len(path) > len(array)}
+    return len(tables) or (len(index.items(array)) if index.value(array) is not None else 0)
+
+
 def last_table(text: str, table: Path) -> Path:
     """Return the last table that belongs to a part: its own, or the last of its items and fittings."""
     tables = [path for path in index_of(text).tables() if path[:2] == table[:2]]

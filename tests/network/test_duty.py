@@ -371,3 +371,28 @@ def test_a_flow_holding_section_in_an_open_circuit_leaves_static_to_static() -> 
     found = budget_of(text.replace("M1 = {", 'M1 = { balance = "PIV",')).sources["P1"]
     # H = 4 + 5 + 10; N = 6.
     assert found.duty == pytest.approx(167_679.8 + 6000 * 1.21275 + 19_000 * 1.1)
+
+
+def test_the_return_legs_behind_a_flow_holding_device_are_held_too() -> None:
+    text = TREE.replace("RESERVES", RESERVES).replace("BRANCH", 'balance = "PIV",')
+    text = text.replace('B1 = { from = "M1", bore = 40, length = 0', 'B1 = { from = "M1", bore = 15, length = 2')
+    text = text.replace('C1 = { from = "B1", bore = 40, length = 0', 'C1 = { from = "B1", bore = 15, length = 3')
+    for word in ("SOURCE", "MAIN", "TERMINAL"):
+        text = text.replace(word, "")
+    budget = budget_of(text)
+    found = budget.sources["P1"]
+    pipes = budget.sections["B1"].run.friction + budget.sections["C1"].run.friction
+    assert pipes > 1000.0
+    assert found.required == pytest.approx(35_000.0 + pipes)
+    assert found.duty == pytest.approx(11_000 * 1.21275 + (24_000 + pipes) * 1.1)
+
+
+def test_the_return_legs_before_a_flow_holding_device_grow() -> None:
+    text = TREE.replace("RESERVES", RESERVES).replace("BRANCH", 'balance = "PIV",')
+    text = text.replace('M1 = { from = "P1", bore = 40, length = 0', 'M1 = { from = "P1", bore = 15, length = 2')
+    for word in ("SOURCE", "MAIN", "TERMINAL"):
+        text = text.replace(word, "")
+    budget = budget_of(text)
+    pipes = budget.sections["M1"].run.friction
+    assert pipes > 1000.0
+    assert budget.sources["P1"].duty == pytest.approx((11_000 + pipes) * 1.21275 + 24_000 * 1.1)

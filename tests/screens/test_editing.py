@@ -165,12 +165,9 @@ def test_a_value_is_edited_in_the_row_detail(play: Stage) -> None:
     async def act(hands: Hands) -> None:
         await hands.at("M1")
         await hands.press("v")
-        labels = [line.split()[0] for line in hands.lines() if line.strip()]
-        place = next(n for n, choice in enumerate(hands.app.front.kept) if choice.cells[0] == "  length")  # type: ignore[union-attr]
-        assert {"title", "size", "supply", "return", "friction"} <= set(labels) | {
-            choice.cells[0].split()[0]
-            for choice in hands.app.front.kept  # type: ignore[union-attr]
-        }
+        labels = [choice.cells[0].strip() for choice in hands.app.choosers["detail"].kept]
+        assert {"title", "size", "supply leg", "return leg", "friction"} <= set(labels)
+        place = labels.index("length")
         await hands.press(*["down"] * place)
         await hands.press("enter", "9", "enter")
         assert "length = 9\n" in hands.text

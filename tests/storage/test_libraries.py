@@ -159,7 +159,7 @@ def test_only_so_many_are_read(project: Path) -> None:
     assert "No such file" in many[-2].fault
 
 
-def test_a_run_without_a_file_has_no_libraries(project: Path) -> None:
+def test_a_run_without_a_file_has_no_libraries() -> None:
     (library,) = read_libraries(naming(WRITTEN), None)
     assert library.source is None
     assert "save it to a file first" in library.fault

@@ -1,0 +1,46 @@
+"""The Explain screen: every figure of a row as a calculation, formula, numbers, result and source."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator
+
+from budget.document import Snapshot
+from budget.report.caution import CAUTION
+from budget.report.explain import Step, explain
+from budget.report.plain import plain
+from budget.screens.page import Line
+from budget.screens.rows import Row
+
+_OPERATOR = re.compile(r" (?=[-+/x^=] )")
+
+
+def steps_of(snapshot: Snapshot, row: Row) -> list[Line]:
+    """Return the calculation of a row, of an item that of the row it stands on; the caution stands at the end."""
+    try:
+        steps = explain(snapshot.description, snapshot.budget, row.id)
+    except KeyError:
+        return [Line("nothing is computed", "until the errors are mended", "error")]
+    lines = [line for step in steps for line in _lines(step)]
+    return [*lines, Line("caution", "", "heading"), Line("", "", "faint", None, tuple(CAUTION.split(". ")))]
+
+
+def _lines(step: Step) -> Iterator[Line]:
+    """Spell a step; formula and numbers break before their operators alone."""
+    label = f"  {plain(step.title)}"
+    if not (step.formula or step.numbers or step.result or step.source):
+        yield Line(plain(step.title), "", "heading")
+        return
+    formula, result, source = plain(step.formula), plain(step.result), plain(step.source)
+    if step.numbers:
+        yield Line(label, "", "", None, _broken(formula))
+        yield Line("", "", "", None, _broken(f"= {plain(step.numbers)}"))
+        yield Line("", "", "title", None, (f"= {result}",), source)
+    elif formula:
+        yield Line(label, "", "title", None, (*_broken(formula), f"= {result}"), source)
+    else:
+        yield Line(label, "", "title", None, (result,), source)
+
+
+def _broken(text: str) -> tuple[str, ...]:
+    return tuple(_OPERATOR.split(text))
