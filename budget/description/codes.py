@@ -64,7 +64,7 @@ CODES: dict[str, Code] = {
     "held-differently": Code("error", "A differential-holding device that does not enclose all that hangs on it."),
     "set-point": Code("error", "A set point below the largest circuit behind the device."),
     "fluid": Code("error", "The fluid's properties can't be computed as stated."),
-    "frozen": Code("error", "The fluid is at or below its freezing point."),
+    "frozen": Code("error", "The fluid is below its freezing point."),
     # judgement of results
     "near-freezing": Code("warning", "The fluid comes within 3 K of its freezing point."),
     "fluid-range": Code("warning", "Outside the range of the fluid's property formulas."),

@@ -51,7 +51,7 @@ def check_format(reading: Reading, data: Mapping[str, Any]) -> None:
     elif stated != FORMAT or isinstance(stated, bool):
         reading.wrong("format", f"{what_is(stated)} is no format known here; write format = {FORMAT}", ("format",))
     elif next(iter(data)) != "format":
-        reading.findings.append(warning("format", "format should be the first line; move it up", ("format",)))
+        reading.wrong("format", "format must be the first line; move it up", ("format",))
 
 
 def check_id(reading: Reading, path: Path) -> None:

@@ -22,7 +22,7 @@ def steps_of(snapshot: Snapshot, row: Row) -> list[Line]:
     except KeyError:
         return [Line("nothing is computed", "until the errors are mended", "error")]
     lines = [line for step in steps for line in _lines(step)]
-    return [*lines, Line("caution", "", "heading"), Line("", "", "faint", None, tuple(CAUTION.split(". ")))]
+    return [*lines, Line("caution", "", "heading"), Line("", role="faint", pieces=tuple(CAUTION.split()), gap=" ")]
 
 
 def _lines(step: Step) -> Iterator[Line]:
@@ -33,13 +33,13 @@ def _lines(step: Step) -> Iterator[Line]:
         return
     formula, result, source = plain(step.formula), plain(step.result), plain(step.source)
     if step.numbers:
-        yield Line(label, "", "", None, _broken(formula))
-        yield Line("", "", "", None, _broken(f"= {plain(step.numbers)}"))
-        yield Line("", "", "title", None, (f"= {result}",), source)
+        yield Line(label, pieces=_broken(formula), gap=" ")
+        yield Line("", pieces=_broken(f"= {plain(step.numbers)}"), gap=" ")
+        yield Line("", role="title", pieces=(f"= {result}",), source=source)
     elif formula:
-        yield Line(label, "", "title", None, (*_broken(formula), f"= {result}"), source)
+        yield Line(label, role="title", pieces=(*_broken(formula), f"= {result}"), gap=" ", source=source)
     else:
-        yield Line(label, "", "title", None, (result,), source)
+        yield Line(label, result, "title", source=source)
 
 
 def _broken(text: str) -> tuple[str, ...]:

@@ -108,6 +108,11 @@ class Chooser(Lines):
         self._keep_in_view()
         self.repaint()
 
+    def turn(self, pages: int) -> None:
+        """Move cursor and list by pages."""
+        self.top = min(max(self.top + pages * self.page, 0), max(0, len(self.kept) - self.page))
+        self.go(self.cursor + pages * self.page)
+
     def point(self, _x: int, y: int) -> None:
         """Move the cursor to the entry at a place of the widget."""
         if y >= HEAD:

@@ -14,6 +14,9 @@ from budget.screens.themes import Theme
 
 HEIGHT = 2
 
+READ: tuple[Place, ...] = ("findings", "detail", "explain")
+"""Places where what is marked is told whole, on both lines where it needs them."""
+
 
 class Foot(Lines):
     """A message stands until the next key; without one, the row under the cursor is told."""
@@ -51,7 +54,7 @@ class Foot(Lines):
         if self.field is not None and self.message:
             return ((clip(f" {self.message}", width), self.role),)
         text, role = self._told
-        rest = broken(text, width - 2)[1] if self.field is None and (self.message or self.place == "findings") else ""
+        rest = broken(text, width - 2)[1] if self.field is None and (self.message or self.place in READ) else ""
         return ((clip(f" {rest}", width), role),) if rest else self._keys(width)
 
     @property
@@ -61,7 +64,7 @@ class Foot(Lines):
     def _first(self, width: int) -> Iterator[Piece]:
         if self.field is None:
             text, role = self._told
-            whole = not self.message and self.place != "findings"
+            whole = not self.message and self.place not in READ
             yield clip(f" {text if whole else broken(text, width - 2)[0]}", width), role
             return
         label = clip(f" {self.label} ", width // 2)

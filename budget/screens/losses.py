@@ -54,7 +54,7 @@ class Losses:
         parts += [f"signal {self._spelled(device.signal)}"] if device.signal is not None else []
         parts += [f"holds {self._spelled(device.set_point)}"] if device.set_point is not None else []
         source = f"from {plain(device.origin)}" if device.origin else ""
-        yield Line("  device", "", "", None, tuple(parts), source)
+        yield Line("  device", "", "", None, tuple(parts), source=source)
 
     def _leg(self, leg: LegResult) -> Iterator[Line]:
         figures = self.figures
@@ -75,8 +75,8 @@ class Losses:
         gain = " gain" if loss.drop < 0.0 else ""
         pieces = (f"K {plain_number(loss.k)}", f"{self._spelled(loss.drop)}{gain}", *more, velocity(loss, self.figures))
         known = how_known(loss.known_from) if loss.known_from else ""
-        source = "; ".join(filter(None, (plain(loss.method), plain(loss.source), plain(known))))
-        return Line(f"  {label}", "", "good" if gain else "", None, pieces, source)
+        source = "; ".join(filter(None, (plain(loss.method), plain(known), plain(loss.source))))
+        return Line(f"  {label}", "", "good" if gain else "", None, pieces, source=source)
 
     def _pressure(self, label: str, value: float | None) -> Line:
         return Line(f"  {label}", self._spelled(value))

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from budget.description.finding import Level, Path
 from budget.report.plain import plain
-from budget.screens.chooser import Choice, Offer
+from budget.screens.chooser import Choice, Chooser, Offer
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
 from budget.screens.rows import Row
@@ -24,7 +24,12 @@ def step(app: BudgetApp, rows: int) -> None:
 
 def page(app: BudgetApp, pages: int) -> None:
     """Move up or down by pages."""
-    step(app, pages * app.front.page)
+    front = app.front
+    if isinstance(front, Chooser):
+        front.turn(pages)
+        app.tell()
+    else:
+        step(app, pages * front.page)
 
 
 def end(app: BudgetApp, *, last: bool) -> None:

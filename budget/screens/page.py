@@ -24,6 +24,8 @@ class Line:
     role: str = ""
     path: Path | None = None
     pieces: tuple[str, ...] = ()
+    gap: str = "  "
+    """What stands between two pieces."""
     source: str = ""
 
 
@@ -36,10 +38,10 @@ def lay_lines(lines: Iterable[Line], width: int, *, whole: bool) -> list[Choice]
 
 
 def _lay(line: Line, room: int, *, whole: bool) -> Iterator[Choice]:
-    texts = packed(line.pieces, room) if line.pieces else [line.text]
+    texts = packed(line.pieces, room, line.gap) if line.pieces else [line.text]
     if line.text and (whole or line.role in ("error", "warning", "note")):
         texts = wrapped(line.text, room)
     for place, text in enumerate(texts):
         yield Choice((line.label if place == 0 else "", text), line.path, line.role)
     for source in (wrapped(line.source, room) if whole else [clip(line.source, room)] if line.source else []):
-        yield Choice(("", source), line.path, "faint")
+        yield Choice(("", source), line.path, "faint", line.source)

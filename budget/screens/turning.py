@@ -27,6 +27,8 @@ def about(app: BudgetApp) -> tuple[str, str]:
         marked = app.choosers[app.at].marked
         if app.at == "findings" and marked is not None:
             return marked.cells[-1], marked.role
+        if app.at in ("detail", "explain") and marked is not None and marked.words:
+            return marked.words, "faint"
         return ("  ".join(cell.strip() for cell in marked.cells if cell.strip()), "faint") if marked else ("", "")
     row = app.ledger.row
     if app.at != "ledger" or row is None:

@@ -77,7 +77,7 @@ KEYS = (
           "format", "", "", "\n[design]", "write format = 1 as the first line"),
     Fault(
         "late", "format = 1\n\n[design]", 'library = []\nformat = 1\n[design]',
-        "format", "format", "", "1\n[design", "move it up", "warning",
+        "format", "format", "", "1\n[design", "move it up",
     ),
 )
 """Keys and tables that the format does not have."""
