@@ -44,7 +44,7 @@ COMMANDS: Mapping[str, Command] = {
     "new": Command("Write a small run to start from.", "budget new heating.toml --kind heating --units SI"),
     "set": Command("Set one key in a run's file.", "budget set heating.toml section.M1.length '14.5 m'"),
     "unset": Command("Take one key out of a run's file.", "budget unset heating.toml section.M1.note"),
-    "list": Command("List pipes, ducts, fittings, fluids, limits, units or examples.", "budget list fittings 'elbow 90'"),
+    "list": Command("List what the catalogue holds, the units or the examples.", "budget list fittings 'elbow 90'"),
     "explain": Command("Show a row's figures as calculations, or what a code means.", "budget explain run.toml M1"),
     "manual": Command("Read the manual.", "budget manual file"),
     "config": Command("Find or check the settings of the app.", "budget config --check"),

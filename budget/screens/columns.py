@@ -46,7 +46,7 @@ class Placed:
 
 COLUMNS: tuple[Column, ...] = (
     Column("id", "section or terminal", "ID", 14, 99, left=True),
-    Column("size", "size", "size", 10, 90),
+    Column("size", "size", "size", 11, 90),
     Column("length", "length", "length", 7, 85, Dimension.LENGTH),
     Column("flow", "flow", "flow", 7, 75, Dimension.FLOW),
     Column("velocity", "velocity", "vel.", 6, 60, Dimension.VELOCITY),
@@ -96,6 +96,11 @@ def place_columns(width: int) -> tuple[Placed, ...]:
             placed.append(Placed(column, x, widths[column.key]))
             x += widths[column.key]
     return tuple(placed)
+
+
+def fit_size(text: str, room: int) -> str:
+    """Return a size that fits: the word of a flat oval gives way to its letter before a figure is cut."""
+    return text if len(text) <= room else text.replace("oval ", "o ", 1)
 
 
 def fit_figure(text: str, room: int) -> str:

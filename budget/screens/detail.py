@@ -16,6 +16,9 @@ from budget.screens.rows import Row, find_item
 from budget.screens.writing import index_of, is_stated, stated_keys, written
 from budget.units import Dimension
 
+MOST_SERVED = 12
+"""Terminals that are named of those that a section serves."""
+
 
 def lines_of(snapshot: Snapshot, row: Row) -> list[Line]:
     """Return the lines of a row: what is wrong with it, what is written, what is computed."""
@@ -128,7 +131,9 @@ class _Computed:
         yield from self._pressure("differential", result.differential)
         yield from self._pressure("margin", result.margin)
         yield Line("  index circuit", "yes" if result.index else "no", "index" if result.index else "")
-        yield Line("  serves", f"{len(result.serves)}: {plain(', '.join(result.serves[:12]))}")
+        more = len(result.serves) - MOST_SERVED
+        named = plain(", ".join(result.serves[:MOST_SERVED])) + (f" and {more} more" if more > 0 else "")
+        yield Line("  serves", f"{len(result.serves)}: {named}")
         yield from self._authority(result.authority, result.authority_low)
 
     def _terminal(self, result: TerminalResult) -> Iterator[Line]:

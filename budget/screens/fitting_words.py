@@ -51,8 +51,8 @@ def about(entry: Listed, weighed: Weighed | None, figures: Figures) -> tuple[str
         origin, known = (loss.source, loss.known_from) if loss is not None else ("", "")
         scatter = listed_.scatter if listed_ is not None and loss is not None and loss.method != "own" else None
         confidence = listed_.confidence if listed_ is not None and loss is not None and loss.method != "own" else ""
-    said = [f"source: {plain(origin) or 'none stated'}", how_known(known) if known else ""]
-    said += [f"confidence {confidence}" if confidence else "", f"scatter {scatter}" if scatter else ""]
+    said = [how_known(known) if known else "", f"confidence {confidence}" if confidence else ""]
+    said += [f"source: {plain(origin) or 'none stated'}", f"scatter {scatter}" if scatter else ""]
     return (*lines, "; ".join(filter(None, said)))
 
 

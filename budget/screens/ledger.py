@@ -6,7 +6,7 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
 from budget.description.finding import Path
-from budget.screens.columns import MARK, Placed, fit_figure, place_columns
+from budget.screens.columns import MARK, Placed, fit_figure, fit_size, place_columns
 from budget.screens.field import Field
 from budget.screens.lines import Lines, Piece
 from budget.screens.rows import DEEPEST_INDENT, EMPTY, FOLDED_SIGN, INDEX_SIGN, Row, View, tree, visible
@@ -286,6 +286,8 @@ def _fitting(text: str, placed: Placed) -> str:
     room = placed.width - 1
     if placed.column.dimension is not None:
         return fit_figure(text, room)
+    if placed.column.key == "size":
+        text = fit_size(text, room)
     return clip(text, room)
 
 

@@ -34,6 +34,6 @@ def _at(size: tuple[int, int], move: int, edit: int, cell: int) -> str:
             cells = changed_cells(before, session.lines)
             idle = session.settle(quiet=5.0, limit=5.0)
     return (
-        f"bytes at {size[0]}x{size[1]}: start {start}, cursor move {moved} (at most {move}), a keystroke that changes {cells} "
-        f"cells {sent} (at most {edit + cell * cells}), idle for 5 s {idle}"
+        f"bytes at {size[0]}x{size[1]}: start {start}, cursor move {moved} (at most {move}), a keystroke that changes "
+        f"{cells} cells {sent} (at most {edit + cell * cells}), idle for 5 s {idle}"
     )

@@ -246,7 +246,8 @@ def drop_terminal(net: Table, name: str) -> None:
         (heading(item), item_drop(item, mass, place, terms), item) for item in entry.get("item", [])
     ]
     terminal["static"] = place["density"] * G * measure(entry.get("rise", 0), "length", units)
-    terminal["static"] += measure(entry.get("outlet_pressure", 0), "pressure", *terms[:2], place["density"])
+    at_terminal = (terms[0], terms[1], place["density"])  # a head is that of the fluid where the terminal stands
+    terminal["static"] += measure(entry.get("outlet_pressure", 0), "pressure", *at_terminal)
     if "balance" in entry:
         terminal["device"] = net["run"]["device"][entry["balance"]]
         terminal["base"] = base_drop(terminal["device"], mass, place, terms)

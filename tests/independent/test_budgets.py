@@ -12,8 +12,8 @@ from typing import Any
 
 import pytest
 
-from budget.document import take
 from budget.description import read_text
+from budget.document import take
 from budget.report.json import results
 from tests.independent.loops import evaluate
 from tests.independent.runs import features, generate
@@ -23,19 +23,25 @@ FAST, ALL = 40, 240
 
 FIGURES = {
     "sources": (
-        "flow mass_flow required static reserve duty duty_flow available in_hand discharge_required suction_required items "
-        "static_pressure external_total external_static hydraulic_power shaft_power electrical_power"
-    ).split(),
+        *("flow", "mass_flow", "required", "static", "reserve", "duty", "duty_flow", "available", "in_hand", "items"),
+        *("discharge_required", "suction_required", "static_pressure", "external_total", "external_static"),
+        *("hydraulic_power", "shaft_power", "electrical_power"),
+    ),
     "sections": (
-        "flow mass_flow hydraulic_diameter area friction fittings items static drop cumulative differential margin"
-    ).split(),
-    "terminals": "flow mass_flow circuit drop items static differential margin excess".split(),
+        *("flow", "mass_flow", "hydraulic_diameter", "area", "friction", "fittings", "items", "static", "drop"),
+        *("cumulative", "differential", "margin"),
+    ),
+    "terminals": (
+        *("flow", "mass_flow", "circuit", "drop", "items", "static", "differential", "margin", "excess"),
+    ),
 }
 WANTED = {
     *("closed", "open", "air", "both sides", "several sources", "SI", "IP", "water", "propylene glycol", "custom gas"),
     *("paired", "reverse return", "joined risers", "run-out", "run-out from and to", "suction from a tank"),
-    *("round", "rectangular", "oval", "flexible", "bore", "own pipe", "slow", "unequal legs", "diversity", "load"),
-    *("item k", "item kv", "item cv", "item drop at", "item equivalent_length", "item filter", "item tested", "parallel"),
+    *("round", "rectangular", "oval", "flexible", "bore", "own pipe", "slow", "unequal legs", "diversity"),
+    "load",
+    *("item k", "item kv", "item cv", "item drop at", "item equivalent_length", "item filter", "item tested"),
+    "parallel",
     *("device kv", "device cv", "device k", "holds flow", "holds differential", "nested differentials", "static drop"),
 }
 DEVICE = ("base", "take_up", "drop", "kv", "k", "setting", "signal")
@@ -118,4 +124,4 @@ def test_240_runs_agree_with_plain_loops_and_hold_every_feature() -> None:
         seen.update(holds)
     rare = {feature: count for feature, count in seen.items() if count < 3}
     assert rare == {}
-    assert WANTED <= seen.keys()
+    assert seen.keys() >= WANTED

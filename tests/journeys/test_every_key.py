@@ -33,7 +33,7 @@ def leaves(value: Any, path: tuple[str | int, ...] = ()) -> Iterator[tuple[tuple
 
 
 def changed(path: tuple[str | int, ...], value: Any, others: list[Any]) -> str:
-    """Return another value of the same kind, as one would type it: one that stands at such a key elsewhere, or near it."""
+    """Return another value of the same kind, as one would type it: one from such a key elsewhere, or near it."""
     if isinstance(value, bool):
         return str(not value).lower()
     if isinstance(value, int):
@@ -44,9 +44,10 @@ def changed(path: tuple[str | int, ...], value: Any, others: list[Any]) -> str:
     if found and path[-1] != "size":
         number = found.group()
         other = f"{float(number) * 0.99:.4g}" if "." in number else str(int(number) + 1)
-        return other + value[found.end() :]
+        return other + str(value[found.end() :])
     # No other one is known: the same value in TOML's other quotes.
-    return next((other for other in others if other != value), f"'{value}'" if "'" not in value else f'"{value}."')
+    spelled = f"'{value}'" if "'" not in value else f'"{value}."'
+    return next((str(other) for other in others if other != value), spelled)
 
 
 def try_keys(example: Path, folder: Path, every: int) -> Counter[str]:
