@@ -17,6 +17,7 @@ TOPICS = (
     "fluids",
     "friction",
     "devices",
+    "balancing",
     "keys",
     "config",
     "accuracy-and-caution",

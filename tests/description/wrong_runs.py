@@ -102,6 +102,8 @@ CONTRADICTIONS = (
 """Keys that contradict each other or what they stand on."""
 
 IDS = (
+    Fault("library", "format = 1", 'format = 1\nlibrary = ["a.toml"]',
+          "library", "library", "0", '"a.toml"', "save it to a file first"),
     Fault("twice", "[section.B1]", "[section.M1]",
           "duplicate-id", "", "", '[section.M1]\nfrom = "M1"', "rename or remove"),
     Fault("key twice", B1, B1 + '\nlength = "7 m"',
@@ -120,7 +122,7 @@ IDS = (
     Fault("escape", "[device.F1]", '[device."\\u001b[m"]',
           "control-character", 'device."\\u001B[m"', "", '"\\u001b[m"', "rename it"),
 )
-"""IDs that stand twice or can't be read."""
+"""IDs that stand twice or can't be read, and a library that can't."""
 
 CONNECTIONS = (
     Fault("P2", FROM_P1, FROM_P1.replace("P1", "P2"),
@@ -205,10 +207,7 @@ AIR = (
 LATER = (
     Fault("link", PIPE, '[link.L]\nfrom = "B1"\nto = "B2"\n' + PIPE,
           "later", "link.L", "", "L]", "remove it"),
-    Fault("case", PIPE, '[case.C]\noff = ["T1"]\n' + PIPE, "later", "case.C", "", "C]", "remove it"),
     Fault("sizing", PIPE, "[sizing]\n" + PIPE, "later", "sizing", "", "sizing]", "remove it"),
-    Fault("library", "format = 1", 'format = 1\nlibrary = ["a.toml"]',
-          "later", "library", "", '["a.toml"]', "remove it"),
 )
 """What is read, but can't be computed yet."""
 
