@@ -40,6 +40,7 @@ class Command(NamedTuple):
 COMMANDS: Mapping[str, Command] = {
     "check": Command("Compute runs and list what is wrong or doubtful.", "budget check heating.toml --json"),
     "report": Command("Print the whole budget of a run as text.", "budget report heating.toml > heating.txt"),
+    "balance": Command("Print the commissioning schedule of a run.", "budget balance heating.toml --csv > heating.csv"),
     "edit": Command("Open a run in the terminal app.", "budget edit heating.toml"),
     "new": Command("Write a small run to start from.", "budget new heating.toml --kind heating --units SI"),
     "set": Command("Set one key in a run's file.", "budget set heating.toml section.M1.length '14.5 m'"),

@@ -4,6 +4,7 @@ from budget.description.codes import CODES, Code
 from budget.description.finding import Finding, Level, Path, dotted, error, note, warning
 from budget.description.libraries import Library
 from budget.description.model import (
+    Case,
     Description,
     Design,
     Device,
@@ -18,6 +19,7 @@ from budget.description.model import (
     Run,
     Section,
     Source,
+    SourceCase,
     Terminal,
 )
 from budget.description.reader import describe
@@ -29,6 +31,7 @@ from budget.units import Basis, Quantity
 __all__ = [
     "CODES",
     "Basis",
+    "Case",
     "Code",
     "Description",
     "Design",
@@ -49,6 +52,7 @@ __all__ = [
     "Run",
     "Section",
     "Source",
+    "SourceCase",
     "SourceText",
     "Terminal",
     "describe",

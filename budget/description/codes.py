@@ -91,6 +91,8 @@ CODES: dict[str, Code] = {
     "authority": Code("warning", "A control item's authority below the limit (common practice)."),
     "authority-low": Code("note", "A control item's authority below the value to aim for (common practice)."),
     "settings-diversified": Code("note", "Settings hold for the diversified flow."),
+    "reading": Code("error", "A reading from which no share of the design flow can be told."),
+    "measured-flow": Code("warning", "A measured flow outside its tolerance."),
     "extract-gain": Code("warning", "An air terminal's static drop is less than its neck velocity pressure."),
     "accept-unused": Code("note", "A finding was accepted that does not occur."),
 }

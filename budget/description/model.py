@@ -273,6 +273,31 @@ class Limits:
 
 
 @dataclass(frozen=True, slots=True)
+class SourceCase:
+    """How a source runs in a case; None for what stays as it is."""
+
+    speed: float | None = None
+    running: int | None = None
+    set_point: Quantity | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Case:
+    """A what-if for the flows as installed: what is off, what holds less, what is part open, how sources run."""
+
+    id: str
+    path: Path
+    title: str = ""
+    note: str = ""
+    off: tuple[str, ...] = ()
+    share: Mapping[str, float] = field(default_factory=dict)
+    """Of design flow, by ID, where something holds the flow."""
+    stroke: Mapping[str, float] = field(default_factory=dict)
+    """Of the control item, by ID: 0 shut, 1 fully open."""
+    sources: Mapping[str, SourceCase] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
 class Description:
     """A whole run as described, with everything that was found wrong while reading it."""
 
@@ -287,6 +312,7 @@ class Description:
     sources: Mapping[str, Source] = field(default_factory=dict)
     sections: Mapping[str, Section] = field(default_factory=dict)
     terminals: Mapping[str, Terminal] = field(default_factory=dict)
+    cases: Mapping[str, Case] = field(default_factory=dict)
     order: tuple[str, ...] = ()
     findings: tuple[Finding, ...] = ()
 

@@ -14,7 +14,7 @@ from budget.description.parts import read_section, read_source, read_terminal
 from budget.description.schema import CLASSES, KEYED, SINGLE, TOP
 from budget.description.scope import Scope
 from budget.description.source import Source
-from budget.description.tables import check_format, check_id, device, keyed, own_fitting, single
+from budget.description.tables import case, check_format, check_id, device, keyed, own_fitting, single
 from budget.description.values import Reading, nearest
 from budget.units import Dimension, UnitError, parse
 
@@ -57,10 +57,12 @@ def describe(source: Source, libraries: Sequence[Library] = ()) -> Description:
         sources=keyed(reading, data, "source", read_source, scope),
         sections=keyed(reading, data, "section", read_section, scope),
         terminals=keyed(reading, data, "terminal", read_terminal, scope),
+        cases=keyed(reading, data, "case", case),
         order=_order(source, data),
     )
     _check_ids(reading, source, data)
     _check_sensors(reading, description)
+    _check_cases(reading, description)
     _read_later(reading, data, description)
     if not data.get("source"):
         reading.wrong("missing", "the run has no source; add [source.P1], the pump or fan", ("source",))
@@ -183,7 +185,6 @@ def _read_later(reading: Reading, data: Mapping[str, Any], description: Descript
     sizing = single(reading, data, "sizing")
     if sizing or "sizing" in data:
         reading.later("sizing", ("sizing",))
-    known = dict.fromkeys(description.order)
     for id_, link in keyed(reading, data, "link", lambda _r, _i, values, _p: values).items():
         for key in ("from", "to"):
             if key not in link:
@@ -192,12 +193,17 @@ def _read_later(reading: Reading, data: Mapping[str, Any], description: Descript
                 hint = nearest(link[key], description.sections)
                 reading.wrong("dangling", f"{link[key]!r} is not a section; {hint}", ("link", id_, key))
         reading.later("a link", ("link", id_))
-    for id_, case in keyed(reading, data, "case", lambda _r, _i, values, _p: values).items():
-        named = [(("off", place), name) for place, name in enumerate(case.get("off", ()))]
-        named += [((key, name), name) for key in ("share", "stroke", "source") for name in case.get(key, {})]
+
+
+def _check_cases(reading: Reading, description: Description) -> None:
+    """Find what a case names and the run does not have."""
+    for case in description.cases.values():
+        named = [(("off", place), name) for place, name in enumerate(case.off)]
+        named += [(("share", name), name) for name in case.share]
+        named += [(("stroke", name), name) for name in case.stroke]
+        named += [(("source", name), name) for name in case.sources]
         for where, name in named:
-            among = description.sources if where[0] == "source" else known
+            among = description.sources if where[0] == "source" else description.order
             if name not in among:
                 hint = nearest(name, among)
-                reading.wrong("dangling", f"{name!r} is not an ID of this run; {hint}", ("case", id_, *where))
-        reading.later("a case", ("case", id_))
+                reading.wrong("dangling", f"{name!r} is not an ID of this run; {hint}", (*case.path, *where))

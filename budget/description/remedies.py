@@ -81,6 +81,8 @@ REMEDIES: dict[str, str] = {
     "authority": "Take a control valve with a smaller Kv, or reduce what carries its flow beside it.",
     "authority-low": "Look whether the control holds at part load; a smaller Kv raises the authority.",
     "settings-diversified": "Commission with the diversified flow, or without diversity.",
+    "reading": "State the flow, or a signal with the setting at which it was read.",
+    "measured-flow": "Go on with the order of work; `budget balance FILE --readings READINGS` names the next device.",
     "extract-gain": "Check the maker's static drop and the neck; their sum can't be below nothing.",
     "accept-unused": "Remove the acceptance, or correct its code.",
 }

@@ -9,7 +9,7 @@ from typing import Any
 
 from budget.catalogue import fitting_names, kind
 from budget.description.finding import Path, dotted, warning
-from budget.description.model import Device, OwnFitting
+from budget.description.model import Case, Device, OwnFitting, SourceCase
 from budget.description.schema import FORMAT, KEYED, SINGLE
 from budget.description.values import Reading, what_is
 from budget.physics.fittings import CV_PER_KV
@@ -112,4 +112,18 @@ def device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> De
             for key in ("signal_kv", "least_signal", "least_drop", "greatest_drop", "holds", "set_point", "source")
             if key in values
         },
+    )
+
+
+def case(_reading: Reading, id_: str, values: dict[str, Any], path: Path) -> Case:
+    """Read a case of the flows as installed."""
+    return Case(
+        id=id_,
+        path=path,
+        title=values.get("title", ""),
+        note=values.get("note", ""),
+        off=tuple(values.get("off", ())),
+        share=values.get("share", {}),
+        stroke=values.get("stroke", {}),
+        sources={name: SourceCase(**stated) for name, stated in values.get("source", {}).items()},
     )

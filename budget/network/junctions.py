@@ -13,7 +13,7 @@ import numpy as np
 from budget.description import Description, Finding, Path, Run, Section, Terminal, error, warning
 from budget.network.arrays import AreaChanges, Bools, Ints, Junctions, Legs
 from budget.network.topology import Topology
-from budget.physics.area_changes import contraction, enlargement
+from budget.physics.area_changes import ABRUPT, contraction, enlargement
 from budget.physics.junctions import FAMILIES
 
 STATED = ("straight", "branch")
@@ -204,28 +204,25 @@ def find_area_changes(
     description: Description, topology: Topology, legs: Legs, broken: Broken, findings: list[Finding]
 ) -> AreaChanges:
     """Return the change of area that each leg states toward its source; abrupt or by its included angle."""
-    count = len(legs)
-    k, area = np.zeros(count), np.ones(count)
+    angle = np.full(len(legs), np.nan)
+    lost: list[int] = []
     for number, leg in enumerate(topology.legs):
         owner = description.terminals[leg.owner] if leg.run_out else description.sections[leg.owner]
         stated = owner.run.transition if owner.run else None
         if "transition" in broken.get(owner.path, ()):
-            k[number] = math.nan
-        if stated is None:
-            continue
-        if leg.parent < 0:
-            if leg.first:
-                text = "a transition needs a section toward the source; remove it"
-                findings.append(error("takeoff", text, (*owner.path, "transition")))
-            continue
-        own, other = float(legs.area[number]), float(legs.area[leg.parent])
-        if math.isnan(own) or math.isnan(other):
-            k[number] = math.nan
-            continue
-        small, large = sorted((own, other))
-        area[number] = small
-        widening = (own > other) == leg.outward
-        angle = 180.0 if stated == "abrupt" else float(stated)
-        change = enlargement if widening else contraction
-        k[number] = float(change(small / large, angle)) if own != other else 0.0
+            lost.append(number)
+        elif stated is not None and leg.parent >= 0:
+            angle[number] = ABRUPT if stated == "abrupt" else float(stated)
+        elif stated is not None and leg.first:
+            text = "a transition needs a section toward the source; remove it"
+            findings.append(error("takeoff", text, (*owner.path, "transition")))
+    k, area = np.zeros(len(legs)), np.ones(len(legs))
+    k[lost] = np.nan
+    changing = np.flatnonzero(~np.isnan(angle))
+    own, other = legs.area[changing], legs.area[legs.parent[changing]]
+    area[changing] = np.minimum(own, other)
+    ratio = area[changing] / np.maximum(own, other)
+    widening = (own > other) == legs.outward[changing]
+    changed = np.where(widening, enlargement(ratio, angle[changing]), contraction(ratio, angle[changing]))
+    k[changing] = np.where(own == other, 0.0, changed)
     return AreaChanges(k, area)

@@ -6,7 +6,7 @@ from collections.abc import Iterable, Iterator
 
 from budget.catalogue.provenance import how_known
 from budget.description import Description, Item, Run
-from budget.network import Budget, DeviceResult, ItemResult, RunResult, SectionResult, TerminalResult
+from budget.network import Budget, DeviceResult, ItemResult, LossResult, RunResult, SectionResult, TerminalResult
 from budget.report.figures import Figures, plain_number
 from budget.report.plain import plain
 from budget.report.table import Column, table, wrapped
@@ -333,13 +333,48 @@ def fittings(budget: Budget, figures: Figures) -> list[str]:
                 figures.pressure(loss.drop, density),
                 plain(loss.method),
             ))  # fmt: skip
-            known = how_known(loss.known_from) if loss.known_from else ""
-            origin = "; ".join(filter(None, (plain(loss.source), plain(known))))
-            origins[f"{plain(loss.name)}, {plain(loss.method)}: {origin or 'no source stated'}"] = None
+            origins[f"{plain(loss.name)}, {plain(loss.method)}: {_origin(loss)}"] = None
+    return _with_origins(columns, rows, origins)
+
+
+def joints(budget: Budget, figures: Figures) -> list[str]:
+    """Return each leg's part of a junction and its change of area, with the velocity that the coefficient is on."""
+    columns = [
+        Column("stands on", left=True),
+        Column("leg", left=True),
+        Column("junction or change of area", left=True),
+        Column("K"),
+        Column("on", figures.unit(Dimension.VELOCITY)),
+        Column("loss", figures.unit(Dimension.PRESSURE)),
+        Column("method", left=True),
+    ]
+    rows: list[tuple[str, ...]] = []
+    origins: dict[str, None] = {}
+    for id_, run, density in _runs(budget):
+        for leg in run.legs:
+            for loss in leg.joints:
+                rows.append((
+                    plain(id_),
+                    leg.leg,
+                    loss.name,
+                    plain_number(loss.k),
+                    figures.text(loss.reference_velocity, Dimension.VELOCITY),
+                    figures.pressure(loss.drop, density),
+                    loss.method,
+                ))  # fmt: skip
+                origins[f"{loss.method}: {_origin(loss)}; on the {loss.reference}"] = None
+    return _with_origins(columns, rows, origins)
+
+
+def _origin(loss: LossResult) -> str:
+    known = how_known(loss.known_from) if loss.known_from else ""
+    return "; ".join(filter(None, (plain(loss.source), plain(known)))) or "no source stated"
+
+
+def _with_origins(columns: list[Column], rows: list[tuple[str, ...]], origins: Iterable[str]) -> list[str]:
     if not rows:
         return []
-    said = [line for origin in origins for line in wrapped(origin, "  ", "    ")]
-    return [*table(columns, rows), *said]
+    return [*table(columns, rows), *(line for origin in origins for line in wrapped(origin, "  ", "    "))]
 
 
 def _runs(budget: Budget) -> Iterator[tuple[str, RunResult, float]]:

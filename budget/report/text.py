@@ -10,7 +10,7 @@ from budget.description import Description, Level
 from budget.network import HEADINGS, Budget, SourceResult
 from budget.report.caution import CAUTION
 from budget.report.figures import NONE, Figures, plain_number
-from budget.report.ledger import devices, fittings, items, ledger, libraries, terminals
+from budget.report.ledger import devices, fittings, items, joints, ledger, libraries, terminals
 from budget.report.located import Located
 from budget.report.plain import plain
 from budget.report.table import Column, labelled, table, wrapped
@@ -28,6 +28,7 @@ def text_report(description: Description, budget: Budget, findings: Iterable[Loc
         _part("Items", items(budget, figures)),
         _part("Balancing devices", devices(budget, figures)),
         _part("Fittings", fittings(budget, figures)),
+        _part("Junctions and changes of area", joints(budget, figures)),
         _part("Libraries", libraries(description)),
         _part("Titles and notes", list(_remarks(description))),
         _part("Findings", list(_findings(findings))),

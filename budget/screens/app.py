@@ -13,11 +13,10 @@ from textual.filter import LineFilter
 from budget.description.edits import Edit
 from budget.description.finding import Path
 from budget.document import Document, Snapshot
-from budget.report.figures import Figures
 from budget.report.plain import plain
 from budget.screens import choosing, entering, turning
 from budget.screens.actions import Place
-from budget.screens.budget_line import BudgetLine
+from budget.screens.budget_line import BudgetLine, change_of
 from budget.screens.chooser import Chooser, Offer
 from budget.screens.config import Config
 from budget.screens.doing import DOINGS
@@ -143,15 +142,19 @@ class BudgetApp(App[int], inherit_bindings=False):
         """Return the list of a place; it is made when it is first asked for."""
         if place not in self.choosers:
             self.choosers[place] = Chooser(self.colours, place)
-            self.middle.mount(self.choosers[place])
+            self._mount(self.choosers[place])
         return self.choosers[place]
+
+    def _mount(self, widget: Widget) -> None:
+        """Put a widget in the ledger's place, to the left of what stands beside it."""
+        self.middle.mount(widget, after=self.ledger)
 
     @property
     def form(self) -> Form:
         """The form; it is made when it is first asked for."""
         if self._form is None:
             self._form = Form(self.colours)
-            self.middle.mount(self._form)
+            self._mount(self._form)
         return self._form
 
     @property
@@ -185,7 +188,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         """Show a snapshot; with the one before it, by how much the required pressure changed."""
         view = View(snapshot)
         self.ledger.show(view)
-        change = _change(before, snapshot, self.ledger.source) if before is not None else self.change
+        change = change_of(before, snapshot, self.ledger.source) if before is not None else self.change
         if snapshot is self.document.snapshot:
             self.change = change
         self._show_budget(view, change)
@@ -292,11 +295,3 @@ class BudgetApp(App[int], inherit_bindings=False):
             choosing.fill_in(self, self.form.press(event.key, event.character))
             return True
         return False
-
-
-def _change(before: Snapshot, after: Snapshot, source: str) -> tuple[str, str]:
-    """Return a source and by how much what it requires changed, spelled."""
-    old, new = before.budget.sources.get(source), after.budget.sources.get(source)
-    if old is None or new is None:
-        return source, ""
-    return source, Figures(after.description).change(old.required, new.required)

@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 
 from budget.description.finding import Level
+from budget.document import Snapshot
 from budget.network.results import HEADINGS, SourceResult
-from budget.report.figures import share
+from budget.report.figures import Figures, share
 from budget.report.plain import plain
 from budget.screens.lines import Lines, Piece
 from budget.screens.rows import INDEX_SIGN, OVER_SIGN, View
@@ -108,3 +109,10 @@ class BudgetLine(Lines):
         yield f" {figure}", "over" if sign == OVER_SIGN else ""
         yield sign, "over"
 
+
+def change_of(before: Snapshot, after: Snapshot, source: str) -> tuple[str, str]:
+    """Return a source and by how much what it requires changed, spelled; "" where that can't be said."""
+    old, new = before.budget.sources.get(source), after.budget.sources.get(source)
+    if old is None or new is None:
+        return source, ""
+    return source, Figures(after.description).change(old.required, new.required)

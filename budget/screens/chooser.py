@@ -19,7 +19,11 @@ HEAD = 2
 """Lines above the entries: what the list is and the filter, and the headings."""
 
 BENEATH = 5
-"""Lines under the entries that tell more of the marked one, where a list has them; fewer on a low terminal."""
+"""Lines under the entries that tell more of the marked one, where a list has them: more under a short list, fewer on a
+low terminal."""
+
+LEAST_FIELD = 8
+"""Cells for the filter."""
 
 _WIDEST = 34
 _SEEN_WHOLE = 300
@@ -100,7 +104,9 @@ class Chooser(Lines):
 
     @property
     def _tail(self) -> int:
-        return min(BENEATH, self.size.height // 4) if self.offer.beneath is not None else 0
+        if self.offer.beneath is None:
+            return 0
+        return max(min(BENEATH, self.size.height // 4), self.size.height - HEAD - 1 - len(self.kept))
 
     def go(self, place: int) -> None:
         """Move the cursor to an entry by its place."""
@@ -154,11 +160,12 @@ class Chooser(Lines):
         return self._cells(self._all_cells(choice), widths, right, roles)
 
     def _title(self, width: int) -> Iterator[Piece]:
-        yield clip(f" {self.offer.title}  ", width), "title"
+        count = f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}" if not self.passive else ""
+        title = clip(f" {self.offer.title}  ", width - len(count) - (LEAST_FIELD if self.offer.filters else 0))
+        yield title, "title"
         if self.offer.filters:
-            yield from field_pieces(self.field, min(30, max(8, width - width_of(self.offer.title) - 4)))
-        if not self.passive:
-            yield f"  {min(self.cursor + 1, len(self.kept))} of {len(self.kept)}", "faint"
+            yield from field_pieces(self.field, max(LEAST_FIELD, min(30, width - width_of(title) - len(count))))
+        yield count, "faint"
 
     def _told(self, y: int, width: int) -> Iterator[Piece]:
         """Spell a line of what is told of the marked entry; where there is more, the last line ends in an ellipsis."""
@@ -172,8 +179,9 @@ class Chooser(Lines):
     @staticmethod
     def _cells(cells: Sequence[str], widths: Sequence[int], right: Sequence[bool], roles: str) -> Iterator[Piece]:
         yield " ", roles
-        for text, width, ranged_right in zip(cells, widths, right, strict=False):
-            yield fit(clip(text, max(0, width - 2)), width - 2, right=ranged_right) + "  ", roles
+        for place, (text, width, ranged_right) in enumerate(zip(cells, widths, right, strict=False)):
+            gap = "  " if place + 1 < len(widths) else " "
+            yield fit(clip(text, max(0, width - len(gap))), width - len(gap), right=ranged_right) + gap, roles
 
     def _shape(self, width: int) -> tuple[list[int], list[bool]]:
         """Return the width of each column, that of its widest text in view, and whether it holds figures.
@@ -204,7 +212,7 @@ class Chooser(Lines):
         elif found is None:
             found = ("",) * (len(self.offer.heads) - len(choice.cells))
             if choice is self.marked or self.offer.pace == "one by one":
-                self._look_later(PAUSE)
+                self._look_later(BREATH if self.offer.pace == "one by one" else PAUSE)
         return (*choice.cells[:1], *found, *choice.cells[1:])
 
     def _look_later(self, pause: float) -> None:

@@ -125,7 +125,8 @@ class _Computed:
     def _section(self, result: SectionResult) -> Iterator[Line]:
         self._take_density(result.source)
         yield from self._size(result.run)
-        yield from Losses(self.figures, self.density).run(result.run, result.items, result.device)
+        losses = Losses(self.figures, self.density)
+        yield from losses.sums(result.run)
         yield Line("in the circuit", "", "heading")
         yield from self._pressure("sum so far", result.cumulative)
         yield from self._pressure("differential", result.differential)
@@ -135,6 +136,7 @@ class _Computed:
         named = plain(", ".join(result.serves[:MOST_SERVED])) + (f" and {more} more" if more > 0 else "")
         yield Line("  serves", f"{len(result.serves)}: {named}")
         yield from self._authority(result.authority, result.authority_low)
+        yield from losses.legs(result.run, result.items, result.device)
 
     def _terminal(self, result: TerminalResult) -> Iterator[Line]:
         self._take_density(result.source)
@@ -154,7 +156,8 @@ class _Computed:
         yield from losses.device(result.device)
         if result.run_out is not None:
             yield from self._size(result.run_out, "run-out")
-            yield from losses.run(result.run_out)
+            yield from losses.sums(result.run_out)
+            yield from losses.legs(result.run_out)
 
     def _item(self) -> Iterator[Line]:
         item, result, source = find_item(self.snapshot, self.row)

@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
 
 COUNT = Blank("count", "1 or more", "how many of them there are")
+COUNT_OF_STANDING = Blank("count", "1 or more; 0 takes it out", "how many of them there are")
 
 
 def ask(app: BudgetApp, table: Path, entry: Listed, weighed: Weighed | None) -> None:
@@ -46,7 +47,7 @@ class Filling:
 
     def begin(self, weighed: Weighed | None) -> None:
         """Show the form, with what the parameters as they stand lead to."""
-        blanks = (*map(_blank, self.kind.parameters), COUNT)
+        blanks = (*map(_blank, self.kind.parameters), COUNT_OF_STANDING if self.entry.path else COUNT)
         texts = [self.stated[p.name] or _text(p.default) for p in self.kind.parameters]
         standing = f"on {plain(str(self.table[1]))}"
         self.app.form.present(
@@ -54,7 +55,7 @@ class Filling:
                 title=f"{self.kind.name} {standing}" if self.entry.path else f"{self.kind.name}, one more {standing}",
                 blanks=blanks,
                 texts=(*texts, str(self.entry.count or 1)),
-                about=about(self.entry, None, self.figures),
+                about=about(self.entry, None, self.figures, asking=True),
                 attempt=self.attempt,
                 accept=self.accept,
                 leave=self.leave,
@@ -126,7 +127,7 @@ class Filling:
         if run is None:
             return None
         count = len(run.fittings) + len(run.uses)
-        place = next((n for n, use in enumerate(run.uses) if use.path == self.path), None)
+        place = next((n for n, use in enumerate(run.uses) if use.path[:4] == self.path), None)
         return losses_of(result_of(after, self.table), count)[len(run.fittings) + place] if place is not None else None
 
     def _told(self, weighed: Weighed | None, doubt: str = "") -> Told:
@@ -137,7 +138,7 @@ class Filling:
         of = f"drop of {weighed.loss.count}" if weighed.loss.count > 1 else "drop of one"
         run = run_of(self.before, self.table)
         legs = ", both legs," if run is not None and run.paired else ""
-        where = velocity(weighed.loss, self.figures).partition(" (")[0]
+        where = velocity(weighed.loss, self.figures)
         return Told(f"K {plain_number(weighed.loss.k)}   {of}{legs} {drop}   {where}", "title", doubt)
 
     def _lacking(self, texts: list[str]) -> str:

@@ -33,17 +33,17 @@ class Listed:
         return self.kind is not None and bool(self.kind.parameters)
 
 
-def about(entry: Listed, weighed: Weighed | None, figures: Figures) -> tuple[str, ...]:
+def about(entry: Listed, weighed: Weighed | None, figures: Figures, *, asking: bool = False) -> tuple[str, ...]:
     """Say of a fitting: by what method, on which velocity, from which source, and how the figure is known."""
     found, loss = entry.kind, weighed.loss if weighed is not None else None
     lines = []
-    if found is not None and entry.values is None:
+    if found is not None and entry.values is None and not asking:
         lacking = " and ".join(parameter.name for parameter in found.parameters if parameter.default is None)
         lines.append(f"{lacking} must be stated: Enter asks for {'it' if ' and ' not in lacking else 'them'}")
     if loss is not None:
-        lines.append(f"{loss.method}, {velocity(loss, figures)}")
+        remark = loss.reference.partition(": ")[2]
+        lines.append(f"{loss.method}, {velocity(loss, figures)}" + (f"; {remark}" if remark else ""))
     if found is not None:
-        lines.append(f"{found.formula}; holds for {found.validity}" + (f"; {found.note}" if found.note else ""))
         origin, known, scatter = found.source, found.known_from, found.scatter
         confidence = found.confidence
     else:
@@ -53,14 +53,14 @@ def about(entry: Listed, weighed: Weighed | None, figures: Figures) -> tuple[str
         confidence = listed_.confidence if listed_ is not None and loss is not None and loss.method != "own" else ""
     said = [how_known(known) if known else "", f"confidence {confidence}" if confidence else ""]
     said += [f"source: {plain(origin) or 'none stated'}", f"scatter {scatter}" if scatter else ""]
-    return (*lines, "; ".join(filter(None, said)))
+    law = f"{found.formula}; holds for {found.validity}" + (f"; {found.note}" if found.note else "") if found else ""
+    return (*lines, "; ".join(filter(None, said)), law)
 
 
 def velocity(loss: LossResult, figures: Figures) -> str:
     """Name the velocity to which a coefficient refers, with its figure."""
-    name, _, remark = loss.reference.partition(": ")
     spelled = figures.text(loss.reference_velocity, Dimension.VELOCITY, unit=True)
-    return f"{name} {spelled}" + (f" ({remark})" if remark else "")
+    return f"{loss.reference.partition(': ')[0]} {spelled}"
 
 
 def spelled_parameters(values: Mapping[str, float | str]) -> str:

@@ -27,8 +27,9 @@ if TYPE_CHECKING:
 
 KEYS = ("takeoff", "junction", "angle", "transition")
 TITLES = {
-    "takeoff": "take-off of {}", "junction": "junction family of {}", "angle": "angle of the junction of {}",
-    "transition": "change of area toward {}, its included angle",
+    "takeoff": "takeoff of {}: drop at each leg", "junction": "junction family of {}: drop at each leg",
+    "angle": "angle of the junction of {}: drop at each leg",
+    "transition": "change of area toward {}: drop at each leg",
 }  # fmt: skip
 STATED = ("straight", "branch")
 ANGLES = (30, 45, 60, 90)
@@ -58,9 +59,9 @@ def joints(app: BudgetApp, path: Path) -> Offer | None:
     figures = Figures(description)
     trying = Trying(app, path, others)
     unit = figures.unit(Dimension.PRESSURE)
-    heads = ("", *(f"drop of {plain(one.id)} {unit}" for one in (part, *others[:_MOST_OTHERS])), f"required {unit}", "")
+    heads = ("", *(f"at {plain(one.id)} {unit}" for one in (part, *others[:_MOST_OTHERS])), f"required {unit}", "")
     ways = list(_ways(snapshot, path, part, others))
-    choices = [Choice((way.label, "as it is now" if way.now else ""), way, "index" if way.now else "") for way in ways]
+    choices = [Choice((way.label, "now" if way.now else ""), way, "index" if way.now else "") for way in ways]
 
     def write(text: str) -> Choice | None:
         if key not in ("angle", "transition"):

@@ -20,7 +20,17 @@ class Losses:
         """Take the figures of a design, and the density of the source in kg/m3."""
         self.figures, self.density = figures, density
 
-    def run(
+    def sums(self, run: RunResult) -> Iterator[Line]:
+        """Spell the drop of a run by what it is made up of."""
+        yield Line("drop", "", "heading")
+        for label, value in (
+            ("friction", run.friction), ("fittings", run.fittings), ("junction", run.junction),
+            ("change of area", run.transition), ("items", run.items), ("static", run.static), ("drop", run.drop),
+        ):  # fmt: skip
+            if value or label in ("friction", "drop"):
+                yield self._pressure(label, value)
+
+    def legs(
         self, run: RunResult, items: tuple[ItemResult, ...] = (), device: DeviceResult | None = None
     ) -> Iterator[Line]:
         """Spell each leg with its losses; items and device stand on the first one."""
@@ -29,13 +39,6 @@ class Losses:
             if number == 0:
                 yield from self.items(items)
                 yield from self.device(device)
-        yield Line("drop", "", "heading")
-        for label, value in (
-            ("friction", run.friction), ("fittings", run.fittings), ("junction", run.junction),
-            ("change of area", run.transition), ("items", run.items), ("static", run.static), ("drop", run.drop),
-        ):  # fmt: skip
-            if value or label in ("friction", "drop"):
-                yield self._pressure(label, value)
 
     def items(self, items: tuple[ItemResult, ...]) -> Iterator[Line]:
         """Spell what stands in line."""
@@ -76,7 +79,8 @@ class Losses:
         pieces = (f"K {plain_number(loss.k)}", f"{self._spelled(loss.drop)}{gain}", *more, velocity(loss, self.figures))
         known = how_known(loss.known_from) if loss.known_from else ""
         source = "; ".join(filter(None, (plain(loss.method), plain(known), plain(loss.source))))
-        return Line(f"  {label}", "", "good" if gain else "", None, pieces, source=source)
+        marked = "; ".join(filter(None, (plain(loss.method), plain(loss.known_from), plain(loss.source))))
+        return Line(f"  {label}", role="good" if gain else "", pieces=pieces, source=source, short=marked)
 
     def _pressure(self, label: str, value: float | None) -> Line:
         return Line(f"  {label}", self._spelled(value))

@@ -27,21 +27,25 @@ class Line:
     gap: str = "  "
     """What stands between two pieces."""
     source: str = ""
+    short: str = ""
+    """The source where it has to be shortened, what matters most first."""
 
 
 def lay_lines(lines: Iterable[Line], width: int, *, whole: bool) -> list[Choice]:
     """Return lines as entries of a list of so many cells; with `whole` no text is shortened."""
     lines = list(lines)
     label = min(WIDEST_LABEL, max((width_of(line.label) for line in lines), default=0)) + 2
-    room = max(12, width - 1 - label)
+    room = max(12, width - 2 - label)
     return [choice for line in lines for choice in _lay(line, room, whole=whole)]
 
 
 def _lay(line: Line, room: int, *, whole: bool) -> Iterator[Choice]:
-    texts = packed(line.pieces, room, line.gap) if line.pieces else [line.text]
+    pieces = [part for piece in line.pieces for part in (wrapped(piece, room) if width_of(piece) > room else [piece])]
+    texts = packed(pieces, room, line.gap) if pieces else [line.text]
     if line.text and (whole or line.role in ("error", "warning", "note")):
         texts = wrapped(line.text, room)
     for place, text in enumerate(texts):
         yield Choice((line.label if place == 0 else "", text), line.path, line.role)
-    for source in (wrapped(line.source, room) if whole else [clip(line.source, room)] if line.source else []):
+    short = [clip(line.short or line.source, room)] if line.source else []
+    for source in wrapped(line.source, room) if whole else short:
         yield Choice(("", source), line.path, "faint", line.source)

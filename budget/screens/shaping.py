@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Mapping
 from dataclasses import dataclass
 from itertools import pairwise
 from typing import Any, Literal
 
-from budget.description.edits import AddTable, CopyTable, Edit, MoveTable, RemoveTable, SetValue, Several
+from budget.description.edits import AddTable, CopyTable, Edit, MoveTable, RemoveTable, SetValue, Several, Unset
 from budget.description.finding import Path
 from budget.description.model import Description, Section, Terminal
+from budget.screens.naming import new_id
 from budget.screens.rows import Row, beneath
 from budget.screens.writing import copied, index_of, last_table, start_of, stated_keys
 
@@ -21,7 +21,6 @@ _COPIED_TO_A_TERMINAL = (
     "pipe", "duct", "size", "bore", "length", "paired", "takeoff", "balance", "flow", "load", "drop", "static_drop",
     "neck", "at", "exponent", "return_temperature",
 )  # fmt: skip
-_NUMBER_AT_END = re.compile(r"(\d+)(\D*)$")
 
 
 class ShapingError(ValueError):
@@ -40,8 +39,8 @@ class Change:
 def add_section(text: str, description: Description, rows: tuple[Row, ...], place: int, where: Where) -> Change:
     """Add a section after a row (between it and what hangs on it), before it, or beneath it as a new branch.
 
-    After means farther from the source. It takes its size and length from its neighbour. Raises ShapingError on a
-    terminal's far side and on the near side of a source.
+    After means farther from the source. It takes its size and length from its neighbour, and before a row also what
+    that was at its junction. Raises ShapingError on a terminal's far side and on the near side of a source.
     """
     place = _owner(rows, place)
     row = rows[place]
@@ -65,9 +64,14 @@ def add_section(text: str, description: Description, rows: tuple[Row, ...], plac
     elif where == "after":
         hung = [SetValue((*part.path, side), id_) for part in _hanging_on(description, row.id, side)]
     anchor = row.path if where == "before" else last_table(text, row.path)
+    joined: list[Edit] = []
+    if where == "before":
+        taken_over = copied(text, row.path, _joint_of(row))
+        values |= taken_over
+        joined = [Unset((*row.path, key)) for key in taken_over]
     added = AddTable(path, values, after=None if where == "before" else anchor)
     moved = [MoveTable(path, before=row.path)] if where == "before" else []
-    return Change(Several((added, *moved, *hung)), f"add section {id_}", path)
+    return Change(Several((added, *moved, *hung, *joined)), f"add section {id_}", path)
 
 
 def add_terminal(text: str, description: Description, rows: tuple[Row, ...], place: int) -> Change:
@@ -91,6 +95,8 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
     values: dict[str, Any] = {side: parent}
     if sibling is not None:
         values |= copied(text, sibling.path, _COPIED_TO_A_TERMINAL)
+        if values.get("takeoff") != "none":
+            values.pop("takeoff", None)
         if sibling.to is not None and sibling.from_ is not None and side == "from":
             values["to"] = sibling.to
     if not {"flow", "load"} & set(values):
@@ -184,24 +190,6 @@ def shift(text: str, description: Description, rows: tuple[Row, ...], place: int
     return Change(Several(edits), f"move {row.id} {'up' if step < 0 else 'down'}", row.path)
 
 
-def new_id(base: str, taken: Iterable[str], *, itself: bool = False) -> str:
-    """Return the next free ID after one: FCU-201 gives FCU-202, zeros in front are kept; `itself` if that is free."""
-    known = set(taken)
-    if itself and base not in known:
-        return base
-    found = _NUMBER_AT_END.search(base)
-    if found is None:
-        stem, number, width, tail = f"{base}-", 1, 1, ""
-    else:
-        stem, tail = base[: found.start()], found.group(2)
-        number, width = int(found.group(1)), len(found.group(1))
-    while True:
-        number += 1
-        candidate = f"{stem}{number:0{width}d}{tail}"
-        if candidate not in known:
-            return candidate
-
-
 def _owner(rows: tuple[Row, ...], place: int) -> int:
     """Return the place of the section, terminal or source to which the row of an item belongs."""
     while rows[place].kind == "item":
@@ -232,6 +220,11 @@ def _hanging_on(description: Description, id_: str, side: str) -> list[Section |
     """Return the sections and terminals that name an ID as what they hang on, on one side."""
     parts: list[Section | Terminal] = [*description.sections.values(), *description.terminals.values()]
     return [part for part in parts if (part.from_ if side == "from" else part.to) == id_]
+
+
+def _joint_of(row: Row) -> tuple[str, ...]:
+    """Return the keys that say what a row is at its junction; a section put before it has its size, if it is one."""
+    return ("takeoff", "junction", "angle", *(("transition",) if row.kind == "section" else ()))
 
 
 def _hangings(description: Description, row: Row) -> tuple[tuple[str, str], ...]:

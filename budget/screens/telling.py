@@ -21,7 +21,7 @@ def show_detail(app: BudgetApp) -> None:
     if app.at == "findings":
         choosing.choose(app)
     if app.ledger.row is not None:
-        app.chooser("detail").present(_detail(app, app.ledger.row, app.size.width))
+        app.chooser("detail").present(_detail(app, app.ledger.row, app.size.width, whole=app.wide))
         app.turn_to("detail")
 
 
@@ -38,15 +38,15 @@ def follow(app: BudgetApp) -> None:
     if row is None:
         return
     if beside is not None and beside.display:
-        beside.present(_detail(app, row, app.beside_width))
+        beside.present(_detail(app, row, app.beside_width, whole=False))
     if app.at == "detail":
-        app.choosers["detail"].present(_detail(app, row, app.size.width), keep=True)
+        app.choosers["detail"].present(_detail(app, row, app.size.width, whole=app.wide), keep=True)
     if app.at == "explain":
         app.choosers["explain"].present(_explained(app, row), keep=True)
 
 
-def _detail(app: BudgetApp, row: Row, width: int) -> Offer:
-    choices = lay_lines(lines_of(app.ledger.view.snapshot, row), width, whole=app.wide)
+def _detail(app: BudgetApp, row: Row, width: int, *, whole: bool) -> Offer:
+    choices = lay_lines(lines_of(app.ledger.view.snapshot, row), width, whole=whole)
     return Offer("Row detail", ("", ""), choices, lambda _: None, filters=False)
 
 

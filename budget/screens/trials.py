@@ -18,7 +18,7 @@ SLOW, PAUSE = 0.15, 0.25
 QUICK, BREATH = 0.02, 0.01
 """Seconds: a list of trials that take longer each is made one by one, with so long for a key between them."""
 
-ROWS = 500
+ROWS = 750
 """A trial of a run of so many rows is taken for slow until one was timed."""
 
 Pace = Literal["at once", "one by one", "marked alone"]

@@ -21,8 +21,6 @@ LEDGER_AT_LEAST = 82
 
 def about(app: BudgetApp) -> tuple[str, str]:
     """Return what is to be told of the row under the cursor, with the role of its style."""
-    if app.at == "form" and app.form.blank is not None:
-        return app.form.blank.meaning, "faint"
     if app.at in app.choosers:
         marked = app.choosers[app.at].marked
         if app.at == "findings" and marked is not None:

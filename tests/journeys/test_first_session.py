@@ -110,7 +110,7 @@ def test_every_screen_is_reached_and_left_again(tmp_path: Path) -> None:
             session.wait_for("Enter edit")
         session.press("?", "Units", "enter")
         session.wait_for("Escape back")
-        session.settle(0.6)
+        session.settle(0.3)
         assert sum(bool(line.strip()) for line in session.lines) > 12
         session.press("escape")
         session.wait_for("Enter edit")

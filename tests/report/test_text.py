@@ -184,3 +184,26 @@ def test_plain_text_is_one_printable_line() -> None:
     assert plain("a\nb\tc\u2028d\xa0e") == "a b c d e"
     assert plain("\x1b\x00\x9f\u202e\u200b\ud800") == "\ufffd" * 6
     assert plain("Überströmung ½ 長") == "Überströmung ½ 長"
+
+
+def test_junctions_and_changes_of_area_are_reported_leg_by_leg() -> None:
+    text = RUN.replace("[terminal.R1]", '[section.B1]\nfrom = "M1"\nsize = "18 mm"\nlength = 4\n[terminal.R1]')
+    text = text.replace('size = "18 mm"', 'size = "18 mm"\ntakeoff = "straight"\ntransition = 30').replace(
+        '[terminal.R1]\ntitle = "Hall"\nfrom = "M1"', '[terminal.R1]\ntitle = "Hall"\nfrom = "B1"'
+    )
+    text = text.replace('[terminal."R 2"]\n', '[terminal."R 2"]\ntakeoff = "branch"\n')
+    description, budget = computed(text)
+    figures = Figures(description)
+    rows = part(report(text), "Junctions and changes of area")
+    supply, back = budget.sections["B1"].run.legs
+    for leg in (supply, back):
+        for joint in leg.joints:
+            row = next(row for row in rows if row.split()[:2] == ["B1", leg.leg] and joint.name in row)
+            assert figures.pressure(joint.drop) in row
+            assert figures.text(joint.reference_velocity, Dimension.VELOCITY) in row
+    assert sum(row.split()[:2] == ["B1", "supply"] for row in rows) == 2
+    assert sum(row.startswith("  R 2") for row in rows) == 2
+    said = " ".join(rows)
+    assert "on the velocity of the combined flow" in said
+    assert "on the velocity in the smaller area" in said
+    assert "Junctions and changes of area" not in report(RUN)

@@ -14,10 +14,11 @@ from budget.document import Document
 from budget.screens.app import BudgetApp
 from budget.screens.config import Config
 from budget.screens.lines import Lines
-from budget.screens.themes import terminal_theme
+from budget.screens.themes import Theme, terminal_theme
 
 EXAMPLES = Path(__file__).parents[2] / "examples"
 SMALL = (Path(__file__).with_name("cottage.toml")).read_text()
+DUCT = (Path(__file__).with_name("loft.toml")).read_text()
 
 
 class Hands:
@@ -63,6 +64,21 @@ class Hands:
         return next(line for line in self.lines(self.app.ledger) if line.lstrip("» ").split(" ")[0] == id_)
 
     @property
+    def listed(self) -> list[str]:
+        """The first cells of the list in front, as the filter leaves it."""
+        return [choice.cells[0] for choice in self.app.choosers[self.app.at].kept]
+
+    def listing(self, name: str) -> str:
+        """The line of the list in front that begins with a name."""
+        return next(line for line in self.lines() if line.startswith(f" {name}  "))
+
+    @property
+    def screen_text(self) -> str:
+        """What the list or form in front says."""
+        widget = self.app.form if self.app.at == "form" else self.app.front
+        return "\n".join(self.lines(widget))
+
+    @property
     def place(self) -> str:
         """Where the hands are."""
         return self.app.place
@@ -89,6 +105,7 @@ class Hands:
 
 
 NAMES = {
+    "?": "question_mark", ":": "colon",
     " ": "space", ".": "full_stop", '"': "quotation_mark", "=": "equals_sign", "-": "minus", "/": "slash",
     "{": "left_curly_bracket", "}": "right_curly_bracket", "_": "underscore", ",": "comma", "%": "percent_sign",
 }  # fmt: skip
@@ -103,12 +120,15 @@ Stage = Callable[..., None]
 def play(tmp_path: Path) -> Stage:
     """Run a play of key presses on the app without a terminal."""
 
-    def run(act: Play, text: str = SMALL, *, size: tuple[int, int] = (80, 24), ascii_only: bool = False) -> None:
+    def run(
+        act: Play, text: str = SMALL, *, size: tuple[int, int] = (80, 24), ascii_only: bool = False,
+        theme: Theme | None = None,
+    ) -> None:  # fmt: skip
         path = tmp_path / "run.toml"
         path.write_text(text, encoding="utf-8", newline="")
 
         async def stage() -> None:
-            app = BudgetApp(Document.open(path), Config(), terminal_theme(), ascii_only=ascii_only, notes=())
+            app = BudgetApp(Document.open(path), Config(), theme or terminal_theme(), ascii_only=ascii_only, notes=())
             async with app.run_test(size=size) as pilot:
                 await pilot.pause()
                 await act(Hands(app, pilot))

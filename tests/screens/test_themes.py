@@ -4,6 +4,7 @@ from pathlib import Path
 
 import pytest
 from rich.color import ColorSystem
+from textual.strip import Strip
 
 from budget.screens.themes import (
     ROLES,
@@ -16,6 +17,7 @@ from budget.screens.themes import (
     terminal_theme,
 )
 from budget.screens.toolkit import widget_theme
+from tests.screens.conftest import NAMES, Hands, Stage
 
 SHIPPED = [name for name in names_of_themes() if name != TERMINAL]
 LEAST_ON_FEW_COLOURS = 3.0
@@ -45,6 +47,30 @@ def test_the_terminal_s_own_palette_is_told_apart_without_a_colour() -> None:
     styles = terminal_theme().styles
     assert styles["cursor"].reverse
     assert styles["over"].bold
+
+
+@pytest.mark.parametrize("name", names_of_themes())
+def test_no_screen_paints_a_text_in_its_own_background_where_there_are_16_colours(play: Stage, name: str) -> None:
+    async def act(hands: Hands) -> None:
+        for keys in (("down", "down", "enter", "9"), ("escape", "f"), ("enter", "f"), ("escape", "v"), ("T",), ("?",)):
+            await hands.press(*(NAMES.get(key, key) for key in keys))
+            if keys == ("?",):
+                await hands.press("enter")
+            await hands.pilot.pause()
+            assert not clashes(hands.app.screen._compositor.render_strips()), keys
+
+    play(act, theme=load_theme(name)[0])
+
+
+def clashes(strips: list[Strip]) -> list[str]:
+    """Return the pieces of text that a terminal of 16 colours would paint in the colour of their background."""
+    found = []
+    for text, style, _ in (segment for strip in strips for segment in strip):
+        if text.strip(" ▊▎▔▁░") and style is not None and style.color is not None and style.bgcolor is not None:
+            colours = [colour.downgrade(ColorSystem.STANDARD) for colour in (style.color, style.bgcolor)]
+            if colours[0] == colours[1] and not colours[0].is_default:
+                found.append(text)
+    return found
 
 
 def _text(**changes: str | None) -> str:

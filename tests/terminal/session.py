@@ -77,7 +77,7 @@ class Session:
         for key in keys:
             os.write(self._fd, KEYS.get(key, key).encode())
 
-    def settle(self, quiet: float = 0.15, limit: float = 8.0) -> int:
+    def settle(self, quiet: float = QUIET, limit: float = 8.0) -> int:
         """Read until nothing comes for a while; return how many bytes came."""
         before, until = len(self.received), time.monotonic() + limit
         while time.monotonic() < until and self.read(quiet):
@@ -98,7 +98,7 @@ class Session:
         for key in keys:
             self.send(key)
             if self.read(ANSWER):
-                self.settle(QUIET)
+                self.settle()
         return len(self.received) - before
 
     @property
@@ -124,8 +124,8 @@ class Session:
         """Read until the app has ended; return its exit code."""
         until = time.monotonic() + limit
         while not self.ended and time.monotonic() < until:
-            self.read(0.1)
-        while self.read(0.1):
+            self.read(0.02)
+        while self.read(0.0):
             pass
         assert self.code is not None, "the app did not end"
         return self.code
@@ -137,7 +137,7 @@ class Session:
             self.read(0.05)
             pid, status = os.waitpid(self.pid, os.WUNTRACED | os.WNOHANG)
             if pid and os.WIFSTOPPED(status):
-                self.settle(0.05)
+                self.settle()
                 return
         raise AssertionError("the app did not stop")
 

@@ -30,9 +30,9 @@ def test_no_more_is_sent_than_what_changed(
     opened: Open, size: tuple[int, int], start: int, move: int, edit: int, cell: int
 ) -> None:
     session = opened(size=size)
-    session.settle(0.4)
+    session.settle(0.2)
     assert len(session.received) <= start
-    assert session.settle(quiet=5.0 if size == SMALL_SCREEN else 1.0, limit=5.0) == 0
+    assert session.settle(quiet=5.0 if size == SMALL_SCREEN else 0.3, limit=5.0) == 0
 
     for key in ("down", "right", "left", "down"):
         before = session.lines
@@ -45,7 +45,7 @@ def test_no_more_is_sent_than_what_changed(
         cells = changed_cells(before, session.lines)
         assert cells > 5 or key == "enter"
         assert sent <= edit + cell * max(1, cells), key
-    assert session.settle(quiet=1.0, limit=1.0) == 0
+    assert session.settle(quiet=0.3, limit=1.0) == 0
 
 
 def test_a_theme_of_many_colours_keeps_to_it_in_true_colour(opened: Open) -> None:
