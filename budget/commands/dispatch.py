@@ -39,6 +39,7 @@ class Command(NamedTuple):
 
 COMMANDS: Mapping[str, Command] = {
     "check": Command("Compute runs and list what is wrong or doubtful.", "budget check heating.toml --json"),
+    "flows": Command("Solve a run for the flows as installed.", "budget flows heating.toml --devices open"),
     "report": Command("Print the whole budget of a run as text.", "budget report heating.toml > heating.txt"),
     "balance": Command("Print the commissioning schedule of a run.", "budget balance heating.toml --csv > heating.csv"),
     "edit": Command("Open a run in the terminal app.", "budget edit heating.toml"),

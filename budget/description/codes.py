@@ -93,6 +93,13 @@ CODES: dict[str, Code] = {
     "settings-diversified": Code("note", "Settings hold for the diversified flow."),
     "reading": Code("error", "A reading from which no share of the design flow can be told."),
     "measured-flow": Code("warning", "A measured flow outside its tolerance."),
+    # flows as installed
+    "not-settled": Code("error", "The flows as installed did not settle: its figures are not to be relied on."),
+    "flow-tolerance": Code("warning", "A terminal's flow as installed is outside the tolerance of its design flow."),
+    "off-curve": Code("warning", "A pump or fan works outside the points of its curve: extrapolated."),
+    "set-point-missed": Code("warning", "A pump or fan does not reach its set point at full speed."),
+    "backward": Code("warning", "The flow as installed runs against the direction of design."),
+    "case-idle": Code("warning", "A case asks for something that has no effect where it is stated."),
     "extract-gain": Code("warning", "An air terminal's static drop is less than its neck velocity pressure."),
     "accept-unused": Code("note", "A finding was accepted that does not occur."),
 }

@@ -14,7 +14,8 @@ from budget.description.parts import read_section, read_source, read_terminal
 from budget.description.schema import CLASSES, KEYED, SINGLE, TOP
 from budget.description.scope import Scope
 from budget.description.source import Source
-from budget.description.tables import case, check_format, check_id, device, keyed, own_fitting, single
+from budget.description.tables import case as read_case
+from budget.description.tables import check_format, check_id, device, keyed, own_fitting, single
 from budget.description.values import Reading, nearest
 from budget.units import Dimension, UnitError, parse
 
@@ -57,7 +58,7 @@ def describe(source: Source, libraries: Sequence[Library] = ()) -> Description:
         sources=keyed(reading, data, "source", read_source, scope),
         sections=keyed(reading, data, "section", read_section, scope),
         terminals=keyed(reading, data, "terminal", read_terminal, scope),
-        cases=keyed(reading, data, "case", case),
+        cases=keyed(reading, data, "case", read_case),
         order=_order(source, data),
     )
     _check_ids(reading, source, data)
@@ -198,7 +199,7 @@ def _read_later(reading: Reading, data: Mapping[str, Any], description: Descript
 def _check_cases(reading: Reading, description: Description) -> None:
     """Find what a case names and the run does not have."""
     for case in description.cases.values():
-        named = [(("off", place), name) for place, name in enumerate(case.off)]
+        named: list[tuple[Path, str]] = [(("off", place), name) for place, name in enumerate(case.off)]
         named += [(("share", name), name) for name in case.share]
         named += [(("stroke", name), name) for name in case.stroke]
         named += [(("source", name), name) for name in case.sources]

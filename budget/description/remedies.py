@@ -83,6 +83,12 @@ REMEDIES: dict[str, str] = {
     "settings-diversified": "Commission with the diversified flow, or without diversity.",
     "reading": "State the flow, or a signal with the setting at which it was read.",
     "measured-flow": "Go on with the order of work; `budget balance FILE --readings READINGS` names the next device.",
+    "not-settled": "Look at the part that the finding names: a shut or spare leg, a device without room to hold.",
+    "flow-tolerance": "Set the balancing devices as proposed, or give the branch one; `budget balance` has the order.",
+    "off-curve": "Add the maker's points out to that flow, or bring the circuit back within the curve.",
+    "set-point-missed": "Lower the set point, or take a larger pump or fan.",
+    "backward": "Look for a branch that is drained by a stronger one; raise the source's pressure, or balance it.",
+    "case-idle": "Remove it from the case, or give the section or terminal a device or control item for it to act on.",
     "extract-gain": "Check the maker's static drop and the neck; their sum can't be below nothing.",
     "accept-unused": "Remove the acceptance, or correct its code.",
 }

@@ -51,8 +51,12 @@ def test_many_kinds_of_fault_are_told_apart_in_many_tables() -> None:
     pairs = {(fault.code, fault.table.split(".")[0]) for fault in faulty}
     assert len(pairs) >= 150
     covered = {fault.code for fault in faulty} | {code for _, code, _ in FILES}
-    assert covered == set(CODES) - {"unreadable"}  # a file that can't be opened has no text to change
+    # A file that can't be opened has no text to change; the others are found by commands that do more than check.
+    assert covered == set(CODES) - {"unreadable"} - AS_INSTALLED - MEASURED
 
+
+AS_INSTALLED = {"not-settled", "flow-tolerance", "off-curve", "set-point-missed", "backward", "case-idle"}
+MEASURED = {"reading", "measured-flow"}
 
 FILES = (
     (b"\xef\xbb\xbfformat = 1\n", "encoding", (1, 1)),

@@ -1,0 +1,1 @@
+"""The flows as installed."""
