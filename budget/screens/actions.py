@@ -9,10 +9,16 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
-Place = Literal["ledger", "detail", "explain", "findings", "manual", "text", "list", "form", "entry"]
+Place = Literal[
+    "ledger", "detail", "explain", "findings", "balance", "installed", "profile", "manual", "text", "list",
+    "form", "entry",
+]  # fmt: skip
 """Where the hands are: a screen, a list to pick from, a form to fill in, or a field that is being written in."""
 
-SCREENS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", "manual")
+BOARDS: tuple[Place, ...] = ("balance", "installed", "profile")
+"""Screens for balancing, with rows of their own."""
+
+SCREENS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", *BOARDS, "manual")
 """Screens on which a letter is a command."""
 
 EVERYWHERE: tuple[Place, ...] = (*SCREENS, "text")
@@ -32,19 +38,21 @@ class Action:
     """Place in the footer, the first six are shown; 99 is never shown."""
 
 
-_PICKS: tuple[Place, ...] = ("ledger", "detail", "findings")
-_LISTS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", "list")
+_PICKS: tuple[Place, ...] = ("ledger", "detail", "findings", "balance", "installed")
+_LISTS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", *BOARDS, "list")
+_STEPS: tuple[Place, ...] = ("ledger", "detail", "explain", "findings", *BOARDS)
+_ROWS: tuple[Place, ...] = ("balance", "installed")
 
 ACTIONS: tuple[Action, ...] = (
     Action("up", "Move up", ("up",), _LISTS),
     Action("down", "Move down", ("down",), _LISTS),
-    Action("left", "Move to the column on the left", ("left",)),
-    Action("right", "Move to the column on the right", ("right",)),
+    Action("left", "Move to the column on the left, or back along a profile", ("left",), ("ledger", "profile"), "back"),
+    Action("right", "Move to the column on the right, or along a profile", ("right",), ("ledger", "profile"), "along"),
     Action("page_up", "Move up a page", ("pageup",), _LISTS),
     Action("page_down", "Move down a page", ("pagedown",), _LISTS),
     Action("first", "Move to the first row", ("home",), _LISTS),
     Action("last", "Move to the last row", ("end",), _LISTS),
-    Action("edit", "Edit the cell", ("enter",), ("ledger", "detail"), "edit", 1),
+    Action("edit", "Edit the cell, or the setting of a device", ("enter",), ("ledger", "detail", *_ROWS), "edit", 1),
     Action("next_cell", "Move to the next cell that can be edited", ("tab",)),
     Action("previous_cell", "Move to the cell before that can be edited", ("shift+tab",)),
     Action("set", "Set a key of the row, in words of the file", ("equals_sign",), ("ledger", "detail"), "set key"),
@@ -66,19 +74,27 @@ ACTIONS: tuple[Action, ...] = (
     Action("rename", "Rename the ID, everywhere", ("r",)),
     Action("fold", "Fold or unfold the branch", ("space",)),
     Action("fold_all", "Fold or unfold every branch", ("z",)),
-    Action("undo", "Undo", ("u",), ("ledger", "detail", "explain", "findings"), "undo", 5),
-    Action("redo", "Redo", ("U", "ctrl+r"), ("ledger", "detail", "explain", "findings")),
+    Action("undo", "Undo", ("u",), _STEPS, "undo", 5),
+    Action("redo", "Redo", ("U", "ctrl+r"), _STEPS),
     Action("search", "Search the ledger", ("slash",), short="search"),
     Action("next_match", "Next match", ("n",)),
     Action("previous_match", "Match before", ("N",)),
-    Action("go_to", "Go to an ID", ("g",), ("ledger", "detail", "explain", "findings")),
+    Action("go_to", "Go to an ID", ("g",), _STEPS),
     Action("go_to_index", "Go to the index terminal", ("i",)),
     Action("next_finding", "Go to the next finding", ("e",)),
     Action("next_source", "Switch to the next source", ("P",)),
     Action("show_ledger", "Ledger", ("f2",), EVERYWHERE),
-    Action("show_detail", "Row detail", ("v", "f3"), ("ledger", "explain", "findings"), "detail"),
-    Action("explain", "Explain the figures of the row", ("E", "f6"), ("ledger", "detail"), "explain"),
-    Action("show_findings", "Findings", ("F", "f4"), ("ledger", "detail", "explain", "manual"), "findings"),
+    Action("show_detail", "Row detail", ("v", "f3"), ("ledger", "explain", "findings", *_ROWS), "detail"),
+    Action("explain", "Explain the figures of the row", ("E", "f6"), ("ledger", "detail", *_ROWS), "explain"),
+    Action("show_findings", "Findings", ("F", "f4"), ("ledger", "detail", "explain", *BOARDS, "manual"), "findings"),
+    Action("show_balance", "Balance: what is set where, and what was measured", ("B", "f7"), SCREENS, "balance"),
+    Action("show_installed", "As installed: the flows really driven", ("I", "f8"), SCREENS, "as installed"),
+    Action("show_profile", "Profile: pressure along a circuit", ("L", "f9"), SCREENS, "profile"),
+    Action("propose_kv", "Pick a Kv by the authority", ("K",), ("ledger", "detail", *_ROWS), "Kv"),
+    Action("turn_devices", "Put the devices open, as proposed, as stated", ("o",), ("installed",), "devices"),
+    Action("turn_case", "Solve for the next case", ("c",), ("installed",), "case"),
+    Action("solve", "Solve anew", ("r",), ("installed",)),
+    Action("pick_circuit", "Pick the circuit that is drawn", ("enter", "p"), ("profile",), "circuit"),
     Action("show_text", "Text", ("T", "f5"), SCREENS),
     Action("show_manual", "Manual", ("question_mark", "f1"), SCREENS),
     Action("commands", "Command list", ("colon", "ctrl+p"), EVERYWHERE, "commands", 6),
@@ -109,6 +125,9 @@ FOOTER: Mapping[Place, tuple[str, ...]] = {
     "detail": ("edit", "pick", "explain", "undo", "back", "commands"),
     "explain": ("show_detail", "undo", "back", "commands"),
     "findings": ("choose", "pick", "show_detail", "undo", "back", "commands"),
+    "balance": ("edit", "pick", "propose_kv", "show_installed", "undo", "back"),
+    "installed": ("turn_devices", "turn_case", "edit", "show_balance", "undo", "back"),
+    "profile": ("pick_circuit", "right", "left", "show_balance", "back", "commands"),
     "manual": ("back", "show_findings", "commands"),
     "text": ("apply_text", "save", "back", "commands"),
     "list": ("choose", "leave"),

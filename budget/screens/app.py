@@ -16,6 +16,8 @@ from budget.document import Document, Snapshot
 from budget.report.plain import plain
 from budget.screens import choosing, entering, turning
 from budget.screens.actions import Place
+from budget.screens.beside import Beside
+from budget.screens.board import Board
 from budget.screens.budget_line import BudgetLine, change_of
 from budget.screens.chooser import Chooser, Offer
 from budget.screens.config import Config
@@ -66,6 +68,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.keymap, self.notes = config.keymap, notes
         self.entry: entering.Entry | None = None
         self.trials = Trials(self)
+        self.valves = Beside(self)
         self.at: Place = "ledger"
         self.returns_to: Place = "ledger"
         self.sought = ""
@@ -83,6 +86,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.budget_line = BudgetLine(theme, view, self.ledger.source)
         self.foot = Foot(theme, config.keymap)
         self.choosers: dict[str, Chooser] = {}
+        self.boards: dict[str, Board] = {}
         self._form: Form | None = None
         self._text: TextScreen | None = None
         self._manual: ManualScreen | None = None
@@ -116,9 +120,9 @@ class BudgetApp(App[int], inherit_bindings=False):
         return "entry" if self.entry is not None else self.at
 
     @property
-    def front(self) -> Ledger | Chooser:
-        """The ledger, or the list in its place."""
-        return self.choosers.get(self.at, self.ledger)
+    def front(self) -> Ledger | Chooser | Board:
+        """The ledger, or the list or board in its place."""
+        return self.boards[self.at] if self.at in self.boards else self.choosers.get(self.at, self.ledger)
 
     def turn_to(self, place: Place) -> None:
         """Bring a screen to the front, in the place of the ledger."""
@@ -188,6 +192,8 @@ class BudgetApp(App[int], inherit_bindings=False):
         """Show a snapshot; with the one before it, by how much the required pressure changed."""
         view = View(snapshot)
         self.ledger.show(view)
+        if self.at in self.boards:
+            self.boards[self.at].show(snapshot)
         change = change_of(before, snapshot, self.ledger.source) if before is not None else self.change
         if snapshot is self.document.snapshot:
             self.change = change
@@ -257,7 +263,7 @@ class BudgetApp(App[int], inherit_bindings=False):
             self.front.point(event.x, event.y)
             self.tell()
             if event.chain == 2:
-                self.do("edit" if self.at in ("ledger", "detail") else "choose")
+                self.do(self.keymap.action(self.at, "enter") or "choose")
 
     def on_mouse_scroll_down(self) -> None:
         """Move down with the wheel."""

@@ -79,6 +79,7 @@ class Chooser(Lines):
         self.top = 0
         self._more: dict[int, tuple[str, ...]] = {}
         self._waiting: Timer | None = None
+        self._shaped: tuple[list[int], list[bool]] | None = None
 
     def present(self, offer: Offer, *, keep: bool = False) -> None:
         """Show a list; with `keep` cursor and filter stay, as for the same list after a change."""
@@ -133,6 +134,11 @@ class Chooser(Lines):
         self._filter()
         self.repaint()
 
+    def repaint(self) -> None:
+        """Spell every line again, in columns as wide as what they hold by now."""
+        self._shaped = None
+        super().repaint()
+
     def refresh_more(self) -> None:
         """Compute the further cells of the entries again."""
         self._more.clear()
@@ -147,7 +153,9 @@ class Chooser(Lines):
         """Spell the title, the headings, or an entry."""
         if y == 0:
             return self._title(width)
-        widths, right = self._shape(width)
+        if self._shaped is None:
+            self._shaped = self._shape(width)
+        widths, right = self._shaped
         if y == 1:
             return self._cells(self.offer.heads, widths, right, "heading")
         if y >= HEAD + self.page and self._tail:

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from budget.description.finding import Path
 from budget.report.located import Located
-from budget.screens import changing, entering, fitting_form
+from budget.screens import boards, changing, entering, fitting_form
 from budget.screens.actions import ACTIONS, Place
 from budget.screens.chooser import Choice, Offer
 from budget.screens.picking import offer_for
@@ -22,6 +22,9 @@ MOST = 10_000
 def pick(app: BudgetApp) -> None:
     """Offer what can stand in the cell, or in the line of the row detail."""
     row = app.ledger.row
+    if app.at in app.boards:
+        boards.pick_device(app)
+        return
     if app.at == "detail":
         marked = app.choosers["detail"].marked
         path = marked.value if marked is not None and isinstance(marked.value, tuple) else None

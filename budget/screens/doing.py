@@ -6,7 +6,7 @@ from collections.abc import Callable, Mapping
 from functools import partial
 from typing import TYPE_CHECKING
 
-from budget.screens import changing, choosing, entering, fitting_form, moving, shaping, telling, turning
+from budget.screens import boards, changing, choosing, entering, fitting_form, moving, shaping, telling, turning
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -67,6 +67,14 @@ DOINGS: Mapping[str, Doing] = {
     "show_detail": telling.show_detail,
     "explain": telling.show_explain,
     "show_findings": turning.show_findings,
+    "show_balance": boards.show_balance,
+    "show_installed": boards.show_installed,
+    "show_profile": boards.show_profile,
+    "propose_kv": boards.propose,
+    "turn_devices": boards.turn_devices,
+    "turn_case": boards.turn_case,
+    "solve": boards.solve,
+    "pick_circuit": boards.pick_circuit,
     "show_text": turning.show_text,
     "show_manual": turning.show_manual,
     "commands": choosing.show_commands,

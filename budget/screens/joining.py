@@ -137,7 +137,8 @@ class Trying:
         if way not in self._tried:
             try:
                 after = self.app.trials.preview(way.edit)
-                paths = [(*self.path[:2], key) for key in KEYS] + [(*o.path, key) for o in self.others for key in KEYS]
+                tables = (self.path[:2], *(other.path for other in self.others[:_MOST_OTHERS]))
+                paths = [(*table, key) for table in tables for key in KEYS]
                 wrong = next(filter(None, (objection(self.before, after, path) for path in paths)), "")
                 self._tried[way] = (after, wrong)
             except EditError as refused:

@@ -40,7 +40,7 @@ def end(app: BudgetApp, *, last: bool) -> None:
 
 def sideways(app: BudgetApp, columns: int) -> None:
     """Move to a neighbouring column."""
-    app.ledger.move_column(columns)
+    app.boards.get(app.at, app.ledger).move_column(columns)
     app.tell()
 
 

@@ -9,7 +9,7 @@ from budget.description.finding import Level, dotted
 from budget.manual import titles
 from budget.report.located import Located
 from budget.report.plain import plain
-from budget.screens import entering, moving, saving, telling
+from budget.screens import boards, entering, moving, saving, telling
 from budget.screens.chooser import Choice, Chooser, Offer
 
 if TYPE_CHECKING:
@@ -28,6 +28,8 @@ def about(app: BudgetApp) -> tuple[str, str]:
         if app.at in ("detail", "explain") and marked is not None and marked.words:
             return marked.words, "faint"
         return ("  ".join(cell.strip() for cell in marked.cells if cell.strip()), "faint") if marked else ("", "")
+    if app.at in app.boards:
+        return app.boards[app.at].about
     row = app.ledger.row
     if app.at != "ledger" or row is None:
         return "", ""
@@ -60,6 +62,9 @@ def edit(app: BudgetApp) -> None:
     if app.at == "ledger":
         entering.edit_cell(app)
         return
+    if app.at in app.boards:
+        boards.edit(app)
+        return
     marked = app.choosers["detail"].marked
     if marked is None or not isinstance(marked.value, tuple):
         app.say("this line is computed; Enter works on the lines as written", "note")
@@ -70,6 +75,7 @@ def edit(app: BudgetApp) -> None:
 def follow(app: BudgetApp) -> None:
     """Let what is told of the row follow the cursor, and the findings the run, where they are in view."""
     telling.follow(app)
+    boards.follow(app)
     if app.at == "findings":
         app.choosers["findings"].present(_findings(app), keep=True)
 
@@ -158,6 +164,8 @@ def back(app: BudgetApp) -> None:
         reason = app.foot.message
         saving.ask(app, "The text is not TOML", (("throw away what was written", lambda: _forget(app)),), "mend it")
         app.say(reason, "error")
+        return
+    if boards.stop(app):
         return
     app.turn_to("ledger")
 

@@ -38,8 +38,11 @@ class Hands:
         self.app.post_message(event)
         for _ in range(2):
             await self.pilot._wait_for_screen()
-        if not self.app.front.size:  # it has just been mounted, and is not laid out yet
-            await self.pilot.pause()
+        shown = self.app.form if self.app.at == "form" else self.app.front
+        for _ in range(50):
+            if shown.size or not shown.display:
+                break
+            await self.pilot._wait_for_screen()  # it has just been mounted, and is not laid out yet
 
     async def type(self, text: str) -> None:
         """Type letters."""
@@ -130,7 +133,8 @@ def play(tmp_path: Path) -> Stage:
         async def stage() -> None:
             app = BudgetApp(Document.open(path), Config(), theme or terminal_theme(), ascii_only=ascii_only, notes=())
             async with app.run_test(size=size) as pilot:
-                await pilot.pause()
+                while not app.ledger.size:
+                    await pilot._wait_for_screen()
                 await act(Hands(app, pilot))
 
         asyncio.run(stage())

@@ -67,8 +67,8 @@ def clashes(strips: list[Strip]) -> list[str]:
     found = []
     for text, style, _ in (segment for strip in strips for segment in strip):
         if text.strip(" ▊▎▔▁░") and style is not None and style.color is not None and style.bgcolor is not None:
-            colours = [colour.downgrade(ColorSystem.STANDARD) for colour in (style.color, style.bgcolor)]
-            if colours[0] == colours[1] and not colours[0].is_default:
+            front, back = (colour.downgrade(ColorSystem.STANDARD).number for colour in (style.color, style.bgcolor))
+            if front is not None and front == back:
                 found.append(text)
     return found
 

@@ -192,7 +192,7 @@ def test_saving_writes_the_file_and_says_so(play: Stage) -> None:
         await hands.press("enter", "9", "enter")
         assert "not saved" in hands.budget
         await hands.press("ctrl+s")
-        assert hands.foot.startswith("saved ")
+        assert hands.foot.startswith("saved")
         assert path.read_text() == hands.text
         assert "not saved" not in hands.budget
         path.write_text(SMALL)

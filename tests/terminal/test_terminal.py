@@ -63,19 +63,19 @@ def test_a_file_that_is_not_there_is_told_in_one_line(tmp_path: Path) -> None:
         assert BACK not in session.received
 
 
-@pytest.mark.parametrize("number", [signal.SIGTERM, signal.SIGHUP])
-def test_a_signal_ends_it_with_the_terminal_put_back(opened: Open, number: int) -> None:
-    session = opened()
-    session.signal(number)
-    assert session.wait_for_end() == 128 + number
-    assert BACK in session.received
-    assert CURSOR in session.received
-
-
-def test_a_closed_terminal_ends_it(opened: Open) -> None:
-    session = opened()
-    session.hang_up()
-    assert session.wait_for_end() == 128 + signal.SIGHUP
+def test_a_signal_ends_it_with_the_terminal_put_back_and_a_closed_terminal_ends_it(opened: Open) -> None:
+    numbers = (signal.SIGTERM, signal.SIGHUP)
+    *told, left = (opened(wait="") for _ in range(3))
+    for session in (*told, left):
+        session.wait_for("required")
+    for session, number in zip(told, numbers, strict=True):
+        session.signal(number)
+    left.hang_up()
+    for session, number in zip(told, numbers, strict=True):
+        assert session.wait_for_end() == 128 + number
+        assert BACK in session.received
+        assert CURSOR in session.received
+    assert left.wait_for_end() == 128 + signal.SIGHUP
 
 
 def test_after_a_stop_everything_is_painted_again(opened: Open) -> None:
@@ -94,9 +94,11 @@ def test_after_a_stop_everything_is_painted_again(opened: Open) -> None:
 def test_nothing_from_the_file_reaches_the_terminal_raw(opened: Open) -> None:
     text = SMALL.replace('"Boiler pump"', f'"{HOSTILE}"').replace('"Main from the boiler"', f'"{HOSTILE}"')
     text = text.replace('name = "Boiler"', f'name = "{HOSTILE}"').replace('title = "Lock', f'title = "{HOSTILE}Lock')
+    text += f'[fitting.odd]\nk = 0.5\nsource = "{HOSTILE}"\n'
     session = opened(text)
     session.press("down", "down")
     for keys in (
+        ("f", "odd", "escape"), ("E", "escape"), ("y", "escape"),
         ("v", "pagedown", "escape"), ("F", "escape"), ("g", "escape"), ("m", "escape"), ("s", "escape"), ("colon",),
         ("escape",), ("/", "click", "enter"), ("T",), ("escape",), ("r", "escape"), ("=", "note = x", "escape"),
     ):  # fmt: skip
@@ -120,21 +122,19 @@ def test_ascii_mode_sends_nothing_else(opened: Open) -> None:
     assert session.received.isascii()
 
 
-@pytest.mark.parametrize(
-    "environment",
-    [{"TERM": "screen"}, {"TERM": "vt220"}, {"NO_COLOR": "1"}],
-    ids=str,
-)
-def test_it_is_readable_on_any_terminal(opened: Open, environment: dict[str, str]) -> None:
-    session = opened(environment=environment)
-    session.press("down", "down")
-    assert "required 20.88" in session.text
-    assert "0.49" in session.text
-    row = next(y for y, line in enumerate(session.lines) if line.startswith("» M1"))
-    cells = session.screen.buffer[row]
-    x = session.lines[row].index("7.5")
-    assert cells[x].reverse
-    assert not cells[x + 12].reverse
+def test_it_is_readable_on_any_terminal(opened: Open) -> None:
+    environments = ({"TERM": "screen"}, {"TERM": "vt220"}, {"NO_COLOR": "1"}, {"COLORTERM": "truecolor"})
+    sessions = [opened(environment=environment, wait="") for environment in environments]
+    for session in sessions:
+        session.wait_for("required")
+        session.press("down", "down")
+        assert "required 20.88" in session.text
+        assert "0.49" in session.text
+        row = next(y for y, line in enumerate(session.lines) if line.startswith("» M1"))
+        cells = session.screen.buffer[row]
+        x = session.lines[row].index("7.5")
+        assert cells[x].reverse
+        assert not cells[x + 12].reverse
 
 
 def test_a_theme_paints_no_text_in_its_own_background_on_a_console_of_16_colours(opened: Open) -> None:
