@@ -11,8 +11,7 @@ from functools import cache
 from types import MappingProxyType
 from typing import Any, Final
 
-from budget.catalogue import duct_kinds, pipe_kinds
-from budget.catalogue.kind_laws import Place, beyond
+from budget.catalogue.kind_laws import Law, Place, beyond
 from budget.catalogue.loader import load
 
 CARRIERS: Final = ("pipe", "duct")
@@ -20,7 +19,6 @@ CARRIERS: Final = ("pipe", "duct")
 SHAPES: Final = ("round", "rectangular", "oval")
 """Cross-sections of sections."""
 
-_LAWS: Final = {"pipe": pipe_kinds.LAWS, "duct": duct_kinds.LAWS}
 _IN_SECTION: Final = "velocity in the section"
 
 
@@ -128,7 +126,7 @@ def kind_coefficient(
     if not (0.0 < width < math.inf and 0.0 < height < math.inf and 0.0 < nominal < math.inf):
         raise ValueError(f"{found.name} needs positive sizes, not {width} m, {height} m and {nominal} m")
     complete, outside = _complete(found, values)
-    loss = _LAWS[found.carries][row["law"]](complete, Place(shape, width, height, nominal), row)
+    loss = _law(found.carries, row["law"])(complete, Place(shape, width, height, nominal), row)
     outside += loss.outside
     return KindCoefficient(loss.constant, loss.per_reynolds, loss.corrected, not outside, "; ".join(outside))
 
@@ -159,6 +157,14 @@ def _complete(found: Kind, values: Mapping[str, float | str]) -> tuple[dict[str,
         outside += beyond(parameter.name, value, low, high, unit)
         complete[parameter.name] = min(max(float(value), low), high)
     return complete, outside
+
+
+def _law(carries: str, name: str) -> Law:
+    """The function that works out a kind's coefficient; read when the first is asked for, as few runs need one."""
+    from budget.catalogue import duct_kinds, pipe_kinds  # noqa: PLC0415
+
+    laws = {"pipe": pipe_kinds.LAWS, "duct": duct_kinds.LAWS}
+    return laws[carries][name]
 
 
 @cache

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 from pathlib import Path
@@ -25,6 +26,7 @@ def run(path: Path, *, ascii: bool | None = None, mouse: bool | None = None) -> 
         print(f"budget: {refused}", file=sys.stderr)
         return 2
     prepare(os.environ)
+    gc.disable()  # until the first frame: nothing that is imported or read before it is garbage
     from budget.screens.opening import open_app  # noqa: PLC0415 - the toolkit reads its switches when it is imported
 
     return open_app(path, config, problems, ascii_only=ascii_only, mouse=config.mouse if mouse is None else mouse)

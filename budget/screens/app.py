@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import gc
 from typing import TYPE_CHECKING, ClassVar
 
 from textual import events
@@ -108,6 +109,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
         self.show(self.document.snapshot)
         self.tell()
+        self.call_after_refresh(gc.enable)
         if self.notes:
             more = f" (and {len(self.notes) - 1} more)" if len(self.notes) > 1 else ""
             self.say(plain(self.notes[0]) + more, "warning")

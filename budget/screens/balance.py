@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from functools import cached_property
 from pathlib import Path
 
@@ -10,11 +10,12 @@ from budget.description import Level, read_bytes
 from budget.description.readings import Readings, read_readings
 from budget.document import Snapshot
 from budget.network.results import SectionResult, TerminalResult
-from budget.report.figures import NONE, plain_number
+from budget.report.figures import NONE, Figures, plain_number
 from budget.report.located import Located, locate
 from budget.report.plain import plain
 from budget.report.schedule import Row, Schedule, schedule
 from budget.report.schedule_text import next_text
+from budget.screens.beside import Beside
 from budget.screens.board import Board, Head, place_heads, spell_heads, spell_row
 from budget.screens.lines import Piece
 from budget.screens.rows import INDEX_SIGN, OVER_SIGN, Cell
@@ -31,6 +32,9 @@ _COLUMN_OF_CODE = {
 TOLD = 3
 """Lines beneath the rows that tell of the marked one."""
 
+MANY = 750
+"""Terminals from which a schedule is worked out beside the keyboard."""
+
 STEP = 2
 """Lines for what to do next, where something was measured."""
 
@@ -43,15 +47,17 @@ def readings_beside(run: Path | None) -> Path | None:
 class Balance(Board):
     """The schedule as a table; it holds the cursor and what was read beside the run."""
 
-    def __init__(self, theme: Theme, snapshot: Snapshot) -> None:
-        """Show the schedule of a run, without readings yet."""
+    def __init__(self, theme: Theme, snapshot: Snapshot, work: Beside, told: Callable[[], None]) -> None:
+        """Show the schedule of a run, without readings yet; `told` is called when a long one was worked out."""
         super().__init__(theme, snapshot, id="balance")
+        self.work, self.told = work, told
         self.schedule = Schedule(())
         self.readings: Readings | None = None
         self.findings: tuple[Located, ...] = ()
         """Of the readings."""
         self.refused = ""
         self._ids: tuple[str, ...] = ()
+        self._wanted = ""
         self._source: bytes | None = None
 
     def read(self, run: Path | None) -> None:
@@ -65,18 +71,33 @@ class Balance(Board):
                 self.refused = plain(str(refused))
 
     def prepare(self) -> None:
-        """Take the schedule of the snapshot, and judge what was measured."""
-        snapshot = self.snapshot
-        self.readings, self.findings = None, ()
-        source = read_bytes(self._source) if self._source is not None else None
-        if source is not None:
-            self.readings = read_readings(source, snapshot.description)
-        self.schedule = schedule(snapshot.description, snapshot.budget, self.figures, self.readings)
-        if source is not None and self.readings is not None:
-            found = (*self.readings.findings, *self.schedule.findings)
-            self.findings = locate(found, source, snapshot.description)
+        """Take the schedule of the snapshot, and judge what was measured; a long one beside the keyboard."""
+        snapshot, source = self.snapshot, self._source
+        self.work.stop()
+        if len(snapshot.description.terminals) <= MANY:
+            self._take(_worked_out(snapshot, source))
+        else:
+            self.work.start(lambda _: _worked_out(snapshot, source), self._take_later, self._fail)
+
+    def _take(self, found: tuple[Schedule, Readings | None, tuple[Located, ...]]) -> None:
+        self.schedule, self.readings, self.findings = found
         self._ids = tuple(row.id for row in self.schedule.rows)
         self.__dict__.pop("_marks", None)
+
+    def _take_later(self, found: tuple[Schedule, Readings | None, tuple[Located, ...]]) -> None:
+        marked = self.marked or self._wanted
+        self._take(found)
+        self.go(self._ids.index(marked) if marked in self._ids else self.cursor)
+        self.told()
+
+    def _fail(self, reason: str) -> None:
+        self.refused = reason
+        self.told()
+
+    def go_to(self, id_: str) -> bool:
+        """Move the cursor to a row, or as soon as there are rows."""
+        self._wanted = id_
+        return super().go_to(id_)
 
     @property
     def ids(self) -> Sequence[str]:
@@ -97,6 +118,8 @@ class Balance(Board):
     def about(self) -> tuple[str, str]:
         """The name of the marked row and where it stands."""
         row = self.row
+        if self.work.working:
+            return "working out the schedule...", "note"
         if row is None:
             return "there is nothing to set or to measure", "faint"
         lost = next((one for one in self.findings if one.level is Level.ERROR), None)
@@ -240,3 +263,16 @@ class Balance(Board):
         description = self.snapshot.description
         part = description.terminals.get(row.id) if row.kind == "terminal" else description.sections.get(row.id)
         return part.setting if part is not None else None
+
+
+def _worked_out(
+    snapshot: Snapshot, readings: bytes | None
+) -> tuple[Schedule, Readings | None, tuple[Located, ...]]:
+    """Return the schedule of a run, the readings, and what is wrong with them."""
+    description, figures = snapshot.description, Figures(snapshot.description)
+    if readings is None:
+        return schedule(description, snapshot.budget, figures), None, ()
+    source = read_bytes(readings)
+    measured = read_readings(source, description)
+    found = schedule(description, snapshot.budget, figures, measured)
+    return found, measured, locate((*measured.findings, *found.findings), source, description)

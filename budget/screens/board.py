@@ -127,10 +127,13 @@ class Board(Lines):
         """Send the cells that differ; of a board that is not in front, forget what stood there."""
         if not self.size:
             self._painted.clear()
+            self.refresh()
         super().repaint()
 
     def on_resize(self) -> None:
         """Keep the row under the cursor in view."""
+        # It has just been painted whole; the toolkit would do so again with the next key.
+        self._exchange_repaint_regions()
         self._keep_in_view()
         self.repaint()
 

@@ -70,15 +70,15 @@ def _board(app: BudgetApp, place: Place) -> Board:
 
 def _make(app: BudgetApp, place: Place) -> Board:
     snapshot = app.document.snapshot
-    if place == "balance":
-        return Balance(app.colours, snapshot)
-    if place == "profile":
-        return ProfileBoard(app.colours, snapshot)
 
     def told() -> None:
-        if app.place == "installed":
+        if app.place == place:
             app.tell()
 
+    if place == "balance":
+        return Balance(app.colours, snapshot, Beside(app), told)
+    if place == "profile":
+        return ProfileBoard(app.colours, snapshot)
     return Installed(app.colours, snapshot, Beside(app), told)
 
 

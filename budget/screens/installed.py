@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator, Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import replace
 
-from budget.description import Case, Level, read_text
+from budget.description import Level
 from budget.document import Snapshot
-from budget.network.flows import Devices, Flows, SourceFlow, TerminalFlow, solve_flows
+from budget.network.flows import Devices, SourceFlow, TerminalFlow
 from budget.report.figures import NONE
-from budget.report.located import Located, locate
 from budget.report.operating import Operating, draw_operating, limits, operating
 from budget.report.plain import plain
 from budget.screens.beside import Beside, Watch
@@ -18,11 +17,17 @@ from budget.screens.columns import MARK
 from budget.screens.lines import Piece
 from budget.screens.rows import INDEX_SIGN, OVER_SIGN, Cell
 from budget.screens.safe import clip, fit, steady, width_of
+from budget.screens.solving import Request, Solved, solve_request
 from budget.screens.themes import Theme
 from budget.units import Dimension
 
-WAYS: tuple[Devices, ...] = ("given", "open", "set")
-SAID: dict[Devices, str] = {"given": "devices as stated", "open": "devices open", "set": "devices as proposed"}
+WAYS: tuple[Devices, ...] = ("given", "open", "set", "rounded")
+SAID: dict[Devices, str] = {
+    "given": "devices as stated",
+    "open": "devices open",
+    "set": "devices as proposed",
+    "rounded": "devices rounded",
+}
 
 TABLE = 45
 """Cells that the table keeps beside the drawing."""
@@ -31,36 +36,6 @@ LEAST_DRAWING = 30
 
 MARKS = "█·●│─┼"
 _ROLES = {"█": "bar", "·": "index", "●": "over"}
-
-
-@dataclass(frozen=True, slots=True)
-class Request:
-    """What is to be solved: a run, its devices, its case."""
-
-    snapshot: Snapshot
-    devices: Devices = "given"
-    case: str = ""
-
-    @property
-    def stated(self) -> Case | None:
-        """The case as the file states it."""
-        return self.snapshot.description.cases.get(self.case)
-
-    def is_as(self, other: Request | None) -> bool:
-        """Whether the same is to be solved."""
-        if other is None or self.snapshot.budget is not other.snapshot.budget:
-            return False
-        return (self.devices, self.case) == (other.devices, other.case)
-
-
-@dataclass(frozen=True, slots=True)
-class Solved:
-    """What was solved, with the curves of the sources that were drawn so far."""
-
-    request: Request
-    flows: Flows
-    findings: tuple[Located, ...]
-    curves: dict[str, Operating | None] = field(default_factory=dict)
 
 
 class Installed(Board):
@@ -95,7 +70,7 @@ class Installed(Board):
         """Solve anew; what was solved last stands until then."""
         request, last = self.request, self.solved
         self._asked, self.state = request, "solving..."
-        self.work.start(lambda watch: _solve(request, last, watch), self._take, self._fail, self._progress)
+        self.work.start(lambda watch: solve_request(request, last, watch), self._take, self._fail, self._progress)
         self._tell()
 
     def stop(self) -> bool:
@@ -108,7 +83,7 @@ class Installed(Board):
         return True
 
     def turn_devices(self) -> None:
-        """Put the devices open, as proposed, as stated in turn."""
+        """Put the devices open, as proposed, rounded to their scale, as stated in turn."""
         self.devices = WAYS[(WAYS.index(self.devices) + 1) % len(WAYS)]
         self.renew()
 
@@ -331,15 +306,3 @@ class Installed(Board):
         """Move the cursor to the row at a place of the table."""
         if x >= MARK:
             super().point(x, y)
-
-
-def _solve(request: Request, last: Solved | None, watch: Watch) -> Solved:
-    """Solve a request, beginning with the flows of the last one where those are of the same network."""
-    run, start = request.snapshot.budget.run, None
-    if last is not None and last.flows.settled and last.request.case == request.case:
-        layout, before = run.layout, last.request.snapshot.budget.run.layout
-        same = (layout.topology.legs, layout.terminals.ids) == (before.topology.legs, before.terminals.ids)
-        start = last.flows.solution.flow if same and len(layout.devices) == len(before.devices) else None
-    flows = solve_flows(run, request.stated, request.devices, start=start, watch=watch)
-    snapshot = request.snapshot
-    return Solved(request, flows, locate(flows.findings, read_text(snapshot.text), snapshot.description))

@@ -10,9 +10,9 @@ from budget.document import Document, Snapshot
 from budget.network.proposals import propose_devices, propose_kv
 from budget.report.figures import Figures, plain_number
 from budget.report.schedule import Row, schedule
+from budget.screens import balance
 from budget.screens.balance import Balance, readings_beside
 from budget.screens.board import place_heads
-from budget.screens.themes import terminal_theme
 from tests.screens.conftest import SMALL, Hands, Stage
 
 CONTROLLED = SMALL.replace(
@@ -241,10 +241,48 @@ def test_what_is_worked_out_is_not_offered_after_something_else_was_done(play: S
     play(act, CONTROLLED)
 
 
-@pytest.mark.parametrize("width", [40, 60, 80, 101, 140, 200])
-def test_columns_leave_whole(width: int) -> None:
-    snapshot = Document.of(SMALL).snapshot
-    placed = place_heads(Balance(terminal_theme(), snapshot).heads, width)
-    assert sum(cells for _, cells in placed) <= width - 1
-    assert all(cells >= head.width for head, cells in placed)
-    assert placed[0][0].key == "id"
+def test_columns_leave_whole(play: Stage) -> None:
+    async def act(hands: Hands) -> None:
+        await hands.press("B")
+        for width in (40, 60, 80, 101, 140, 200):
+            placed = place_heads(board(hands).heads, width)
+            assert sum(cells for _, cells in placed) <= width - 1
+            assert all(cells >= head.width for head, cells in placed)
+            assert placed[0][0].key == "id"
+
+    play(act)
+
+
+def test_a_long_schedule_is_worked_out_beside_the_keyboard(play: Stage, monkeypatch: pytest.MonkeyPatch) -> None:
+    _, expected = rows(SMALL)
+    monkeypatch.setattr(balance, "MANY", 0)
+
+    async def act(hands: Hands) -> None:
+        await hands.at("R2")
+        await hands.press("B")
+        while board(hands).work.working:
+            await asyncio.sleep(0.005)
+            await hands.pilot._wait_for_screen()
+        assert [row.id for row in board(hands).schedule.rows] == [row.id for row in expected]
+        assert board(hands).marked == "R2"
+        assert hands.foot.startswith("R2  LV 15")
+
+    play(act)
+
+
+def test_text_of_the_file_is_shown_as_it_is_on_every_board(play: Stage) -> None:
+    bad = "[@click=app.quit]x[/] \\u001b]52;c;aGk=\\u0007 [/]"
+    text = SMALL.replace('title = "Hall"', f'title = "{bad}"\nlocation = "{bad}"')
+    text = text.replace('"LV 15"', '"L[b]V"') + f'\n[case."{bad}"]\noff = ["R4"]\n'
+
+    async def act(hands: Hands) -> None:
+        await hands.at("R1")
+        for keys in (("B",), ("I", "c"), ("L",)):
+            await hands.press(*keys)
+            await hands.pilot.pause()
+            strips = hands.app.screen._compositor.render_strips()
+            shown = "\n".join("".join(segment.text for segment in strip) for strip in strips)
+            assert "[@click=app.quit]x[/]" in shown
+            assert shown.replace("\n", "").isprintable()
+
+    play(act, text)

@@ -15,17 +15,16 @@ from budget.document import Document
 from budget.network.flows import Devices, Flows, solve_flows
 from budget.report.figures import Figures
 from budget.report.operating import operating
-from budget.screens import installed
+from budget.screens import solving
 from budget.screens.installed import Installed
 from tests.screens.conftest import SMALL, Hands, Stage
 
-CURVE = SMALL.replace(
-    'efficiency = 0.35', 'efficiency = 0.35\ncurve = [["0 L/s", "34 kPa"], ["0.1 L/s", "30 kPa"], ["0.2 L/s", "18 kPa"]]'
-) + """
+PUMP = 'curve = [["0 L/s", "34 kPa"], ["0.1 L/s", "30 kPa"], ["0.2 L/s", "18 kPa"]]'
+CURVE = SMALL.replace("efficiency = 0.35", f"efficiency = 0.35\n{PUMP}") + """
 [case.night]
 title = "Night"
 off = ["R1"]
-"""  # fmt: skip
+"""
 
 
 def board(hands: Hands) -> Installed:
@@ -80,6 +79,9 @@ def test_flows_are_those_of_the_solve_in_every_way_and_case(play: Stage) -> None
         assert "case night" in hands.lines()[0]
         assert_shown(hands, CURVE, headless(CURVE, "set", "night"))
         await hands.press("c", "o")
+        await solved(hands)
+        assert_shown(hands, CURVE, headless(CURVE, "rounded"))
+        await hands.press("o")
         await solved(hands)
         assert "no case" in hands.lines()[0]
 
@@ -150,7 +152,7 @@ def test_a_long_solve_never_holds_up_a_key_and_escape_stops_it(play: Stage, monk
             raise
         return solve_flows(*arguments, watch=watch, **more)
 
-    monkeypatch.setattr(installed, "solve_flows", long)
+    monkeypatch.setattr(solving, "solve_flows", long)
 
     async def act(hands: Hands) -> None:
         await hands.press("I")
@@ -181,7 +183,7 @@ def test_what_can_not_be_solved_is_told(play: Stage, monkeypatch: pytest.MonkeyP
 
     async def act(hands: Hands) -> None:
         await hands.press("c", "u", "I")
-        monkeypatch.setattr(installed, "solve_flows", broken)
+        monkeypatch.setattr(solving, "solve_flows", broken)
         await hands.press("o")
         await solved(hands)
         assert hands.foot == "could not be solved: no way"
@@ -191,7 +193,10 @@ def test_what_can_not_be_solved_is_told(play: Stage, monkeypatch: pytest.MonkeyP
     play(act)
 
 
-@pytest.mark.parametrize("text", ["format = 1\n", "", SMALL.replace('from = "P1"', 'from = "P9"'), SMALL.replace('size = "18 mm"', "")])
+LOST, SIZELESS = SMALL.replace('from = "P1"', 'from = "P9"'), SMALL.replace('size = "18 mm"', "")
+
+
+@pytest.mark.parametrize("text", ["format = 1\n", "", LOST, SIZELESS], ids=["bare", "empty", "lost", "sizeless"])
 def test_a_run_that_can_not_be_computed_has_every_screen_all_the_same(play: Stage, text: str) -> None:
     async def act(hands: Hands) -> None:
         for key in ("I", "B", "L", "down", "right", "K", "I", "down", "o", "enter"):
@@ -215,7 +220,8 @@ from budget.screens.app import BudgetApp
 from budget.screens.config import Config
 from budget.screens.themes import terminal_theme
 async def main():
-    app = BudgetApp(Document.open(Path({str(tmp_path / "run.toml")!r})), Config(), terminal_theme(), ascii_only=False, notes=())
+    document = Document.open(Path({str(tmp_path / "run.toml")!r}))
+    app = BudgetApp(document, Config(), terminal_theme(), ascii_only=False, notes=())
     async with app.run_test(size=(80, 24)) as pilot:
         for key in ("B", "L"):
             app.post_message(events.Key(key, key)); await pilot.pause()
