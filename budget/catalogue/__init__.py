@@ -14,7 +14,7 @@ from budget.catalogue.ducts import (
     nearest_round,
     standard_sizes,
 )
-from budget.catalogue.fittings import METHODS, Coefficient, Fitting, coefficient, fitting, fitting_names
+from budget.catalogue.fittings import METHODS, Coefficient, Fitting, coefficient, fitting, fitting_names, kinds_by_name
 from budget.catalogue.fluids import Fluid, fluid, fluid_names
 from budget.catalogue.kinds import Check, Kind, KindCoefficient, Parameter, kind, kind_coefficient, kind_names
 from budget.catalogue.limits import Limit, limits
@@ -49,6 +49,7 @@ __all__ = [
     "kind",
     "kind_coefficient",
     "kind_names",
+    "kinds_by_name",
     "limits",
     "nearest_round",
     "pipe_line",

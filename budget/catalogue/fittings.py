@@ -83,6 +83,11 @@ def fitting_names() -> tuple[str, ...]:
 
 
 @lru_cache(maxsize=4096)
+def kinds_by_name() -> tuple[str, ...]:
+    """Names of the kinds of fittings that need no parameters, and so may be named like a fitting of this list."""
+    return tuple(load("fittings")["kinds_by_name"])
+
+
 def coefficient(name: str, method: str, nominal: float, bore: float) -> Coefficient | None:
     """Loss coefficient of the fitting `name` by `method` at a nominal size and bore, both in m and positive.
 

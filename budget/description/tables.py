@@ -7,7 +7,7 @@ from collections.abc import Callable, Mapping
 from itertools import pairwise
 from typing import Any
 
-from budget.catalogue import fitting_names, kind
+from budget.catalogue import fitting_names, kinds_by_name
 from budget.description.finding import Path, dotted, warning
 from budget.description.model import Case, Device, OwnFitting, SourceCase
 from budget.description.schema import FORMAT, KEYED, SINGLE
@@ -67,10 +67,8 @@ def own_fitting(reading: Reading, id_: str, values: dict[str, Any], path: Path) 
     """Read a fitting of one's own."""
     if "k" not in values and not reading.faulty((*path, "k")):
         reading.wrong("missing", f"the fitting {id_!r} has no loss coefficient; write k = 0.75", path)
-    counted = kind(id_)
     # A kind that needs parameters can't be meant by a name alone.
-    alike = counted is not None and all(parameter.default is not None for parameter in counted.parameters)
-    if id_ in fitting_names() or alike:
+    if id_ in fitting_names() or id_ in kinds_by_name():
         reading.wrong(
             "contradiction", f"{id_!r} is a fitting of the catalogue too; give one's own another name", path
         )

@@ -1,26 +1,29 @@
-"""The screens for balancing: turning to them, and what the keys do there."""
+"""The screens for balancing: turning to them, and what the keys do there.
+
+Each is imported when it is first shown: what they stand on would keep the first frame of the ledger waiting.
+"""
 
 from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
 from budget.report.plain import plain
-from budget.screens import entering, valves
+from budget.screens import entering
 from budget.screens.actions import Place
-from budget.screens.balance import Balance
 from budget.screens.beside import Beside
 from budget.screens.board import Board
 from budget.screens.chooser import Choice, Offer
-from budget.screens.installed import Installed
-from budget.screens.profile import ProfileBoard
 
 if TYPE_CHECKING:
     from budget.description.finding import Path
     from budget.screens.app import BudgetApp
+    from budget.screens.installed import Installed
 
 
 def show_balance(app: BudgetApp) -> None:
     """Show the commissioning schedule, with the readings that stand beside the run."""
+    from budget.screens.balance import Balance  # noqa: PLC0415
+
     board = _board(app, "balance")
     if isinstance(board, Balance):
         board.read(app.document.path)
@@ -76,9 +79,15 @@ def _make(app: BudgetApp, place: Place) -> Board:
             app.tell()
 
     if place == "balance":
+        from budget.screens.balance import Balance  # noqa: PLC0415
+
         return Balance(app.colours, snapshot, Beside(app), told)
     if place == "profile":
+        from budget.screens.profile import ProfileBoard  # noqa: PLC0415
+
         return ProfileBoard(app.colours, snapshot)
+    from budget.screens.installed import Installed  # noqa: PLC0415
+
     return Installed(app.colours, snapshot, Beside(app), told)
 
 
@@ -125,6 +134,8 @@ def pick_device(app: BudgetApp) -> None:
     if path is None or path[0] == "source":
         app.say("a device belongs to a section or terminal", "note")
         return
+    from budget.screens import valves  # noqa: PLC0415
+
     valves.propose_device(app, str(path[1]))
 
 
@@ -132,6 +143,8 @@ def propose(app: BudgetApp) -> None:
     """Offer sizes for the control item of the row in hand."""
     id_ = _in_hand(app)
     if id_:
+        from budget.screens import valves  # noqa: PLC0415
+
         valves.propose(app, id_)
 
 
@@ -175,11 +188,12 @@ def solve(app: BudgetApp) -> None:
 
 def stop(app: BudgetApp) -> bool:
     """Stop what is being solved; False where nothing is."""
-    board = app.boards.get(app.at)
-    return isinstance(board, Installed) and board.stop()
+    return app.at == "installed" and _installed(app).stop()
 
 
 def _installed(app: BudgetApp) -> Installed:
+    from budget.screens.installed import Installed  # noqa: PLC0415
+
     board = app.boards["installed"]
     if not isinstance(board, Installed):
         raise TypeError("this board has no flows")

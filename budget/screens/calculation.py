@@ -4,19 +4,24 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator
+from typing import TYPE_CHECKING
 
 from budget.document import Snapshot
 from budget.report.caution import CAUTION
-from budget.report.explain import Step, explain
 from budget.report.plain import plain
 from budget.screens.page import Line
 from budget.screens.rows import Row
+
+if TYPE_CHECKING:
+    from budget.report.explain import Step
 
 _OPERATOR = re.compile(r" (?=[-+/x^=] )")
 
 
 def steps_of(snapshot: Snapshot, row: Row) -> list[Line]:
     """Return the calculation of a row, of an item that of the row it stands on; the caution stands at the end."""
+    from budget.report.explain import explain  # noqa: PLC0415 - long, and first shown when it is asked for
+
     try:
         steps = explain(snapshot.description, snapshot.budget, row.id)
     except KeyError:

@@ -14,7 +14,7 @@ EXAMPLE = Path(__file__).parents[2] / "examples" / "three-floor-heating.toml"
 
 def _seconds(*arguments: str) -> float:
     start = time.perf_counter()
-    subprocess.run([sys.executable, *arguments], check=False, stdout=subprocess.DEVNULL)
+    subprocess.run([sys.executable, *arguments], check=True, stdout=subprocess.DEVNULL)
     return time.perf_counter() - start
 
 

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from budget.catalogue import Kind, KindCoefficient, fitting_names, kind, kind_coefficient, kind_names
+from budget.catalogue import Kind, KindCoefficient, fitting_names, kind, kind_coefficient, kind_names, kinds_by_name
 from budget.catalogue.kinds import CARRIERS, SHAPES
 from budget.catalogue.listing import aligned, rows
 from budget.physics.elbows import reynolds_factor
@@ -220,3 +220,14 @@ def test_the_overview_lists_fittings_by_name_and_by_kind() -> None:
     assert "damper opposed blades" in dampers
     assert "elbow" not in dampers
     assert "must be stated" in aligned(rows("fittings", "orifice plate"))
+
+
+def test_the_kinds_that_can_be_named_without_parameters_are_listed() -> None:
+    bare = [name for name in kind_names() if all(parameter.default is not None for parameter in _kind(name).parameters)]
+    assert list(kinds_by_name()) == bare
+
+
+def _kind(name: str) -> Kind:
+    found = kind(name)
+    assert found is not None
+    return found
