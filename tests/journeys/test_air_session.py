@@ -67,7 +67,7 @@ def listed(session: Session) -> list[str]:
 def save(session: Session) -> None:
     """Save, and wait until it is told."""
     session.press("ctrl+s")
-    session.wait_for(" saved /")
+    session.wait_for("  saved")
 
 
 def shown_drop(session: Session, id_: str, drop: str) -> bool:

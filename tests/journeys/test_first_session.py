@@ -80,7 +80,7 @@ def test_a_first_session(tmp_path: Path) -> None:
         assert " saved" in session.lines[0]
         assert "not saved" not in session.lines[0]
         session.press("U", "ctrl+s")
-        session.wait_for("saved /")
+        session.wait_for("  saved")
         shown = session.lines[1].split()
         session.send("ctrl+q")
         assert session.wait_for_end() == 0
