@@ -20,8 +20,9 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--case", metavar="NAME", help="a [case.NAME] of the file")
     parser.add_argument(
         "--devices",
-        choices=("open", "set"),
-        help="fully open, or set as proposed; without it, as the file states and else as proposed",
+        choices=("open", "set", "rounded"),
+        help="fully open, set as proposed, or so and rounded to their scales; without it, as the file states, "
+        "else as proposed",
     )
     parser.add_argument("--json", action="store_true", help="print the flows in SI base units")
 

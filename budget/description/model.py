@@ -201,6 +201,22 @@ class Section:
 
 
 @dataclass(frozen=True, slots=True)
+class Link:
+    """What joins the downstream ends of two discharge sections, or the upstream ends of two return sections."""
+
+    id: str
+    path: Path
+    title: str = ""
+    note: str = ""
+    location: str = ""
+    from_: str | None = None
+    to: str | None = None
+    run: Run = field(default_factory=Run)
+    items: tuple[Item, ...] = ()
+    accept: Mapping[str, str] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, slots=True)
 class Terminal:
     """What the run is there for: an emitter, coil, outlet or grille, with its run-out if it has one."""
 
@@ -312,6 +328,7 @@ class Description:
     sources: Mapping[str, Source] = field(default_factory=dict)
     sections: Mapping[str, Section] = field(default_factory=dict)
     terminals: Mapping[str, Terminal] = field(default_factory=dict)
+    links: Mapping[str, Link] = field(default_factory=dict)
     cases: Mapping[str, Case] = field(default_factory=dict)
     order: tuple[str, ...] = ()
     findings: tuple[Finding, ...] = ()

@@ -8,7 +8,7 @@ from typing import Any
 from budget.description.codes import CODES
 from budget.description.finding import Path, warning
 from budget.description.fittings import check_leakage, check_takeoff, read_fittings
-from budget.description.model import Geometry, Item, Line, Run, Section, Source, Terminal
+from budget.description.model import Geometry, Item, Line, Link, Run, Section, Source, Terminal
 from budget.description.schema import RUN
 from budget.description.scope import Scope
 from budget.description.sizes import read_duct_size, read_pipe_size
@@ -76,6 +76,43 @@ def read_section(reading: Reading, id_: str, values: dict[str, Any], path: Path,
         rise=values.get("rise", 0.0),
         takeoff=values.get("takeoff", scope.defaults.get("takeoff")),
         takeoff_stated="takeoff" in values,
+        accept=_accept(scope, values, path),
+        **{key: values[key] for key in _TEXTS if key in values},
+    )
+
+
+_NOT_ON_LINKS = {
+    "takeoff": "a junction in a ring is not counted; remove it, and state k as an item",
+    "transition": "no section is nearer the source than the other; remove it, and state k as an item",
+    "diversity": "its flow comes from solving the network; remove it",
+    "rise": "its height is that of the sections that it joins; remove it",
+    "balance": "what it takes up would move the flows of the ring; remove it, and state its Kv as an item",
+    "setting": "a link has no device; remove it, and state its Kv as an item",
+}
+"""Keys of a section that a link can't have, and what to do instead."""
+
+
+def read_link(reading: Reading, id_: str, values: dict[str, Any], path: Path, scope: Scope) -> Link:
+    """Read a link; that what it joins is there and fits is found where the run is connected."""
+    for key in ("from", "to"):
+        if key not in values and not reading.faulty((*path, key)):
+            reading.wrong("missing", f"{key} is not stated; name the section that the link joins", path)
+    for key, remedy in _NOT_ON_LINKS.items():
+        if key in values:
+            reading.wrong("contradiction", f"{key} on a link: {remedy}", (*path, key))
+            values.pop(key)
+    items = _items(scope, values, path)
+    for item in items:
+        if item.control:
+            text = "a control item stands on a section or terminal; remove control"
+            reading.wrong("contradiction", text, (*item.path, "control"))
+    return Link(
+        id=id_,
+        path=path,
+        from_=values.get("from"),
+        to=values.get("to"),
+        run=_run(scope, values, path),
+        items=items,
         accept=_accept(scope, values, path),
         **{key: values[key] for key in _TEXTS if key in values},
     )

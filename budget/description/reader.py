@@ -10,7 +10,7 @@ from budget.description.finding import Finding, Path, warning
 from budget.description.libraries import Library, Tables, add_libraries
 from budget.description.lines import read_lines
 from budget.description.model import Description, Design, Fluid, Limits
-from budget.description.parts import read_section, read_source, read_terminal
+from budget.description.parts import read_link, read_section, read_source, read_terminal
 from budget.description.schema import CLASSES, KEYED, SINGLE, TOP
 from budget.description.scope import Scope
 from budget.description.source import Source
@@ -58,13 +58,14 @@ def describe(source: Source, libraries: Sequence[Library] = ()) -> Description:
         sources=keyed(reading, data, "source", read_source, scope),
         sections=keyed(reading, data, "section", read_section, scope),
         terminals=keyed(reading, data, "terminal", read_terminal, scope),
+        links=keyed(reading, data, "link", read_link, scope),
         cases=keyed(reading, data, "case", read_case),
         order=_order(source, data),
     )
     _check_ids(reading, source, data)
     _check_sensors(reading, description)
     _check_cases(reading, description)
-    _read_later(reading, data, description)
+    _read_later(reading, data)
     if not data.get("source"):
         reading.wrong("missing", "the run has no source; add [source.P1], the pump or fan", ("source",))
     return _with_findings(description, tuple(reading.findings))
@@ -180,20 +181,10 @@ def _check_sensors(reading: Reading, description: Description) -> None:
             reading.wrong("dangling", text, (*source.path, "sensor"))
 
 
-def _read_later(reading: Reading, data: Mapping[str, Any], description: Description) -> None:
-    """Say of every table that is read but not computed yet that it is not."""
-
-    sizing = single(reading, data, "sizing")
-    if sizing or "sizing" in data:
+def _read_later(reading: Reading, data: Mapping[str, Any]) -> None:
+    """Say of the table that is read but not computed yet that it is not."""
+    if single(reading, data, "sizing") or "sizing" in data:
         reading.later("sizing", ("sizing",))
-    for id_, link in keyed(reading, data, "link", lambda _r, _i, values, _p: values).items():
-        for key in ("from", "to"):
-            if key not in link:
-                reading.wrong("missing", f"{key} is not stated; name the section that the link joins", ("link", id_))
-            elif link[key] not in description.sections:
-                hint = nearest(link[key], description.sections)
-                reading.wrong("dangling", f"{link[key]!r} is not a section; {hint}", ("link", id_, key))
-        reading.later("a link", ("link", id_))
 
 
 def _check_cases(reading: Reading, description: Description) -> None:

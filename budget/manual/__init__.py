@@ -18,6 +18,7 @@ TOPICS = (
     "friction",
     "devices",
     "balancing",
+    "flows",
     "keys",
     "config",
     "accuracy-and-caution",

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from budget.description import Description, Device, Finding, Item
 from budget.network.media import Media
-from budget.network.topology import Topology
+from budget.network.topology import Leg, Topology
 from budget.physics.arrays import Array, Flags, Indices
 
 Floats = Array
@@ -188,6 +188,27 @@ class Zone:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
+class Links:
+    """What closes rings: legs beside those of the trees, with items of their own."""
+
+    of: dict[str, tuple[int, ...]]
+    """By the ID of a link the numbers of its legs."""
+    found: tuple[Leg, ...]
+    legs: Legs
+    first: Ints
+    """Leg of the trees at whose far end each begins."""
+    second: Ints
+    items: Items
+    """Carrier and reference are numbers of these legs."""
+    ringed: Bools
+    """Legs of the trees that are in a ring."""
+
+    def __len__(self) -> int:
+        """Return the number of their legs."""
+        return len(self.first)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
 class Layout:
     """Everything that computing needs, as arrays."""
 
@@ -199,6 +220,7 @@ class Layout:
     area_changes: AreaChanges
     terminals: Terminals
     items: Items
+    links: Links
     devices: tuple[DeviceUse, ...]
     zones: tuple[Zone, ...]
     order: Ints

@@ -11,9 +11,10 @@ from budget.network.authority import authorities
 from budget.network.computed import Computed, compute
 from budget.network.duty import fluid_result, source_result
 from budget.network.layout import lay_out
+from budget.network.link_records import link_result
 from budget.network.media import design_media
 from budget.network.records import Records
-from budget.network.results import FluidResult, SectionResult, SourceResult, TerminalResult
+from budget.network.results import FluidResult, LinkResult, SectionResult, SourceResult, TerminalResult
 from budget.network.review import accept, review
 
 T = TypeVar("T")
@@ -58,6 +59,11 @@ class Budget:
         topology = self.run.layout.topology
         known = (id_ for id_ in self.run.layout.description.sections if id_ in topology.section_legs)
         return _Lazy(known, self._records.section)
+
+    @cached_property
+    def links(self) -> Mapping[str, LinkResult]:
+        """Each link that could be joined, by ID, in file order."""
+        return _Lazy(self.run.layout.links.of, lambda id_: link_result(self.run, id_))
 
     @cached_property
     def terminals(self) -> Mapping[str, TerminalResult]:

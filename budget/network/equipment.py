@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
+from collections.abc import Sequence
 
 import numpy as np
 
@@ -12,6 +13,7 @@ from budget.description import (
     Device,
     Finding,
     Item,
+    Link,
     Path,
     Quantity,
     Section,
@@ -22,7 +24,7 @@ from budget.description import (
 from budget.network import results
 from budget.network.arrays import DeviceUse, Floats, Ints, Items, Terminals
 from budget.network.media import Media, pascals, volume
-from budget.network.topology import Topology
+from budget.network.topology import Leg, Topology
 
 K, KV, DROP, LENGTH = range(4)
 """Forms in which the drop of an item is stated."""
@@ -69,6 +71,20 @@ class EquipmentRows:
         for number, source in enumerate(self.description.sources.values()):
             for item in self._items_of(source):
                 self._add(item, self._first_source + number, self.media[number].supply.density, -1, math.nan)
+        return self._collected()
+
+    def link_items(self, legs: Sequence[Leg]) -> Items:
+        """Return the items of the links, each on the first leg of its link; carriers are numbers of these legs."""
+        self._numbers, self._items = defaultdict(list), []
+        for number, leg in enumerate(legs):
+            if leg.first:
+                media = self.media[leg.source]
+                density = (media.supply if leg.outward else media.back).density
+                for item in self._items_of(self.description.links[leg.owner]):
+                    self._add(item, number, density, number, math.nan)
+        return self._collected()
+
+    def _collected(self) -> Items:
         rows = self._numbers
 
         def whole(key: str) -> Ints:
@@ -145,7 +161,7 @@ class EquipmentRows:
             zone=-1,
         )
 
-    def _items_of(self, owner: Section | Terminal | Source) -> tuple[Item, ...]:
+    def _items_of(self, owner: Section | Terminal | Source | Link) -> tuple[Item, ...]:
         """Return what stands in line on an owner; where its list could not be read, one item of unknown drop."""
         place: Path = (*owner.path, "item")
         if "item" in self.broken.get(owner.path, set()) and any(

@@ -10,12 +10,28 @@ from budget.network.arrays import Bools, Floats, Ints, Items, Layout, Legs
 from budget.network.equipment import DROP, KV, K
 from budget.network.equipment import LENGTH as EQUIVALENT
 from budget.network.media import GRAVITY
+from budget.network.rings import circulate
 from budget.physics.arrays import SmallIndices
 from budget.physics.elbows import reynolds_factor
 from budget.physics.fittings import valve_drop
 from budget.physics.friction import friction_factor, pressure_gradient, regime, reynolds
 from budget.physics.junctions import junction_coefficients
 from budget.physics.power import velocity_pressure
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Flowing:
+    """What flows in legs and what it costs along the way. Speeds have no sign; drops have that of the flow."""
+
+    mass: Floats
+    velocity: Floats
+    velocity_pressure: Floats
+    reynolds: Floats
+    regime: SmallIndices
+    factor: Floats
+    gradient: Floats
+    friction: Floats
+    fittings: Floats
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -56,22 +72,26 @@ class Hydraulics:
     terminal_base: Floats
     terminal_total: Floats
     source_items: Floats
+    links: Flowing
+    """Legs of links."""
+    link_items: Floats
+    """Drop of each item on a link."""
+    settled: bool
+    """Whether the flows of the rings were found."""
 
 
 def flow_and_drops(layout: Layout) -> Hydraulics:
     """Compute design flows and every drop of a run that was laid out."""
     legs, terminals, items = layout.legs, layout.terminals, layout.items
     mass, leg_mass, source_mass, too_diverse = _flows(layout)
-    velocity = leg_mass / (legs.density * legs.area)
-    re = reynolds(legs.density, velocity, legs.diameter, legs.viscosity)
-    factor = friction_factor(re, legs.roughness / legs.diameter, legs.laminar)
-    gradient = legs.stretch * pressure_gradient(factor, legs.density, velocity, legs.diameter)
-    pv = velocity_pressure(legs.density, velocity)
-    friction = gradient * legs.length
-    fittings = _coefficients(legs, re) * pv
+    leg_mass, link_mass, settled = circulate(layout, leg_mass)
+    flowing = flow_in(legs, leg_mass)
+    pv, gradient, friction, fittings = flowing.velocity_pressure, flowing.gradient, flowing.friction, flowing.fittings
+    links = flow_in(layout.links.legs, link_mass)
+    link_items = _item_drops(layout.links.items, link_mass, links.velocity_pressure, links.gradient)
     junction, junction_k = _junction_drops(layout, leg_mass)
     change = layout.area_changes
-    transition = change.k * velocity_pressure(legs.density, leg_mass / (legs.density * change.area))
+    transition = _signs(leg_mass) * change.k * velocity_pressure(legs.density, leg_mass / (legs.density * change.area))
     static = legs.density * GRAVITY * legs.rise
 
     carried = np.concatenate([leg_mass, mass, source_mass])
@@ -92,11 +112,11 @@ def flow_and_drops(layout: Layout) -> Hydraulics:
         leg_mass=leg_mass,
         source_mass=source_mass,
         too_diverse=too_diverse,
-        velocity=velocity,
+        velocity=flowing.velocity,
         velocity_pressure=pv,
-        reynolds=re,
-        regime=regime(re),
-        factor=factor,
+        reynolds=flowing.reynolds,
+        regime=flowing.regime,
+        factor=flowing.factor,
         gradient=gradient,
         friction=friction,
         fittings=fittings,
@@ -116,7 +136,35 @@ def flow_and_drops(layout: Layout) -> Hydraulics:
         terminal_base=terminal_base,
         terminal_total=terminal_drop + terminal_items + terminal_static + terminal_base,
         source_items=owners[leg_count + terminal_count :],
+        links=links,
+        link_items=link_items,
+        settled=settled,
     )
+
+
+def flow_in(legs: Legs, mass: Floats) -> Flowing:
+    """Compute what a mass flow costs along legs; a negative one flows the other way and loses as much."""
+    velocity = np.abs(mass) / (legs.density * legs.area)
+    re = reynolds(legs.density, velocity, legs.diameter, legs.viscosity)
+    factor = friction_factor(re, legs.roughness / legs.diameter, legs.laminar)
+    gradient = legs.stretch * pressure_gradient(factor, legs.density, velocity, legs.diameter)
+    pv = velocity_pressure(legs.density, velocity)
+    sign = _signs(mass)
+    return Flowing(
+        mass=mass,
+        velocity=velocity,
+        velocity_pressure=pv,
+        reynolds=re,
+        regime=regime(re),
+        factor=factor,
+        gradient=gradient,
+        friction=sign * gradient * legs.length,
+        fittings=sign * _coefficients(legs, re) * pv,
+    )
+
+
+def _signs(flow: Floats) -> Floats:
+    return np.where(flow < 0.0, -1.0, 1.0)
 
 
 def _coefficients(legs: Legs, re: Floats) -> Floats:
@@ -240,7 +288,7 @@ def _levels(parent: Ints) -> list[Ints]:
 
 def _item_drops(items: Items, carried: Floats, pv: Floats, gradient: Floats) -> Floats:
     mass = carried[items.carrier]
-    flow = mass / items.density
+    flow = np.abs(mass) / items.density
     each = flow / items.parallel
     drop = np.full(len(items), np.nan)
     at_neck = ~np.isnan(items.neck)
@@ -265,7 +313,7 @@ def _item_drops(items: Items, carried: Floats, pv: Floats, gradient: Floats) -> 
     if these.any():
         along = np.where(has_leg, gradient[reference], np.nan) if len(gradient) else np.full(len(items), np.nan)
         drop[these] = (items.value * along / items.parallel**2)[these]
-    return drop
+    return np.asarray(_signs(mass) * drop, dtype=np.float64)
 
 
 def _device_drops(layout: Layout, carried: Floats, pv: Floats) -> tuple[Floats, Floats]:
@@ -276,7 +324,7 @@ def _device_drops(layout: Layout, carried: Floats, pv: Floats) -> tuple[Floats, 
         np.array([getattr(use, name) for use in uses], dtype=np.float64)
         for name in ("density", "open_kv", "open_k", "neck", "least_drop")
     )
-    flow = mass / density
+    flow = np.abs(mass) / density
     reference = np.array([use.reference for use in uses], dtype=np.int64)
     leg_pv = np.array([pv[number] if number >= 0 else np.nan for number in reference.tolist()])
     damper = open_k * np.where(np.isnan(neck), leg_pv, velocity_pressure(density, flow / neck))

@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import math
 from collections import defaultdict
+from collections.abc import Sequence
 
 import numpy as np
 
@@ -14,17 +15,21 @@ from budget.description import (
     Finding,
     Geometry,
     Level,
+    Link,
     Path,
     Quantity,
     Run,
+    Section,
+    Terminal,
     error,
 )
-from budget.network.arrays import Bools, DeviceUse, Floats, Ints, Layout, Legs, Loss, Terminals, Zone
+from budget.network.arrays import Bools, DeviceUse, Floats, Ints, Layout, Legs, Links, Loss, Terminals, Zone
 from budget.network.equipment import EquipmentRows
 from budget.network.junctions import find_area_changes, find_junctions
+from budget.network.links import Joined, check_rings, find_ringed, join_links, uncounted
 from budget.network.losses import losses_of
 from budget.network.media import Media, media_of, medium_at, pascals, volume
-from budget.network.topology import AT_SOURCE, Topology, connect
+from budget.network.topology import AT_SOURCE, Leg, Topology, connect
 from budget.network.zones import find_zones
 from budget.physics import shapes
 
@@ -38,21 +43,34 @@ def lay_out(description: Description) -> Layout:
     media, findings = media_of(description)
     findings = [*topology.findings, *findings]
     broken = _broken(description)
-    legs, zones, terminal_zone = _legs(description, topology, media, broken, findings)
+    zones, zone, terminal_zone = find_zones(description, topology, findings)
+    legs = _legs(description, topology, topology.legs, zone, media, broken, findings)
+    joined = join_links(description, topology, zones, zone, findings)
+    ringed = find_ringed(topology, joined)
     terminals = _terminals(description, topology, media, broken, terminal_zone, findings)
     rows = EquipmentRows(description, topology, media, terminals, broken, findings)
     items = rows.items()
     devices, zones = _with_devices(rows.devices(), zones)
+    links = _links(description, topology, joined, ringed, legs, media, broken, rows, findings)
+    check_rings(description, topology, items, ringed, links.items, findings)
     order, start, end = _serving(legs, terminals)
     return Layout(
         description,
         topology,
         tuple(media),
         legs,
-        find_junctions(description, topology, legs, end > start, broken, findings),
+        uncounted(
+            description,
+            topology,
+            find_junctions(description, topology, legs, end > start, broken, findings),
+            joined,
+            ringed,
+            findings,
+        ),
         find_area_changes(description, topology, legs, broken, findings),
         terminals,
         items,
+        links,
         devices,
         zones,
         order,
@@ -75,10 +93,39 @@ _GEOMETRY_KEYS = {"pipe", "duct", "size", "bore"}
 _LOSS_KEYS = {"fittings", "fitting", "fitting_method"}
 
 
+def _links(
+    description: Description,
+    topology: Topology,
+    joined: Joined,
+    ringed: Bools,
+    legs: Legs,
+    media: list[Media],
+    broken: Broken,
+    rows: EquipmentRows,
+    findings: list[Finding],
+) -> Links:
+    first = np.array(joined.first, dtype=np.int64)
+    return Links(
+        of=joined.of,
+        found=tuple(joined.legs),
+        legs=_legs(description, topology, joined.legs, legs.zone[first], media, broken, findings),
+        first=first,
+        second=np.array(joined.second, dtype=np.int64),
+        items=rows.link_items(joined.legs),
+        ringed=ringed,
+    )
+
+
 def _legs(
-    description: Description, topology: Topology, media: list[Media], broken: Broken, findings: list[Finding]
-) -> tuple[Legs, tuple[Zone, ...], dict[str, int]]:
-    count = len(topology.legs)
+    description: Description,
+    topology: Topology,
+    found: Sequence[Leg],
+    zone: Ints,
+    media: list[Media],
+    broken: Broken,
+    findings: list[Finding],
+) -> Legs:
+    count = len(found)
     columns: dict[str, Floats] = {
         name: np.full(count, np.nan) for name in ("density", "viscosity", "length", "roughness", "diversity")
     }
@@ -88,19 +135,15 @@ def _legs(
     geometries: list[Geometry | None] = []
     losses: list[tuple[Loss, ...]] = []
     known_losses: dict[tuple[Path, bool], tuple[Loss, ...]] = {}
-    for number, leg in enumerate(topology.legs):
-        if leg.run_out:
-            owner = description.terminals[leg.owner]
-            run = owner.run or Run()
-        else:
-            section = description.sections[leg.owner]
-            run, owner = section.run, section  # type: ignore[assignment]
-            if leg.first and section.rise != 0.0:
-                if topology.kinds[leg.source] == "open":
-                    rise[number] = section.rise
-                else:
-                    text = "rise counts in an open liquid circuit only; remove it, or open the source"
-                    findings.append(error("rise", text, (*section.path, "rise")))
+    for number, leg in enumerate(found):
+        owner = _owner(description, topology, found, leg)
+        run = owner.run or Run()
+        if isinstance(owner, Section) and leg.first and owner.rise != 0.0:
+            if topology.kinds[leg.source] == "open":
+                rise[number] = owner.rise
+            else:
+                text = "rise counts in an open liquid circuit only; remove it, or open the source"
+                findings.append(error("rise", text, (*owner.path, "rise")))
         bad = broken.get(owner.path, set())
         if not leg.run_out and leg.first and "rise" in bad:
             rise[number] = math.nan
@@ -125,14 +168,13 @@ def _legs(
             constant[number] = math.nan
     area, diameter, laminar = _cross_sections(geometries)
     stretch = np.where(compression > 0.0, shapes.flexible_factor(compression, diameter), 1.0)
-    zones, zone, terminal_zone = find_zones(description, topology, findings)
-    legs = Legs(
-        parent=np.array([leg.parent for leg in topology.legs], dtype=np.int64),
-        source=np.array([leg.source for leg in topology.legs], dtype=np.int64),
+    return Legs(
+        parent=np.array([leg.parent for leg in found], dtype=np.int64),
+        source=np.array([leg.source for leg in found], dtype=np.int64),
         zone=zone,
-        first=np.array([leg.first for leg in topology.legs], dtype=np.bool_),
-        outward=np.array([leg.outward for leg in topology.legs], dtype=np.bool_),
-        run_out=np.array([leg.run_out for leg in topology.legs], dtype=np.bool_),
+        first=np.array([leg.first for leg in found], dtype=np.bool_),
+        outward=np.array([leg.outward for leg in found], dtype=np.bool_),
+        run_out=np.array([leg.run_out for leg in found], dtype=np.bool_),
         area=area,
         diameter=diameter,
         laminar=laminar,
@@ -144,7 +186,12 @@ def _legs(
         losses=tuple(losses),
         **columns,
     )
-    return legs, zones, terminal_zone
+
+
+def _owner(description: Description, topology: Topology, found: Sequence[Leg], leg: Leg) -> Section | Terminal | Link:
+    if found is not topology.legs:
+        return description.links[leg.owner]
+    return description.terminals[leg.owner] if leg.run_out else description.sections[leg.owner]
 
 
 def _cross_sections(geometries: list[Geometry | None]) -> tuple[Floats, Floats, Floats]:

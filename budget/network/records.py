@@ -11,9 +11,9 @@ from budget.network.arrays import DeviceUse, Floats
 from budget.network.circuits import path_sums
 from budget.network.computed import Computed
 from budget.network.leakage import leakages
+from budget.network.link_records import losses_at
 from budget.network.results import DeviceResult, LegResult, LossResult, RunResult, SectionResult, TerminalResult
 from budget.network.takeup import adjust
-from budget.physics.elbows import reynolds_factor
 from budget.physics.friction import REGIMES
 from budget.physics.junctions import FAMILIES
 
@@ -152,25 +152,8 @@ class Records:
     def _losses(self, leg: int) -> tuple[LossResult, ...]:
         drops = self._run.drops
         re, pv = float(drops.reynolds[leg]), float(drops.velocity_pressure[leg])
-        found = []
-        for loss in self._run.layout.legs.losses[leg]:
-            k = loss.constant + (loss.per_reynolds / re if re > 0 and loss.per_reynolds else 0.0)
-            if loss.corrected:
-                k += loss.corrected * float(reynolds_factor(re))
-            found.append(
-                LossResult(
-                    loss.name,
-                    loss.count,
-                    k,
-                    loss.count * k * pv,
-                    loss.method,
-                    loss.source,
-                    loss.known_from,
-                    loss.reference,
-                    float(drops.velocity[leg]),
-                )
-            )
-        return tuple(found)
+        sign = -1.0 if drops.leg_mass[leg] < 0.0 else 1.0
+        return losses_at(self._run.layout.legs.losses[leg], re, sign * pv, float(drops.velocity[leg]))
 
     def _joints(self, leg: int) -> tuple[LossResult, ...]:
         """Return the leg's part of the junction that it hangs on, and the change of area there."""
@@ -194,7 +177,7 @@ class Records:
             )
         k, area = float(layout.area_changes.k[leg]), float(layout.area_changes.area[leg])
         if k:
-            velocity = float(drops.leg_mass[leg]) / (float(legs.density[leg]) * area)
+            velocity = abs(float(drops.leg_mass[leg])) / (float(legs.density[leg]) * area)
             drop = float(drops.transition[leg])
             source, known_from = CHANGE_SOURCE
             found.append(

@@ -126,6 +126,16 @@ class SectionResult:
 
 
 @dataclass(frozen=True, slots=True)
+class LinkResult:
+    """What closes a ring; a negative flow runs from its `to` to its `from`."""
+
+    id: str
+    source: str
+    run: RunResult
+    items: tuple[ItemResult, ...]
+
+
+@dataclass(frozen=True, slots=True)
 class TerminalResult:
     """One terminal, with its run-out."""
 

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from budget.description import Description, Finding, Path, Run, Section, Terminal, error, note, warning
+from budget.description import Description, Finding, Link, Path, Run, Section, Terminal, error, note, warning
 from budget.network.arrays import Bools, Floats
 from budget.network.computed import Computed
 from budget.network.duty import source_result
@@ -31,6 +31,7 @@ def review(run: Computed, authority: Authorities) -> Iterator[Finding]:
     yield from _sources(run)
     yield from _zones(run)
     yield from _legs(run)
+    yield from _links(run)
     yield from _junctions(run)
     yield from _area_changes(run)
     yield from _flexible(run)
@@ -118,7 +119,7 @@ def _legs(run: Computed) -> Iterator[Finding]:
     """Find legs beyond their limits, one finding a section and code, at its worst leg."""
     drops, legs = run.drops, run.layout.legs
     most, steepest, least = _limits(run)
-    flowing = drops.leg_mass > 0.0
+    flowing = drops.leg_mass != 0.0
     with np.errstate(invalid="ignore"):
         checks = (
             ("velocity", drops.velocity > most, drops.velocity, most, "velocity", "above"),
@@ -151,7 +152,24 @@ def _legs(run: Computed) -> Iterator[Finding]:
             )
 
 
-def _size_path(owner: Section | Terminal) -> Path:
+def _links(run: Computed) -> Iterator[Finding]:
+    """Find rings without a solution, and links beyond their limits."""
+    layout, flowing = run.layout, run.drops.links
+    if not run.drops.settled:
+        text = "the flows of the rings did not settle, and the figures are not to be relied on"
+        yield error("not-settled", text, ("link", next(iter(layout.links.of))))
+    for id_, numbers in layout.links.of.items():
+        link = layout.description.links[id_]
+        for code, values, limit in zip(
+            ("velocity", "gradient"), (flowing.velocity, flowing.gradient), _limits_of(run, link.run, ""), strict=False
+        ):
+            worst = float(values[list(numbers)].max())
+            if worst > limit:
+                text = f"{code} {{0}} is above its limit, {{1}}"
+                yield warning(code, text, _size_path(link), (worst, code), (limit, code))
+
+
+def _size_path(owner: Section | Terminal | Link) -> Path:
     geometry = owner.run.geometry if owner.run else None
     stated = "bore" if geometry is not None and geometry.label.endswith("mm bore") else "size"
     return (*owner.path, stated)
@@ -179,21 +197,25 @@ def _limits(run: Computed) -> tuple[Floats, Floats, Floats]:
 
     A section's own limit comes first, then its class's, then that of its bore, then the general one.
     """
-    limits = run.layout.description.limits
     count = len(run.layout.legs)
     most, steepest, least = (np.full(count, bound) for bound in (np.inf, np.inf, 0.0))
     known: dict[str, tuple[float, float, float]] = {}
     for leg, found in enumerate(run.layout.topology.legs):
         if found.owner not in known:
             _, owner = _owner(run, leg)
-            by_class = limits.classes.get(owner.class_ or ("run-out" if found.run_out else ""), {})
-            known[found.owner] = (
-                _first(owner.limit_velocity, by_class.get("velocity"), _by_bore(run, owner), limits.velocity, math.inf),
-                _first(owner.limit_gradient, by_class.get("gradient"), limits.gradient, math.inf),
-                _first(by_class.get("least_velocity"), limits.least_velocity, 0.0),
-            )
+            known[found.owner] = _limits_of(run, owner, "run-out" if found.run_out else "")
         most[leg], steepest[leg], least[leg] = known[found.owner]
     return most, steepest, least
+
+
+def _limits_of(run: Computed, owner: Run, usual: str) -> tuple[float, float, float]:
+    limits = run.layout.description.limits
+    by_class = limits.classes.get(owner.class_ or usual, {})
+    return (
+        _first(owner.limit_velocity, by_class.get("velocity"), _by_bore(run, owner), limits.velocity, math.inf),
+        _first(owner.limit_gradient, by_class.get("gradient"), limits.gradient, math.inf),
+        _first(by_class.get("least_velocity"), limits.least_velocity, 0.0),
+    )
 
 
 def _first(*values: float | None) -> float:
@@ -350,7 +372,7 @@ def accept(findings: tuple[Finding, ...], description: Description) -> tuple[Fin
     """Turn warnings that a section or terminal accepts into notes with the reason; note what was accepted in vain."""
     accepted = {
         (owner.path, code): reason
-        for owners in (description.sections, description.terminals)
+        for owners in (description.sections, description.terminals, description.links)
         for owner in owners.values()
         for code, reason in owner.accept.items()
     }

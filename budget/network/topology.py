@@ -329,9 +329,11 @@ def _find_idle(description: Description, topology: Topology, rooted: dict[str, i
     """Find sections and sources that serve no terminal, and return legs that carry nothing.
 
     A terminal that could not be connected has a finding of its own: what it names is not idle.
+    Nor is what a link joins.
     """
     lost = [terminal for id_, terminal in description.terminals.items() if id_ not in topology.terminal_source]
     named = {target for terminal in lost for target in (terminal.from_, terminal.to) if target is not None}
+    named |= {target for link in description.links.values() for target in (link.from_, link.to) if target is not None}
     ends = [*topology.outward.values(), *topology.back.values()]
     ends += [topology.section_legs[id_][0] for id_ in named if id_ in topology.section_legs]
     used: set[int] = set()

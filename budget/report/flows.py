@@ -37,6 +37,10 @@ def flows_values(flows: Flows | None, findings: Iterable[Located]) -> dict[str, 
         name: {id_: {key: _known(getattr(one, key)) for key in _KEYS[name]} for id_, one in records.items()}
         for name, records in kinds.items()
     }
+    if flows.links:
+        found["links"] = {
+            id_: {key: _known(getattr(one, key)) for key in _KEYS["sections"]} for id_, one in flows.links.items()
+        }
     return found | {"findings": shown}
 
 
@@ -45,11 +49,14 @@ def _known(value: float | None) -> float | None:
 
 
 def flows_text(description: Description, budget: Budget, flows: Flows) -> str:
-    """Return the flows as three tables, in the units of the design."""
+    """Return the flows as tables, in the units of the design."""
     figures = Figures(description)
     parts = [
         _sources(budget, flows, figures),
         ["Sections", *table(_section_columns(figures), [_section(one, figures) for one in flows.sections.values()])],
+        ["Links", *table(_section_columns(figures), [_section(one, figures) for one in flows.links.values()])]
+        if flows.links
+        else [],
         [
             "Terminals",
             *table(_terminal_columns(figures), [_terminal(one, figures) for one in flows.terminals.values()]),

@@ -44,6 +44,8 @@ def results(
         "terminals": {id_: _terminal(result) for id_, result in budget.terminals.items()},
         "findings": shown,
     }
+    if budget.links:
+        found["links"] = {id_: _run(result.run) for id_, result in budget.links.items()}
     cleaned: dict[str, Any] = _clean(found)
     return cleaned
 

@@ -11,6 +11,7 @@ from budget.network import HEADINGS, Budget, SourceResult
 from budget.report.caution import CAUTION
 from budget.report.figures import NONE, Figures, plain_number
 from budget.report.ledger import devices, fittings, items, joints, ledger, libraries, terminals
+from budget.report.links import links
 from budget.report.located import Located
 from budget.report.plain import plain
 from budget.report.table import Column, labelled, table, wrapped
@@ -24,6 +25,7 @@ def text_report(description: Description, budget: Budget, findings: Iterable[Loc
     parts += [_summary(description, result, figures, budget) for result in budget.sources.values()]
     parts += [
         _part("Ledger", ledger(description, budget, figures)),
+        _part("Links", links(description, budget, figures)),
         _part("Terminals", terminals(budget, figures)),
         _part("Items", items(budget, figures)),
         _part("Balancing devices", devices(budget, figures)),

@@ -99,3 +99,58 @@ def test_scipy_is_imported_when_it_is_asked_for(run_file: Path) -> None:
     )
     run = subprocess.run([sys.executable, "-c", code, str(run_file)], capture_output=True, text=True, check=True)
     assert run.stdout.splitlines()[-1] == "False True"
+
+
+RING = """format = 1
+[design]
+title = "Ring"
+[fluid]
+name = "water"
+temperature = "60 degC"
+[defaults]
+pipe = "steel"
+paired = true
+takeoff = "none"
+[pipe.steel]
+catalogue = "steel EN 10255 medium"
+[source.P1]
+[section.A]
+from = "P1"
+size = "DN40"
+length = "40 m"
+[section.B]
+from = "P1"
+size = "DN40"
+length = "25 m"
+[link.TIE]
+from = "B"
+to = "A"
+size = "DN40"
+length = "15 m"
+[terminal.T]
+from = "A"
+flow = "0.8 L/s"
+drop = "15 kPa"
+"""
+
+
+def test_links_are_edges_and_are_listed(call: Caller, tmp_path: Path) -> None:
+    file = tmp_path / "ring.toml"
+    file.write_text(RING)
+    status, out, _ = call("flows", file, "--json")
+    found = json.loads(out)
+    assert status == 0
+    assert found["links"]["TIE"]["flow"] == pytest.approx(0.4e-3, rel=1e-4)
+    assert found["links"]["TIE"]["return_flow"] == pytest.approx(0.4e-3, rel=1e-4)
+    assert found["sections"]["A"]["flow"] == pytest.approx(0.4e-3, rel=1e-4)
+    _, out, _ = call("flows", file)
+    part = out.partition("\nLinks\n")[2].partition("\n\n")[0]
+    assert part.splitlines()[-1].split() == ["TIE", "0.400", "0.400"]
+    _, out, _ = call("check", file, "--json")
+    assert json.loads(out)["links"]["TIE"]["flow"] == pytest.approx(0.4e-3, rel=1e-6)
+
+
+def test_rounded_settings_are_a_way_to_set_devices(call: Caller, run_file: Path) -> None:
+    _, out, _ = call("flows", run_file, "--json", "--devices", "rounded")
+    for terminal in json.loads(out)["terminals"].values():
+        assert terminal["share"] == pytest.approx(1.0, abs=0.1)

@@ -205,8 +205,6 @@ AIR = (
 )
 
 LATER = (
-    Fault("link", PIPE, '[link.L]\nfrom = "B1"\nto = "B2"\n' + PIPE,
-          "later", "link.L", "", "L]", "remove it"),
     Fault("sizing", PIPE, "[sizing]\n" + PIPE, "later", "sizing", "", "sizing]", "remove it"),
 )
 """What is read, but can't be computed yet."""

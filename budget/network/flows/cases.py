@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Literal
 
 import numpy as np
@@ -13,13 +14,15 @@ from budget.description import Case, Device, Finding, Item, Section, SourceCase,
 from budget.network.arrays import DeviceUse
 from budget.network.computed import Computed
 from budget.network.flows.sources import Running, running
+from budget.network.takeup import adjust
 from budget.physics.arrays import Array
 from budget.physics.fittings import valve_drop
 from budget.physics.power import velocity_pressure
 
-Devices = Literal["given", "open", "set"]
-"""Where balancing devices stand: as the file states, and where it does not, at the drop proposed; all fully open; or
-all at the drop proposed. What holds a flow or a differential does so however the others stand."""
+Devices = Literal["given", "open", "set", "rounded"]
+"""Where balancing devices stand: as the file states, and where it does not, at the drop proposed; all fully open; all
+at the drop proposed; or all at the setting proposed, rounded to what their scale shows. What holds a flow or a
+differential does so however the others stand."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -146,7 +149,12 @@ def _coefficient(run: Computed, number: int, devices: Devices) -> float:
     owner = _owner(run, use)
     if devices == "given" and owner.setting is not None:
         return _at_opening(run, use, opening_at(use.device, owner.setting), mass)
-    return (base + float(run.take_up.taken[number])) / mass**2
+    drop = base + float(run.take_up.taken[number])
+    if devices == "rounded":
+        setting = adjust(layout, drops, number, drop).setting
+        if setting is not None:
+            return _at_opening(run, use, opening_at(use.device, rounded(use.device, setting)), mass)
+    return drop / mass**2
 
 
 def _owner(run: Computed, use: DeviceUse) -> Section | Terminal:
@@ -164,6 +172,28 @@ def _at_opening(run: Computed, use: DeviceUse, value: float, mass: float) -> flo
         return value * float(velocity_pressure(use.density, 1.0 / (use.density * use.neck)))
     pv = float(run.drops.velocity_pressure[use.reference]) if use.reference >= 0 else math.nan
     return value * pv / mass**2
+
+
+def step_of(device: Device) -> float:
+    """Return the step of a device's scale: a fifth of the least difference of its table, or the 1, 2 or 5 below.
+
+    A tenth of a turn where the table goes by half turns, 5 deg where it goes by 30 deg (common practice). 0 for a table
+    of one setting.
+    """
+    settings = sorted(setting for setting, _ in device.kv or device.k)
+    least = min((later - earlier for earlier, later in pairwise(settings)), default=0.0) / 5.0
+    if not least > 0.0:
+        return 0.0
+    decade = 10.0 ** math.floor(math.log10(least * (1.0 + 1e-9)))
+    return decade * max(mantissa for mantissa in (1.0, 2.0, 5.0) if mantissa * decade <= least * (1.0 + 1e-9))
+
+
+def rounded(device: Device, setting: float) -> float:
+    """Return the setting of a device's scale that is nearest to one, within its table."""
+    step = step_of(device)
+    settings = [point for point, _ in device.kv or device.k]
+    nearest = round(setting / step) * step if step else setting
+    return min(max(nearest, min(settings)), max(settings))
 
 
 def opening_at(device: Device, setting: float) -> float:

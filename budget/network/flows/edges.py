@@ -1,4 +1,4 @@
-"""A run as nodes and edges: a leg, a terminal, a source and a differential-holding device is an edge each."""
+"""A run as nodes and edges: a leg, terminal, source, differential-holding device and link's leg is an edge each."""
 
 from __future__ import annotations
 
@@ -7,12 +7,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from budget.network.arrays import Layout
+from budget.network.hydraulics import Hydraulics
 from budget.physics.arrays import Array, Indices
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Edges:
-    """The edges of a run in the numbering of carriers (legs, terminals, sources), then its holders.
+    """The edges of a run in the numbering of carriers (legs, terminals, sources), then its holders, then its links.
 
     Flow is positive in the direction of design: outward from the source, through the terminal and back.
     """
@@ -24,6 +25,8 @@ class Edges:
     """Source that each edge belongs to."""
     holders: Indices
     """Device uses that hold a differential, one for each edge after the carriers."""
+    links: Indices
+    """Edges of the legs of links."""
     behind: Indices
     """Node behind each holder."""
     back: Indices
@@ -40,7 +43,7 @@ def find_edges(layout: Layout) -> Edges:
     one more; a fan without ducts on one side has the room there. What an open circuit discharges returns to the inlet,
     or by the suction pipework that the terminal names.
     """
-    legs, terminals = layout.legs, layout.terminals
+    legs, terminals, links = layout.legs, layout.terminals, layout.links
     count, sources = len(legs), len(layout.media)
     kinds = layout.topology.kinds
     holders = [number for number, use in enumerate(layout.devices) if use.zone >= 0]
@@ -73,10 +76,13 @@ def find_edges(layout: Layout) -> Edges:
     back = np.where(gas & terminals.discharge, room[terminals.source], back)
     return Edges(
         nodes=first + 3 * sources,
-        start=np.concatenate([start, out, inlet, before]).astype(np.int64),
-        end=np.concatenate([end, back, outlet, holding]).astype(np.int64),
-        source=np.concatenate([legs.source, terminals.source, np.arange(sources), legs.source[holding]]),
+        start=np.concatenate([start, out, inlet, before, links.first]).astype(np.int64),
+        end=np.concatenate([end, back, outlet, holding, links.second]).astype(np.int64),
+        source=np.concatenate(
+            [legs.source, terminals.source, np.arange(sources), legs.source[holding], links.legs.source]
+        ),
         holders=np.array(holders, dtype=np.int64),
+        links=count + len(terminals) + sources + len(holders) + np.arange(len(links)),
         behind=holding,
         back=backs,
         outlet=outlet,
@@ -88,6 +94,7 @@ def _at(values: Indices, places: Indices) -> Indices:
     return values[np.maximum(places, 0)] if len(values) else np.zeros(len(places), dtype=np.int64)
 
 
-def design_flows(edges: Edges, leg_mass: Array, terminal_mass: Array, source_mass: Array) -> Array:
+def design_flows(edges: Edges, drops: Hydraulics) -> Array:
     """Return the design flow of every edge, kg/s."""
-    return np.concatenate([leg_mass, terminal_mass, source_mass, leg_mass[edges.behind]])
+    mass = drops.leg_mass
+    return np.concatenate([mass, drops.terminal_mass, drops.source_mass, mass[edges.behind], drops.links.mass])

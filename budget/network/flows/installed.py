@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from budget.network.circuits import path_sums
 from budget.network.computed import Computed
 from budget.network.equipment import DROP, KV, LENGTH, K
 from budget.network.flows.cases import Setup
@@ -13,6 +14,7 @@ from budget.network.flows.edges import Edges, design_flows, find_edges
 from budget.network.flows.graph import Controls, Law, Network
 from budget.network.flows.laws import HOLDING, STEEP, Constant, Friction, HeldFlow, JunctionLaw, Power, Quadratic
 from budget.network.flows.sources import Gains, Running
+from budget.network.rings import leg_laws
 from budget.physics.arrays import Array, Flags
 from budget.physics.fittings import valve_drop
 from budget.physics.power import velocity_pressure
@@ -35,21 +37,24 @@ def install(run: Computed, setup: Setup) -> Installed:
     """Build the network of a run with its devices set and its sources running as `setup` says."""
     layout, drops = run.layout, run.drops
     edges = find_edges(layout)
-    design = design_flows(edges, drops.leg_mass, drops.terminal_mass, drops.source_mass)
+    design = design_flows(edges, drops)
     constant = np.zeros(len(design))
     static = np.concatenate([drops.leg_static, drops.terminal_static])
     constant[: len(static)] = static
+    constant[edges.links] = _heights(run)
     quadratic = _quadratic(run, edges, setup)
+    links = layout.links
+    quadratic[edges.links], of_links = leg_laws(links.legs, links.items, np.arange(len(links)), edges.links)
     fixed = Constant(constant), Quadratic(quadratic)
-    laws: list[Law] = [*fixed, _friction(run), _powers(run, setup), Gains(setup.running)]
+    laws: list[Law] = [*fixed, _friction(run), _powers(run, setup), *of_links, Gains(setup.running)]
     junctions = _junctions(run)
     unknown = _unknown(run, edges, [*laws, junctions], design)
     shut = unknown[edges.source]
     shut[list(setup.shut)] = True
     pumps, controls = _controls(run, edges, setup, unknown)
     # A part that carries nothing in design (a spare leg) is taken for as large as the least that carries something.
-    least = np.min(design[design > 0.0], initial=np.inf)
-    typical = np.where(design > 0.0, design, least if np.isfinite(least) else 1.0)
+    least = np.min(np.abs(design[design != 0.0]), initial=np.inf)
+    typical = np.where(design != 0.0, design, least if np.isfinite(least) else 1.0)
     network = Network(
         nodes=edges.nodes,
         start=edges.start,
@@ -62,6 +67,15 @@ def install(run: Computed, setup: Setup) -> Installed:
         held=_held_flows(run, setup),
     )
     return Installed(edges, network, setup.running, unknown, pumps)
+
+
+def _heights(run: Computed) -> Array:
+    """Return the static part of each link's leg: the height between the sections that it joins."""
+    legs, links = run.layout.legs, run.layout.links
+    # Outward, what rises from the source to a leg's far end; on the way back, what rises from there to the source.
+    along = path_sums(run.drops.leg_static, legs.parent)
+    sign = np.where(legs.outward[links.first], 1.0, -1.0)
+    return np.asarray(sign * (along[links.second] - along[links.first]), dtype=np.float64)
 
 
 def _quadratic(run: Computed, edges: Edges, setup: Setup) -> Array:
@@ -81,7 +95,7 @@ def _quadratic(run: Computed, edges: Edges, setup: Setup) -> Array:
             one = float(valve_drop(1.0 / items.density[number], items.value[number], items.density[number]))
             one /= float(items.parallel[number]) ** 2
         else:
-            one = float(drops.item_drop[number]) / float(carried[carrier]) ** 2 if carried[carrier] != 0.0 else 0.0
+            one = abs(float(drops.item_drop[number])) / float(carried[carrier]) ** 2 if carried[carrier] != 0.0 else 0.0
         found[carrier] += one / opening[number] ** 2
     static = ~np.isnan(terminals.static_drop)
     neck = velocity_pressure(terminals.density, 1.0 / (terminals.density * terminals.neck))
@@ -129,7 +143,7 @@ def _powers(run: Computed, setup: Setup) -> Power:
     item_at = items.parallel[these] * items.at[these] * items.density[these]
     at = np.concatenate([terminals.drop_at * terminals.density, item_at])
     edge = np.concatenate([count + np.arange(len(terminals)), carrier])
-    at = np.where(np.isnan(at), carried[edge], at)
+    at = np.where(np.isnan(at), np.abs(carried[edge]), at)
     static = np.where(terminals.discharge, terminals.static_drop, np.abs(terminals.static_drop))
     own = np.where(np.isnan(terminals.static_drop), terminals.drop, static)
     own = np.where(terminals.broken, np.nan, own)

@@ -74,6 +74,7 @@ class Flows:
     sources: dict[str, SourceFlow]
     sections: dict[str, SectionFlow]
     terminals: dict[str, TerminalFlow]
+    links: dict[str, SectionFlow]
     findings: tuple[Finding, ...]
     settled: bool
     installed: Installed
@@ -164,7 +165,8 @@ class _Records:
         sources = {one.id: one for one in self._sources()}
         findings = (*self.setup.findings, *self._findings(sources, terminals))
         sections = {one.id: one for one in self._sections()}
-        return Flows(sources, sections, terminals, findings, self.settled, self.installed, self.solution)
+        links = {one.id: one for one in self._links()}
+        return Flows(sources, sections, terminals, links, findings, self.settled, self.installed, self.solution)
 
     def _known(self, source: int) -> bool:
         return not self.installed.unknown[source]
@@ -205,6 +207,16 @@ class _Records:
             flows = [float(self.flow[leg]) for leg in legs]
             back = flows[1] if len(flows) > 1 else None
             yield SectionFlow(id_, flows[0] / density, None if back is None else back / density, flows[0], back)
+
+    def _links(self) -> Iterator[SectionFlow]:
+        links, edges = self.layout.links, self.installed.edges
+        for id_, numbers in links.of.items():
+            source = links.found[numbers[0]].source
+            if self._known(source):
+                density = self.layout.media[source].supply.density
+                flows = [float(self.flow[edges.links[number]]) for number in numbers]
+                back = flows[1] if len(flows) > 1 else None
+                yield SectionFlow(id_, flows[0] / density, None if back is None else back / density, flows[0], back)
 
     def _terminals(self) -> Iterator[TerminalFlow]:
         terminals, first = self.layout.terminals, len(self.layout.legs)
@@ -266,10 +278,12 @@ class _Records:
         topology = self.layout.topology
         for id_, section in self.layout.description.sections.items():
             for leg in topology.section_legs.get(id_, ()):
-                if self.flow[leg] < -_BACKWARD * max(float(self.run.drops.leg_mass[leg]), 1e-12):
+                design = float(self.run.drops.leg_mass[leg])
+                along = float(self.flow[leg]) * (-1.0 if design < 0.0 else 1.0)  # in a ring it may be negative
+                if along < -_BACKWARD * max(abs(design), 1e-12):
                     density = self.layout.media[topology.legs[leg].source].supply.density
                     text = "the flow runs backward, {0}"
-                    yield warning("backward", text, section.path, (-float(self.flow[leg]) / density, "flow"))
+                    yield warning("backward", text, section.path, (-along / density, "flow"))
                     break
 
     def _owner(self, edge: int) -> Path:
@@ -277,6 +291,8 @@ class _Records:
         layout, description = self.layout, self.layout.description
         edges = self.installed.edges
         first_source = len(layout.legs) + len(layout.terminals)
+        if edge in edges.links:
+            return description.links[layout.links.found[int(edge - edges.links[0])].owner].path
         if edge >= first_source + len(layout.media):
             edge = int(edges.behind[edge - first_source - len(layout.media)])
         if edge >= first_source:

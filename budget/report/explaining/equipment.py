@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import math
 from collections.abc import Iterator
 from itertools import pairwise
@@ -25,7 +26,10 @@ def item_steps(scene: Scene, carrier: int) -> Iterator[Step]:
     """Return the drop of every item that a leg, terminal or source carries, and their sum."""
     numbers = scene.items_of(carrier)
     for place in numbers:
-        yield _item(scene, place)
+        step = _item(scene, place)
+        if step.numbers and _carried(scene, carrier) < 0.0:  # what flows the other way loses the other way
+            step = dataclasses.replace(step, formula=f"-{step.formula}", numbers=f"-{step.numbers}")
+        yield step
     if len(numbers) > 1:
         drops = [float(scene.drops.item_drop[place]) for place in numbers]
         formula = " + ".join(plain(scene.layout.items.items[place].name) for place in numbers)
@@ -35,7 +39,7 @@ def item_steps(scene: Scene, carrier: int) -> Iterator[Step]:
 def _item(scene: Scene, place: int) -> Step:
     items, write = scene.layout.items, scene.write
     item, density = items.items[place], float(items.density[place])
-    mass = _carried(scene, int(items.carrier[place]))
+    mass = abs(_carried(scene, int(items.carrier[place])))
     drop, form, value = write.pressure(float(scene.drops.item_drop[place])), int(items.form[place]), items.value[place]
     flow, rho = write.of(mass / density, Dimension.FLOW), write.of(density, Dimension.DENSITY)
     count = int(items.parallel[place])

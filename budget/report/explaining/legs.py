@@ -110,7 +110,10 @@ def _flow(scene: Scene, leg: int) -> Iterator[Step]:
     write, layout, legs = scene.write, scene.layout, scene.layout.legs
     mass = float(scene.drops.leg_mass[leg])
     diversity = float(legs.diversity[leg])
-    if math.isnan(diversity):
+    if scene.layout.links.ringed[leg]:
+        source = "from solving its ring: the pressures balance around every loop"
+        yield Step("mass flow", "m", "", write.mass(mass), source)
+    elif math.isnan(diversity):
         hanging = list(scene.hanging(leg))
         formula = f"m = {names((id_ for id_, _ in hanging), 'm({})')}" if hanging else "m: nothing hangs on it"
         yield write.total("mass flow", formula, [flow for _, flow in hanging], mass, mass=True)
@@ -137,9 +140,17 @@ def _flow(scene: Scene, leg: int) -> Iterator[Step]:
     yield calculation("volume flow", "q = m / rho", f"{write.mass(mass)} / {density}", flow)
     velocity = write.of(float(scene.drops.velocity[leg]), Dimension.VELOCITY)
     shown = write.area(area) if math.isfinite(area) else "?"
-    yield calculation("velocity", "v = q / A", f"{flow} / {shown}", velocity)
+    if mass < 0.0:
+        yield calculation("velocity", "v = |q| / A", f"|{flow}| / {shown}", velocity)
+    else:
+        yield calculation("velocity", "v = q / A", f"{flow} / {shown}", velocity)
     pressure = write.pressure(float(scene.drops.velocity_pressure[leg]))
     yield calculation("velocity pressure", "pv = rho x v^2 / 2", f"{density} x ({velocity})^2 / 2", pressure)
+
+
+def _back(scene: Scene, leg: int) -> str:
+    """Return the sign of what flows the other way, for formula and numbers: its losses are negative."""
+    return "-" if scene.drops.leg_mass[leg] < 0.0 else ""
 
 
 def _medium(scene: Scene, leg: int) -> Medium:
@@ -188,7 +199,8 @@ def _friction(scene: Scene, leg: int, run: Run, result: LegResult) -> Iterator[S
     formula = f"R = {'F x ' if stretch != 1.0 else ''}f x rho x v^2 / (2 x D)"
     yield calculation("gradient", formula, numbers, gradient, DARCY)
     length = write.of(float(legs.length[leg]), Dimension.LENGTH)
-    yield calculation("friction", "R x L", f"{gradient} x {length}", write.pressure(float(drops.friction[leg])))
+    back, friction = _back(scene, leg), write.pressure(float(drops.friction[leg]))
+    yield calculation("friction", f"{back}R x L", f"{back}{gradient} x {length}", friction)
 
 
 def _factor(re: float, relative: float, constant: float, f: float) -> Iterator[Step]:
@@ -231,8 +243,9 @@ def _fittings(scene: Scene, leg: int, result: LegResult) -> Iterator[Step]:
         if (behind.per_reynolds or behind.corrected) and result.reynolds > 0.0:
             yield _coefficient(f"K of {plain(loss.name)}", loss, behind.constant, behind.per_reynolds, behind.corrected,
                                result.reynolds)  # fmt: skip
-        numbers = f"{loss.count} x {factor(number(loss.k))} x {pressure}"
-        yield calculation(title, "n x K x pv", numbers, write.pressure(loss.drop), source)
+        back = _back(scene, leg)
+        numbers = f"{back}{loss.count} x {factor(number(loss.k))} x {pressure}"
+        yield calculation(title, f"{back}n x K x pv", numbers, write.pressure(loss.drop), source)
     total = float(scene.drops.fittings[leg])
     if len(result.losses) > 1:
         formula = " + ".join(plain(loss.name) for loss in result.losses)
@@ -310,13 +323,15 @@ def _area_change(scene: Scene, leg: int, loss: LossResult) -> Iterator[Step]:
     area = write.area(float(scene.layout.area_changes.area[leg]))
     density = write.of(float(legs.density[leg]), Dimension.DENSITY)
     mass, velocity = write.mass(float(scene.drops.leg_mass[leg])), write.of(loss.reference_velocity, Dimension.VELOCITY)
-    numbers = f"{mass} / ({density} x {area})"
-    yield calculation("velocity in the smaller area", "vs = m / (rho x As)", numbers, velocity)
+    back = _back(scene, leg)
+    size, symbol = (f"|{mass}|", "|m|") if back else (mass, "m")
+    numbers = f"{size} / ({density} x {area})"
+    yield calculation("velocity in the smaller area", f"vs = {symbol} / (rho x As)", numbers, velocity)
     parent = scene.layout.topology.legs[leg].parent
     sizes = ""
     if parent >= 0:
         wide = (legs.area[leg] > legs.area[parent]) == bool(legs.outward[leg])
         sizes = f"{'enlargement' if wide else 'contraction'} between {scene.name(parent)} and {scene.name(leg)}"
     yield calculation("coefficient of the change", "K", "", number(loss.k), said(sizes, _loss_source(loss)))
-    numbers = f"{factor(number(loss.k))} x {density} x ({velocity})^2 / 2"
-    yield calculation("change of area", "K x rho x vs^2 / 2", numbers, write.pressure(loss.drop))
+    numbers = f"{back}{factor(number(loss.k))} x {density} x ({velocity})^2 / 2"
+    yield calculation("change of area", f"{back}K x rho x vs^2 / 2", numbers, write.pressure(loss.drop))

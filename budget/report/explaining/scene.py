@@ -51,7 +51,7 @@ class Scene:
         terminals = layout.terminals
         for number, found in enumerate(layout.topology.legs):
             joins = found.parent == leg if leg >= 0 else self._at_source(number, -1 - leg)
-            if joins and layout.end[number] > layout.start[number]:
+            if joins and (layout.end[number] > layout.start[number] or layout.links.ringed[number]):
                 yield found.owner, float(drops.leg_mass[number])
         for number, id_ in enumerate(terminals.ids):
             if leg >= 0:

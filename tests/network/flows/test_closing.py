@@ -35,8 +35,7 @@ def check(run: Computed) -> None:
     assert run.take_up.excess.max() < 1.0
     first = solve_flows(run, devices="set")
     edges = first.installed.edges
-    drops = run.drops
-    design = design_flows(edges, drops.leg_mass, drops.terminal_mass, drops.source_mass)
+    design = design_flows(edges, run.drops)
     for start in (1.0, 3.0, 0.0):
         flows = solve_flows(run, devices="set", start=start * design)
         assert flows.settled

@@ -105,7 +105,7 @@ def test_at_design_flow_every_drop_is_the_budgets(seed: int) -> None:
     run = balanced(seed)
     drops = run.drops
     network = install(run, set_up(run, None, "open")).network
-    design = design_flows(find_edges(run.layout), drops.leg_mass, drops.terminal_mass, drops.source_mass)
+    design = design_flows(find_edges(run.layout), drops)
     found = dataclasses.replace(network, held=None).drops(design)[0]
     count = len(run.layout.legs)
     legs = drops.leg_total.copy()
