@@ -103,9 +103,7 @@ def apply(run: Run, edit: Edit) -> Run:
     """Return the run with an edit made to its text, and nothing else changed. Raises EditError."""
     source = read_text(apply_to_text(run.text, edit))
     libraries = renew(source, run.path, run.libraries)
-    return dataclasses.replace(
-        run, text=source.text, description=describe(source, libraries), libraries=libraries
-    )
+    return dataclasses.replace(run, text=source.text, description=describe(source, libraries), libraries=libraries)
 
 
 def save(run: Run, path: str | Path, *, over: bool = False) -> Run:

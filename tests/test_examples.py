@@ -151,9 +151,7 @@ def test_the_open_tower_spends_its_static_height_once() -> None:
     _, budget, _ = load("condenser-tower")
     source = budget.sources["CWP"]
     rise = (9 + 52 + 7.5 + 2 - 3 - 57) * 0.3048
-    assert source.static == pytest.approx(
-        994.0 * 9.80665 * rise + 2.6 * 6894.757, rel=0.03
-    )  # water of 30 to 35 degC
+    assert source.static == pytest.approx(994.0 * 9.80665 * rise + 2.6 * 6894.757, rel=0.03)  # water of 30 to 35 degC
 
 
 def test_both_fans_of_the_unit_have_two_sides() -> None:

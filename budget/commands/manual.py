@@ -10,6 +10,7 @@ from budget.manual import TOPICS, page, titles
 
 __all__ = ["TOPICS", "add_arguments", "completions", "page", "run", "titles"]
 
+
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take a topic."""
     parser.add_argument("topic", metavar="TOPIC", nargs="?", help="a topic; without one, all are listed")

@@ -8,9 +8,7 @@ from enum import StrEnum
 Path = tuple[str | int, ...]
 """The keys that lead to a value, list indices as integers: ("section", "M1", "item", 0, "kv")."""
 
-ID_TABLES = frozenset(
-    {"source", "section", "terminal", "pipe", "duct", "fitting", "device", "link", "case", "reading"}
-)
+ID_TABLES = frozenset({"source", "section", "terminal", "pipe", "duct", "fitting", "device", "link", "case", "reading"})
 """Tables whose entries have an ID of their own: a finding names `section.M1`, not `section`."""
 
 

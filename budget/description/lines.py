@@ -32,9 +32,7 @@ def read_lines(reading: Reading, data: Mapping[str, Any]) -> dict[tuple[str, str
     return lines
 
 
-def _line(
-    reading: Reading, kind: str, name: str, values: dict[str, Any], entry: Mapping[str, Any], path: Path
-) -> Line:
+def _line(reading: Reading, kind: str, name: str, values: dict[str, Any], entry: Mapping[str, Any], path: Path) -> Line:
     wanted = values.get("catalogue")
     listed = (pipe_line(wanted) if kind == "pipe" else duct_line(wanted)) if wanted is not None else None
     if wanted is not None and listed is None:

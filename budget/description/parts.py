@@ -280,4 +280,3 @@ def _accept(scope: Scope, values: Mapping[str, Any], path: Path) -> dict[str, st
         else:
             accepted[code] = reason
     return accepted
-

@@ -98,9 +98,7 @@ def _measured(values: Values, description: Description, id_: str, entry: Any) ->
     date = _date(values, entry.get("date", ""), (*path, "date"))
     if stated[0] not in read or date is None:
         return None
-    return Measured(
-        id_, path, read.get("flow"), read.get("signal"), read.get("setting"), date, read.get("note", "")
-    )
+    return Measured(id_, path, read.get("flow"), read.get("signal"), read.get("setting"), date, read.get("note", ""))
 
 
 def _date(values: Values, stated: Any, path: Path) -> str | None:

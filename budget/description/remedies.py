@@ -58,7 +58,7 @@ REMEDIES: dict[str, str] = {
     # judgement of results
     "near-freezing": "Raise the temperature or the concentration, or accept it with a reason.",
     "fluid-range": "Check the temperature and concentration; otherwise take density and viscosity from the maker.",
-    "velocity": "Take a larger size, or accept it with a reason: accept = { velocity = \"...\" }.",
+    "velocity": 'Take a larger size, or accept it with a reason: accept = { velocity = "..." }.',
     "gradient": "Take a larger size, or accept it with a reason.",
     "slow": "Take a smaller size, or accept it with a reason.",
     "transitional": "Move the Reynolds number out of 2300 to 4000 by another size, or leave a margin for the doubt.",

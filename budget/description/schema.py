@@ -236,8 +236,7 @@ SINGLE: dict[str, dict[str, Spec]] = {
         "specific_heat": Measure(Dimension.SPECIFIC_HEAT, 0.0, 1e5, above=True),
     },
     "defaults": {
-        key: RUN[key]
-        for key in ("pipe", "duct", "paired", "takeoff", "junction", "angle", "class", "fitting_method")
+        key: RUN[key] for key in ("pipe", "duct", "paired", "takeoff", "junction", "angle", "class", "fitting_method")
     },
     "limits": LIMIT_CLASS
     | {

@@ -81,9 +81,7 @@ def read_duct_size(reading: Reading, value: Any, path: Path, *, remark: bool = T
             else:
                 bore = bare(value, Dimension.LENGTH, unit).value
         except (UnitError, TypeError, AttributeError):
-            reading.wrong(
-                "size", f"{value!r} is not a duct size; write \"250 mm\", \"600x300\" or \"oval 800x250\"", path
-            )
+            reading.wrong("size", f'{value!r} is not a duct size; write "250 mm", "600x300" or "oval 800x250"', path)
             return None
         geometry = Geometry("round", bore, bore, bore, str(value))
     if not (0.0 < geometry.height <= 20.0 and 0.0 < geometry.width <= 20.0):

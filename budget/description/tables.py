@@ -69,9 +69,7 @@ def own_fitting(reading: Reading, id_: str, values: dict[str, Any], path: Path) 
         reading.wrong("missing", f"the fitting {id_!r} has no loss coefficient; write k = 0.75", path)
     # A kind that needs parameters can't be meant by a name alone.
     if id_ in fitting_names() or id_ in kinds_by_name():
-        reading.wrong(
-            "contradiction", f"{id_!r} is a fitting of the catalogue too; give one's own another name", path
-        )
+        reading.wrong("contradiction", f"{id_!r} is a fitting of the catalogue too; give one's own another name", path)
     return OwnFitting(id_, values.get("k", float("nan")), values.get("source", ""))
 
 

@@ -46,6 +46,7 @@ _KINDS: dict[type, str] = {
 
 _INCLUDED_ANGLE = Measure(Dimension.ANGLE, 0.0, 180.0, above=True)
 
+
 @dataclass(slots=True)
 class Reading:
     """What reading one file needs to know, and what it has found wrong so far."""

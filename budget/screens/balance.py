@@ -265,9 +265,7 @@ class Balance(Board):
         return part.setting if part is not None else None
 
 
-def _worked_out(
-    snapshot: Snapshot, readings: bytes | None
-) -> tuple[Schedule, Readings | None, tuple[Located, ...]]:
+def _worked_out(snapshot: Snapshot, readings: bytes | None) -> tuple[Schedule, Readings | None, tuple[Located, ...]]:
     """Return the schedule of a run, the readings, and what is wrong with them."""
     description, figures = snapshot.description, Figures(snapshot.description)
     if readings is None:

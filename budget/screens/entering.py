@@ -243,7 +243,6 @@ def accept_and_move(app: BudgetApp, step: int) -> None:
         edit_cell(app)
 
 
-
 def _paint(app: BudgetApp, entry: Entry) -> None:
     if entry.in_cell:
         app.ledger.field, app.ledger.problem = entry.field, entry.problem
@@ -252,4 +251,3 @@ def _paint(app: BudgetApp, entry: Entry) -> None:
     else:
         app.foot.message, app.foot.role = entry.problem, "error"
         app.foot.ask(entry.label, entry.field)
-

@@ -66,5 +66,3 @@ def velocity(loss: LossResult, figures: Figures) -> str:
 def spelled_parameters(values: Mapping[str, float | str]) -> str:
     """Spell parameters with their values in one line."""
     return ", ".join(f"{name} {value if isinstance(value, str) else f'{value:g}'}" for name, value in values.items())
-
-

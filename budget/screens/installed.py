@@ -123,9 +123,7 @@ class Installed(Board):
 
         def trace(watch: Watch) -> Operating | None:
             request = solved.request
-            return operating(
-                request.snapshot.budget.run, solved.flows, source, request.stated, request.devices, watch
-            )
+            return operating(request.snapshot.budget.run, solved.flows, source, request.stated, request.devices, watch)
 
         def take(found: Operating | None) -> None:
             if self.solved is solved:

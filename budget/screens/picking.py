@@ -148,4 +148,3 @@ def _set(app: BudgetApp, edit: Edit, path: Path) -> None:
 
 def _mark(now: bool) -> str:
     return "index" if now else ""
-

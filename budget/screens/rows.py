@@ -27,8 +27,14 @@ DEEPEST_INDENT = 7
 """Cells; a branch that hangs deeper is not indented further."""
 
 _COLUMN_OF_CODE: Mapping[str, str] = {
-    "velocity": "velocity", "slow": "velocity", "gradient": "gradient", "excess": "margin",
-    "nothing-in-hand": "sum", "unknown-size": "size", "size": "size", "no-flow": "flow",
+    "velocity": "velocity",
+    "slow": "velocity",
+    "gradient": "gradient",
+    "excess": "margin",
+    "nothing-in-hand": "sum",
+    "unknown-size": "size",
+    "size": "size",
+    "no-flow": "flow",
 }
 
 

@@ -122,11 +122,7 @@ def duplicate(text: str, description: Description, rows: tuple[Row, ...], place:
         taken.add(names[part.id])
     copies: list[Edit] = []
     for part in branch:
-        changes = {
-            side: names[held]
-            for side, held in _hangings(description, part)
-            if held in names
-        }
+        changes = {side: names[held] for side, held in _hangings(description, part) if held in names}
         copies.append(CopyTable(part.path, (part.path[0], names[part.id]), changes))
     label = f"duplicate {row.id} as {names[row.id]}"
     return Change(Several(tuple(copies)), label, (row.path[0], names[row.id]))
@@ -291,4 +287,3 @@ def _without_in_cases(text: str, gone: set[str]) -> list[Edit]:
             left: Any = kept if isinstance(value, list) else {i: value[i] for i in kept}
             edits.append(SetValue((*case, key), left))
     return edits
-

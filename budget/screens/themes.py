@@ -48,8 +48,17 @@ _FAINT = frozenset({"faint", "rest", "bar"})
 
 _TERMINAL_STYLES: Mapping[str, str] = {
     **dict.fromkeys(ROLES, ""),
-    "heading": "bold", "index": "magenta", "over": "bold red", "error": "bold red", "warning": "red",
-    "good": "bold", "row": "bold", "cursor": "reverse", "field": "reverse", "key": "bold", "title": "bold",
+    "heading": "bold",
+    "index": "magenta",
+    "over": "bold red",
+    "error": "bold red",
+    "warning": "red",
+    "good": "bold",
+    "row": "bold",
+    "cursor": "reverse",
+    "field": "reverse",
+    "key": "bold",
+    "title": "bold",
 }
 
 
@@ -145,7 +154,6 @@ def hex_of(style: Style, *, back: bool = False) -> str:
     """Return the colour of a style's text, or of its background, as `#rrggbb`."""
     red, green, blue = _triplet(style, None, back=back)
     return f"#{int(red):02x}{int(green):02x}{int(blue):02x}"
-
 
 
 def _read_style(role: str, words: object, problems: list[str]) -> Style:

@@ -92,9 +92,7 @@ def show_findings(app: BudgetApp) -> None:
 def _findings(app: BudgetApp) -> Offer:
     found = app.ledger.view.snapshot.findings
     ranked = sorted(found, key=lambda finding: list(Level).index(finding.level))
-    choices = [
-        Choice((f.level.value, str(f.line), plain(f.table), plain(f.message)), f, f.level.value) for f in ranked
-    ]
+    choices = [Choice((f.level.value, str(f.line), plain(f.table), plain(f.message)), f, f.level.value) for f in ranked]
     return Offer(
         "Findings", ("", "line", "where", "what"), choices, lambda value: _to_finding(app, cast("Located", value)),
         filters=False, empty="nothing is wrong or doubtful",

@@ -83,17 +83,13 @@ def test_between_sizes_k_is_linear_in_the_logarithm_of_the_size() -> None:
         ("angle valve", 0.010, 6.1),
     ],
 )  # fmt: skip
-def test_outside_the_table_the_nearest_figure_stands_and_is_marked(
-    name: str, nominal: float, value: float
-) -> None:
+def test_outside_the_table_the_nearest_figure_stands_and_is_marked(name: str, nominal: float, value: float) -> None:
     found = k(name, "by size", nominal)
     assert (found.constant, found.in_range) == (value, False)
 
 
 @given(st.sampled_from(BY_SIZE), st.floats(0.010, 0.05), st.floats(1.001, 1.5))
-def test_k_by_size_never_grows_with_the_size_of_threaded_fittings(
-    name: str, nominal: float, more: float
-) -> None:
+def test_k_by_size_never_grows_with_the_size_of_threaded_fittings(name: str, nominal: float, more: float) -> None:
     larger = min(nominal * more, 0.05)
     assert k(name, "by size", larger).constant <= k(name, "by size", nominal).constant + 1e-12
 
@@ -139,9 +135,7 @@ def test_butterfly_valve_by_band_of_size(nominal: float, n: float, inside: bool)
         ("lift check valve", "by size", "crane"),
     ],
 )  # fmt: skip
-def test_another_method_is_taken_where_one_is_lacking_and_the_note_says_so(
-    name: str, asked: str, used: str
-) -> None:
+def test_another_method_is_taken_where_one_is_lacking_and_the_note_says_so(name: str, asked: str, used: str) -> None:
     found = k(name, asked, 0.05)
     assert found.method == used
     assert found.note.startswith(f'not tabulated for the method "{asked}", so "{used}" was taken')

@@ -101,9 +101,7 @@ def test_what_is_not_there_names_the_nearest(kind: str, name: str | None, messag
 
 
 def test_columns_are_aligned() -> None:
-    lines = aligned(
-        [Row(("a", "b"), heading=True), Row(("long", "c")), Row(("a note over all",)), Row(("x",), True)]
-    )
+    lines = aligned([Row(("a", "b"), heading=True), Row(("long", "c")), Row(("a note over all",)), Row(("x",), True)])
     assert lines.split("\n") == ["a     b", "long  c", "a note over all", "", "x"]
     assert aligned([]) == ""
 

@@ -75,9 +75,7 @@ FILES = (
 
 
 @pytest.mark.parametrize(("content", "code", "place"), FILES)
-def test_a_file_that_can_not_be_read_is_refused_at_its_place(
-    content: bytes, code: str, place: tuple[int, int]
-) -> None:
+def test_a_file_that_can_not_be_read_is_refused_at_its_place(content: bytes, code: str, place: tuple[int, int]) -> None:
     start = time.perf_counter()
     found = findings_in(content)
     assert time.perf_counter() - start < 1.0

@@ -109,14 +109,14 @@ LIQUID = 'format = 1\n[design]\nunits = "{units}"\n[fluid]\nname = "{fluid}"\nte
 SYSTEMS = [("SI", "water"), ("IP", "water"), ("SI", "air"), ("IP", "air")]
 BARE = (
     # key in its table, SI liquid, IP liquid, SI gas, IP gas: what 10 is in SI base units
-    ('[source.P]\navailable = 10', "source", "available", (10_000.0, 29_890.67, 10.0, 2_490.889)),
-    ('[source.P]\ntemperature = 10', "source", "temperature", (283.15, 260.9278, 283.15, 260.9278)),
-    ('[section.S]\nlength = 10', "section", "length", (10.0, 3.048, 10.0, 3.048)),
-    ('[section.S]\nrise = 10', "section", "rise", (10.0, 3.048, 10.0, 3.048)),
-    ('[terminal.T]\nflow = 10', "terminal", "flow", (0.01, 0.000630902, 0.01, 0.004719474)),
-    ('[terminal.T]\nload = 10', "terminal", "load", (10_000.0, 2_930.711, 10_000.0, 2_930.711)),
-    ('[limits]\nvelocity = 10', "limits", "velocity", (10.0, 3.048, 10.0, 0.0508)),
-    ('[limits]\ngradient = 10', "limits", "gradient", (10.0, 980.665, 10.0, 81.72208)),
+    ("[source.P]\navailable = 10", "source", "available", (10_000.0, 29_890.67, 10.0, 2_490.889)),
+    ("[source.P]\ntemperature = 10", "source", "temperature", (283.15, 260.9278, 283.15, 260.9278)),
+    ("[section.S]\nlength = 10", "section", "length", (10.0, 3.048, 10.0, 3.048)),
+    ("[section.S]\nrise = 10", "section", "rise", (10.0, 3.048, 10.0, 3.048)),
+    ("[terminal.T]\nflow = 10", "terminal", "flow", (0.01, 0.000630902, 0.01, 0.004719474)),
+    ("[terminal.T]\nload = 10", "terminal", "load", (10_000.0, 2_930.711, 10_000.0, 2_930.711)),
+    ("[limits]\nvelocity = 10", "limits", "velocity", (10.0, 3.048, 10.0, 0.0508)),
+    ("[limits]\ngradient = 10", "limits", "gradient", (10.0, 980.665, 10.0, 81.72208)),
 )
 
 

@@ -24,9 +24,7 @@ INCHES = (4, 5, 6, 8, 10, 12, 14, 16, 20, 24, 28, 32, 36, 42, 48)
 class Dresser:
     """Fills the tables of one run in place."""
 
-    def __init__(
-        self, rng: random.Random, pen: Pen, run: Entry, net: Entry, slow: bool, tags: set[str]
-    ) -> None:
+    def __init__(self, rng: random.Random, pen: Pen, run: Entry, net: Entry, slow: bool, tags: set[str]) -> None:
         self.rng, self.pen, self.run, self.net, self.slow, self.tags = rng, pen, run, net, slow, tags
 
     def dress(self) -> None:

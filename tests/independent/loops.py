@@ -201,9 +201,7 @@ def drop_section(net: Table, name: str) -> None:
     if place is None:
         return
     mass = place["mass_flow"]
-    section["pieces"] = [
-        (heading(item), item_drop(item, mass, place, terms), item) for item in entry.get("item", [])
-    ]
+    section["pieces"] = [(heading(item), item_drop(item, mass, place, terms), item) for item in entry.get("item", [])]
     section["static"] = place["density"] * G * measure(entry.get("rise", 0), "length", net["units"])
     if "balance" in entry:
         section["device"] = net["run"]["device"][entry["balance"]]
@@ -242,9 +240,7 @@ def drop_terminal(net: Table, name: str) -> None:
     else:
         own = item_drop(terminal_drop(entry), mass, place, terms)
     terminal |= {"drop": own, "pipe": pipe, "legs": legs, "base": 0.0, "device": None, "place": place}
-    terminal["pieces"] = [
-        (heading(item), item_drop(item, mass, place, terms), item) for item in entry.get("item", [])
-    ]
+    terminal["pieces"] = [(heading(item), item_drop(item, mass, place, terms), item) for item in entry.get("item", [])]
     terminal["static"] = place["density"] * G * measure(entry.get("rise", 0), "length", units)
     at_terminal = (terms[0], terms[1], place["density"])  # a head is that of the fluid where the terminal stands
     terminal["static"] += measure(entry.get("outlet_pressure", 0), "pressure", *at_terminal)

@@ -62,9 +62,7 @@ def split(value: Any) -> tuple[float, str | None]:
     raise ValueError(f"no number in {value!r}")
 
 
-def measure(
-    value: Any, kind: str, units: str = "SI", gas: bool = False, density: float | None = None
-) -> float:
+def measure(value: Any, kind: str, units: str = "SI", gas: bool = False, density: float | None = None) -> float:
     """A quantity in SI base units (a temperature in degC); `density` is that of a head in m or ft."""
     number, unit = split(value)
     if unit is None:

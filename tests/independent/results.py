@@ -98,9 +98,7 @@ def show_section(net: Table, name: str) -> Table:
     section = net["sections"][name]
     source = net["sources"][section["source"]]
     system = system_of(net, name)
-    on_index = any(
-        name in {way[0] for side in net["paths"][terminal] for way in side} for terminal in source["marked"]
-    )
+    on_index = any(name in {way[0] for side in net["paths"][terminal] for way in side} for terminal in source["marked"])
     return show_conduit(section, source["fluid"]["out"]["density"]) | {
         "items": sum(drop for _, drop, _ in section["pieces"]),
         "static": section["static"],

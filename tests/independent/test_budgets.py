@@ -31,9 +31,7 @@ FIGURES = {
         *("flow", "mass_flow", "hydraulic_diameter", "area", "friction", "fittings", "items", "static", "drop"),
         *("cumulative", "differential", "margin"),
     ),
-    "terminals": (
-        *("flow", "mass_flow", "circuit", "drop", "items", "static", "differential", "margin", "excess"),
-    ),
+    "terminals": (*("flow", "mass_flow", "circuit", "drop", "items", "static", "differential", "margin", "excess"),),
 }
 WANTED = {
     *("closed", "open", "air", "both sides", "several sources", "SI", "IP", "water", "propylene glycol", "custom gas"),

@@ -211,16 +211,13 @@ def test_a_held_differential_stands_for_all_that_is_behind_it() -> None:
 
 def test_a_reverse_return_evens_out_the_floors() -> None:
     supplies = "".join(
-        f'[section.F{n}]\nfrom = "{near}"\n{PIPE}\nlength = 10\n'
-        for n, near in ((1, "R"), (2, "F1"), (3, "F2"))
+        f'[section.F{n}]\nfrom = "{near}"\n{PIPE}\nlength = 10\n' for n, near in ((1, "R"), (2, "F1"), (3, "F2"))
     )
     returns = "".join(
-        f'[section.B{n}]\nto = "{near}"\n{PIPE}\nlength = 10\n'
-        for n, near in ((1, "B2"), (2, "B3"), (3, "R"))
+        f'[section.B{n}]\nto = "{near}"\n{PIPE}\nlength = 10\n' for n, near in ((1, "B2"), (2, "B3"), (3, "R"))
     )
     ends = "".join(
-        f'[terminal.T{n}]\nfrom = "F{n}"\nto = "B{n}"\nflow = "0.13089969 L/s"\ndrop = "1 kPa"\n'
-        for n in (1, 2, 3)
+        f'[terminal.T{n}]\nfrom = "F{n}"\nto = "B{n}"\nflow = "0.13089969 L/s"\ndrop = "1 kPa"\n' for n in (1, 2, 3)
     )
     riser = f'[section.R]\nfrom = "P"\n{PIPE}\nlength = 0\npaired = true\n'
     result = evaluate(THICK + riser + supplies + returns + ends)

@@ -63,10 +63,7 @@ def test_the_random_runs_flow_in_every_regime(texts: list[str]) -> None:
 
 def test_some_devices_are_asked_for_more_than_their_table_has(texts: list[str]) -> None:
     owners = [
-        owner
-        for text in small(texts)
-        for kind in ("sections", "terminals")
-        for owner in evaluate(text)[kind].values()
+        owner for text in small(texts) for kind in ("sections", "terminals") for owner in evaluate(text)[kind].values()
     ]
     devices = [owner["device"] for owner in owners if owner["device"] and "kv" in owner["device"]]
     outside = sum(device["setting"] is None for device in devices)

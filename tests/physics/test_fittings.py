@@ -35,9 +35,7 @@ def test_forms_take_arrays() -> None:
 
 
 @given(POSITIVE, POSITIVE, st.floats(1.0, 1e6))
-def test_coefficient_falls_with_reynolds_to_its_constant(
-    constant: float, per_reynolds: float, re: float
-) -> None:
+def test_coefficient_falls_with_reynolds_to_its_constant(constant: float, per_reynolds: float, re: float) -> None:
     k = float(coefficient_at(constant, per_reynolds, re))
     assert k == pytest.approx(constant + per_reynolds / re)
     assert constant <= float(coefficient_at(constant, per_reynolds, re * 2)) <= k

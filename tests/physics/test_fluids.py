@@ -92,7 +92,5 @@ def test_ranges_say_what_they_cover() -> None:
     assert AIR_RANGE.covers(293.15, 0.5)
     assert not AIR_RANGE.covers(293.15, 1.1)
     by_volume = GLYCOL_RANGES["ethylene", "volume"]
-    np.testing.assert_array_equal(
-        by_volume.covers([300.0, 300.0, 380.0], [0.3, 0.05, 0.3]), [True, False, False]
-    )
+    np.testing.assert_array_equal(by_volume.covers([300.0, 300.0, 380.0], [0.3, 0.05, 0.3]), [True, False, False])
     assert all(validity.source and validity.known_from for validity in [WATER_RANGE, AIR_RANGE, by_volume])

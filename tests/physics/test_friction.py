@@ -22,9 +22,7 @@ CONSTANT = st.floats(56.0, 96.0)
 
 
 @given(ROUGHNESS, CONSTANT, st.sampled_from([2300.0, 4000.0]))
-def test_factor_and_its_slope_are_continuous_where_regimes_meet(
-    e: float, constant: float, limit: float
-) -> None:
+def test_factor_and_its_slope_are_continuous_where_regimes_meet(e: float, constant: float, limit: float) -> None:
     step = 1e-3
     re = limit + step * np.array([-2.0, -1.0, 0.0, 1.0, 2.0])
     f = friction_factor(re, e, constant)
@@ -55,9 +53,7 @@ def test_the_gradient_grows_with_the_flow_in_every_regime(e: float, re: float, m
 
 
 @given(st.floats(4e3, 1e8), st.floats(0.0, 0.04), st.floats(1e-4, 0.01))
-def test_turbulent_factor_grows_with_roughness_and_falls_with_reynolds(
-    re: float, e: float, more: float
-) -> None:
+def test_turbulent_factor_grows_with_roughness_and_falls_with_reynolds(re: float, e: float, more: float) -> None:
     assert float(colebrook(re, e + more)) > float(colebrook(re, e))
     assert float(colebrook(re * 1.1, e)) < float(colebrook(re, e))
 

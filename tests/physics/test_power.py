@@ -23,9 +23,7 @@ from budget.physics.terminals import extract_total, supply_total
 def test_powers_in_a_row() -> None:
     hydraulic = hydraulic_power(2e-3, 50e3)
     shaft = shaft_power(hydraulic, 0.5)
-    assert (float(hydraulic), float(shaft), float(electrical_power(shaft, 0.8))) == pytest.approx(
-        (100, 200, 250)
-    )
+    assert (float(hydraulic), float(shaft), float(electrical_power(shaft, 0.8))) == pytest.approx((100, 200, 250))
 
 
 def test_shaft_power_in_trade_units() -> None:
@@ -37,9 +35,7 @@ def test_shaft_power_in_trade_units() -> None:
 
 def test_specific_fan_power_and_class() -> None:
     """1000 Pa at an overall efficiency of 0.6 is 1667 W/(m3/s), class SFP 4 (EN 16798-3, read)."""
-    sfp = float(
-        specific_fan_power(electrical_power(shaft_power(hydraulic_power(2.0, 1000.0), 0.75), 0.8), 2.0)
-    )
+    sfp = float(specific_fan_power(electrical_power(shaft_power(hydraulic_power(2.0, 1000.0), 0.75), 0.8), 2.0))
     assert sfp == pytest.approx(1667, abs=0.5)
     assert sfp_class(sfp) == "SFP 4"
 
@@ -70,13 +66,9 @@ def test_trim_of_an_impeller() -> None:
 
 
 @given(st.floats(0.2, 2.0), st.floats(0.5, 1.5))
-def test_fan_laws_agree_with_affinity_and_power_stays_flow_times_pressure(
-    speed: float, density: float
-) -> None:
+def test_fan_laws_agree_with_affinity_and_power_stays_flow_times_pressure(speed: float, density: float) -> None:
     q, p, w = fan_laws(2.0, 300.0, 600.0, speed=speed)
-    assert (float(q), float(p), float(w)) == pytest.approx(
-        tuple(float(x) for x in affinity(2.0, 300.0, 600.0, speed))
-    )
+    assert (float(q), float(p), float(w)) == pytest.approx(tuple(float(x) for x in affinity(2.0, 300.0, 600.0, speed)))
     q, p, w = fan_laws(2.0, 300.0, 600.0, speed=speed, diameter=1.3, density=density)
     assert float(q * p) == pytest.approx(float(w))
 

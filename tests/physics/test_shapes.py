@@ -47,9 +47,7 @@ def test_a_flat_oval_of_equal_axes_is_a_circle(d: float) -> None:
 
 
 @given(SIDE, st.floats(1.0, 20.0))
-def test_laminar_constant_stays_between_the_circle_or_square_and_parallel_plates(
-    a: float, aspect: float
-) -> None:
+def test_laminar_constant_stays_between_the_circle_or_square_and_parallel_plates(a: float, aspect: float) -> None:
     assert 56.8 < float(rectangle(a * aspect, a).laminar_constant) < 96.0
     assert 64.0 <= float(flat_oval(a * aspect, a).laminar_constant) < 96.0
 
@@ -69,6 +67,4 @@ def test_flexible_factor_is_one_stretched_and_grows_with_compression(r: float, d
 
 def test_flexible_factor_in_millimetres() -> None:
     """The same law as it stands in SI: 0.58 r exp(-0.00496 D), r in percent, D in mm."""
-    assert float(flexible_factor(0.15, 0.2)) == pytest.approx(
-        1 + 0.58 * 15 * np.exp(-0.00496 * 200), rel=5e-4
-    )
+    assert float(flexible_factor(0.15, 0.2)) == pytest.approx(1 + 0.58 * 15 * np.exp(-0.00496 * 200), rel=5e-4)

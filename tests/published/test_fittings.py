@@ -57,9 +57,7 @@ def test_three_k(km: float, ki: float, kd: float, d_in: float, re: float, k: flo
         ("tee straight", "darby", 1.0, 2e3, 0.555),
     ],
 )
-def test_catalogue_carries_those_constants(
-    name: str, method: str, d_in: float, re: float, k: float | None
-) -> None:
+def test_catalogue_carries_those_constants(name: str, method: str, d_in: float, re: float, k: float | None) -> None:
     """The bore of 2 in is taken as nominal DN50 here so that Hooper's threaded constants apply."""
     nominal = 0.050 if d_in == 2.0 else d_in * INCH
     found = coefficient(name, method, nominal, d_in * INCH)

@@ -37,9 +37,7 @@ def test_water_holds_iapws_95_too() -> None:
     np.testing.assert_allclose(state.viscosity, column("water", "mu_coolprop"), rtol=0.2e-2)
 
 
-@pytest.mark.parametrize(
-    "row", table("glycol-freezing"), ids=lambda row: f"{row['coolprop_fluid']}-{row['percent']}"
-)
+@pytest.mark.parametrize("row", table("glycol-freezing"), ids=lambda row: f"{row['coolprop_fluid']}-{row['percent']}")
 def test_glycol_freezes_where_the_table_says(row: dict[str, str]) -> None:
     kind: Kind = "propylene" if row["glycol"].startswith("propylene") else "ethylene"
     basis: Basis = "mass" if row["basis"] == "mass" else "volume"
@@ -98,9 +96,7 @@ def test_air_specific_heat_and_saturation_hold_the_property_library() -> None:
 
 def test_saturation_over_ice() -> None:
     """WMO: 103.2 Pa at -20 degC and 259.9 Pa at -10 degC over ice; 611.2 Pa at 0 degC (from memory)."""
-    np.testing.assert_allclose(
-        saturation_pressure([253.15, 263.15, 273.15]), [103.2, 259.9, 611.2], rtol=1e-3
-    )
+    np.testing.assert_allclose(saturation_pressure([253.15, 263.15, 273.15]), [103.2, 259.9, 611.2], rtol=1e-3)
 
 
 def test_standard_pressure_holds_the_table() -> None:

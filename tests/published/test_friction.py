@@ -31,9 +31,7 @@ def test_laminar_factor_agrees_with_the_table() -> None:
     name = "friction-factor-checks"
     printed = column(name, "laminar_64_over_re")
     given = ~np.isnan(printed)
-    np.testing.assert_allclose(
-        laminar_factor(column(name, "re"))[given], printed[given], atol=0.51e-6, rtol=0
-    )
+    np.testing.assert_allclose(laminar_factor(column(name, "re"))[given], printed[given], atol=0.51e-6, rtol=0)
 
 
 def test_colebrook_agrees_with_an_exact_solution_over_the_whole_range() -> None:
@@ -72,9 +70,7 @@ def test_equivalent_length_of_a_copper_circuit() -> None:
     total_ft = 62 + sum(length * count for length, count in fittings.values())
     assert total_ft == pytest.approx(104.8)
     d, f = 0.0206, 0.025
-    k = sum(
-        float(k_of_equivalent_length(length * 0.3048, f, d)) * count for length, count in fittings.values()
-    )
+    k = sum(float(k_of_equivalent_length(length * 0.3048, f, d)) * count for length, count in fittings.values())
     v = 0.9
     straight = float(pressure_gradient(f, 985.0, v, d)) * 62 * 0.3048
     assert straight + k * 985.0 * v**2 / 2 == pytest.approx(

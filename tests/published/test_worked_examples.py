@@ -154,9 +154,7 @@ def crane_7_17(i: dict[str, Any]) -> Values:
     rho, d = i["rho_kg_m3"], i["D_in"] * INCH
     q = i["Q_bbl_h"] * 42 * GPM / 60
     v = q / float(circle(d).area)
-    head = (
-        float(pressure_gradient(0.025, rho, v, d)) * i["L_miles"] * 1609.344 / (rho * G) + i["lift_ft"] * FOOT
-    )
+    head = float(pressure_gradient(0.025, rho, v, d)) * i["L_miles"] * 1609.344 / (rho * G) + i["lift_ft"] * FOOT
     power = shaft_power(hydraulic_power(q, rho * G * head), i["efficiency"])
     return {"head_ft": head / FOOT, "power_hp": float(power) / HORSEPOWER}
 
@@ -226,9 +224,7 @@ def course_notes_equivalent_diameter(i: dict[str, Any]) -> Values:
 def hi_system_curve(i: dict[str, Any]) -> Values:
     """Head = static + (f L/D + K) v^2/2g, then in gpm."""
     d, length = i["D_ft"] * FOOT, i["L_ft"] * FOOT
-    loss = float(pressure_gradient(i["f"], 1.0, 1.0, d)) * length + float(
-        fitting_drop(i["K_total"], 1.0, 1.0)
-    )
+    loss = float(pressure_gradient(i["f"], 1.0, 1.0, d)) * length + float(fitting_drop(i["K_total"], 1.0, 1.0))
     per_v2 = loss / G / FOOT * FOOT**2  # ft per (ft/s)^2
     v_of_gpm = GPM / float(circle(d).area) / FOOT
     return {"coef_v2": per_v2, "coef_Q2": per_v2 * v_of_gpm**2}

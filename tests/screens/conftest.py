@@ -58,9 +58,7 @@ class Hands:
     def lines(self, widget: Lines | None = None) -> list[str]:
         """What a widget shows, the ledger where none is named."""
         shown = widget or self.app.front
-        return [
-            "".join(segment.text for segment in shown.render_line(y)).rstrip() for y in range(shown.size.height)
-        ]
+        return ["".join(segment.text for segment in shown.render_line(y)).rstrip() for y in range(shown.size.height)]
 
     def row(self, id_: str) -> str:
         """The line of the ledger that begins with an ID."""

@@ -20,11 +20,14 @@ from budget.screens.installed import Installed
 from tests.screens.conftest import SMALL, Hands, Stage
 
 PUMP = 'curve = [["0 L/s", "34 kPa"], ["0.1 L/s", "30 kPa"], ["0.2 L/s", "18 kPa"]]'
-CURVE = SMALL.replace("efficiency = 0.35", f"efficiency = 0.35\n{PUMP}") + """
+CURVE = (
+    SMALL.replace("efficiency = 0.35", f"efficiency = 0.35\n{PUMP}")
+    + """
 [case.night]
 title = "Night"
 off = ["R1"]
 """
+)
 
 
 def board(hands: Hands) -> Installed:
@@ -113,7 +116,7 @@ def test_the_curves_meet_at_the_operating_point(play: Stage) -> None:
 
 
 def test_an_edit_moves_the_flows_while_it_is_typed_and_undo_moves_them_back(play: Stage) -> None:
-    changed = CURVE.replace('[terminal.R1]\n', '[terminal.R1]\nsetting = 0.5\n')
+    changed = CURVE.replace("[terminal.R1]\n", "[terminal.R1]\nsetting = 0.5\n")
 
     async def act(hands: Hands) -> None:
         await hands.at("R1")

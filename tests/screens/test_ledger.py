@@ -13,9 +13,9 @@ from budget.screens.rows import View, tree, visible
 from budget.units import Dimension
 from tests.screens.conftest import EXAMPLES, SMALL, Hands, Stage
 
-TWO_SOURCES = SMALL + SMALL[SMALL.index("[source.P1]") :].replace(".P1", ".P2").replace(
-    '"P1"', '"P2"'
-).replace("M1", "X1").replace("B1", "Y1").replace("B2", "Y2").replace("terminal.R", "terminal.S")
+TWO_SOURCES = SMALL + SMALL[SMALL.index("[source.P1]") :].replace(".P1", ".P2").replace('"P1"', '"P2"').replace(
+    "M1", "X1"
+).replace("B1", "Y1").replace("B2", "Y2").replace("terminal.R", "terminal.S")
 
 
 def test_rows_stand_in_file_order_each_under_what_feeds_it() -> None:

@@ -216,9 +216,7 @@ def _interpolated(
     yield calculation("setting", formula, numbers, number(setting), f"its table between two lines, {_LOG_STEP}")
 
 
-def authority_steps(
-    scene: Scene, carrier: int, authority: float | None, low: float | None
-) -> Iterator[Step]:
+def authority_steps(scene: Scene, carrier: int, authority: float | None, low: float | None) -> Iterator[Step]:
     """Return the authority of the control item that a leg or terminal carries."""
     layout, write = scene.layout, scene.write
     places = [place for place in scene.items_of(carrier) if layout.items.items[place].control]
