@@ -187,7 +187,7 @@ class Balance(Board):
         result = self._result(row)
         if result is not None:
             cells["margin"] = Cell(figures.pressure(result.margin, density))
-            cells["authority"] = Cell(plain_number(result.authority, 2))
+            cells["authority"] = Cell(f"{result.authority:.2f}" if result.authority is not None else NONE)
         if isinstance(result, TerminalResult):
             cells["excess"] = Cell(figures.pressure(result.excess, density))
         if row.judged is not None:
