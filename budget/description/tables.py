@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import unicodedata
 from collections.abc import Callable, Mapping
 from itertools import pairwise
@@ -70,7 +71,7 @@ def own_fitting(reading: Reading, id_: str, values: dict[str, Any], path: Path) 
     # A kind that needs parameters can't be meant by a name alone.
     if id_ in fitting_names() or id_ in kinds_by_name():
         reading.wrong("contradiction", f"{id_!r} is a fitting of the catalogue too; give one's own another name", path)
-    return OwnFitting(id_, values.get("k", float("nan")), values.get("source", ""))
+    return OwnFitting(id_, values.get("k", math.nan), values.get("source", ""))
 
 
 def device(reading: Reading, id_: str, values: dict[str, Any], path: Path) -> Device:
