@@ -19,26 +19,26 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from budget.description import Description, Finding, Level, Library, describe, read_text
-from budget.description.edits import (
-    AddTable,
-    CopyTable,
-    Edit,
-    EditError,
-    Literal,
-    MoveTable,
-    RemoveTable,
-    RenameKey,
-    SetValue,
-    Several,
-    Unset,
-    apply_to_text,
-)
 from budget.network import Budget, SectionResult, SourceResult, TerminalResult, evaluate
 from budget.storage import ChangedOnDisk, Stamp, StorageError, load_text, read_libraries, renew
 from budget.storage import save as write
 
 if TYPE_CHECKING:
     import pint
+
+    from budget.description.edits import (
+        AddTable,
+        CopyTable,
+        Edit,
+        EditError,
+        Literal,
+        MoveTable,
+        RemoveTable,
+        RenameKey,
+        SetValue,
+        Several,
+        Unset,
+    )
 
 __version__ = "0.1.0"
 
@@ -73,6 +73,15 @@ __all__ = [
 ]
 
 
+def __getattr__(name: str) -> Any:
+    """Read the edits when the first is asked for: few runs of the program need one."""
+    if name in __all__:
+        from budget.description import edits  # noqa: PLC0415
+
+        return getattr(edits, name)
+    raise AttributeError(f"module 'budget' has no attribute {name!r}")
+
+
 @dataclasses.dataclass(frozen=True, slots=True)
 class Run:
     """A run's text and the description that was read from it."""
@@ -101,6 +110,8 @@ def reads(text: str) -> Run:
 
 def apply(run: Run, edit: Edit) -> Run:
     """Return the run with an edit made to its text, and nothing else changed. Raises EditError."""
+    from budget.description.edits import apply_to_text  # noqa: PLC0415
+
     source = read_text(apply_to_text(run.text, edit))
     libraries = renew(source, run.path, run.libraries)
     return dataclasses.replace(run, text=source.text, description=describe(source, libraries), libraries=libraries)

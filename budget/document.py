@@ -6,13 +6,16 @@ import dataclasses
 from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path as FilePath
+from typing import TYPE_CHECKING
 
 from budget.description import Description, Finding, Level, Library, SourceText, describe, read_text
-from budget.description.edits import Edit, apply_to_text
 from budget.description.history import History
 from budget.network import Budget, evaluate
 from budget.report.located import Located, locate
 from budget.storage import Stamp, load_text, read_libraries, renew, save
+
+if TYPE_CHECKING:
+    from budget.description.edits import Edit
 
 
 @dataclass(frozen=True, slots=True)
@@ -88,10 +91,14 @@ class Document:
 
     def apply(self, edit: Edit, label: str, mark: object = None) -> Snapshot:
         """Apply an edit as one step that can be undone. Raises EditError, and nothing is changed then."""
+        from budget.description.edits import apply_to_text  # noqa: PLC0415 - a check makes none
+
         return self.replace_text(apply_to_text(self.snapshot.text, edit), label, mark)
 
     def preview(self, edit: Edit) -> Snapshot:
         """Return what an edit would lead to; the document stays as it is. Raises EditError."""
+        from budget.description.edits import apply_to_text  # noqa: PLC0415
+
         source = read_text(apply_to_text(self.snapshot.text, edit, verify=False))
         libraries = renew(source, self.path, self._libraries)
         return take(source, self.snapshot.revision, self.snapshot, libraries)

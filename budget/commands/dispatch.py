@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import difflib
+import gc
 import importlib
 import os
 import sys
@@ -56,6 +57,8 @@ COMMANDS: Mapping[str, Command] = {
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run a command; return its exit status. No exception leaves it."""
+    if argv is None:
+        gc.disable()  # a process of its own soon ends; the app turns collection on again after its first frame
     arguments = list(sys.argv[1:] if argv is None else argv)
     for stream in (sys.stdout, sys.stderr):
         if hasattr(stream, "reconfigure"):

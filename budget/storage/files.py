@@ -5,7 +5,6 @@ from __future__ import annotations
 import hashlib
 import os
 import stat
-import tempfile
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -140,6 +139,8 @@ def _must_stay(target: Path) -> bool:
 
 
 def _replace(target: Path, content: bytes) -> None:
+    import tempfile  # noqa: PLC0415 - with all it brings it is for saving alone
+
     handle, name = tempfile.mkstemp(prefix=f".{target.name[:100]}.", suffix=".saving", dir=target.parent)
     try:
         try:
