@@ -83,7 +83,7 @@ class DeviceResult:
     """The library that it stands in; "" for the run itself."""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class RunResult:
     """Pipe or duct of a section or a run-out."""
 
@@ -107,7 +107,7 @@ class RunResult:
     legs: tuple[LegResult, ...]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class SectionResult:
     """One section of the run."""
 
@@ -135,7 +135,7 @@ class LinkResult:
     items: tuple[ItemResult, ...]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class TerminalResult:
     """One terminal, with its run-out."""
 
@@ -171,7 +171,7 @@ class FluidResult:
     return_viscosity: float
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class SourceResult:
     """What the pump or fan must deliver."""
 
