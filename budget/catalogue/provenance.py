@@ -20,8 +20,3 @@ def how_known(known_from: str) -> str:
     if len(words) < len(parts):
         return known_from
     return words[0] if len(words) == 1 else f"{words[0]}, in part {' and '.join(words[1:])}"
-
-
-def from_memory(known_from: str) -> bool:
-    """Whether any part of a figure stands from memory, which is said wherever the figure is shown."""
-    return "memory" in known_from

@@ -290,8 +290,3 @@ KEYED: dict[str, dict[str, Spec]] = {
 """Tables keyed by ID or name."""
 
 TOP = ("format", "library", *SINGLE, *KEYED)
-
-
-def keys_of(table: str) -> tuple[str, ...]:
-    """Return the keys that a table knows."""
-    return tuple((SINGLE | KEYED).get(table, {}))

@@ -1,10 +1,10 @@
 """The run as a network: layout, flows and drops, circuits, duty, take-up, and what to look at."""
 
+from budget.description.schema import HEADINGS
 from budget.network.budget import Budget, evaluate
 from budget.network.computed import Computed, compute
 from budget.network.layout import lay_out
 from budget.network.results import (
-    HEADINGS,
     DeviceResult,
     FluidResult,
     ItemResult,

@@ -7,11 +7,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from budget.description.schema import HEADINGS
 from budget.network.arrays import Layout
 from budget.network.circuits import Circuits, find_circuits
 from budget.network.hydraulics import Hydraulics, flow_and_drops
 from budget.network.media import pascals
-from budget.network.results import HEADINGS, ItemResult
+from budget.network.results import ItemResult
 from budget.network.takeup import TakeUp, take_up
 
 

@@ -9,12 +9,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from budget.description import Source
+from budget.description.schema import HEADINGS
 from budget.network.arrays import DeviceUse
 from budget.network.computed import Computed
 from budget.network.layout import neck_area
 from budget.network.leakage import leakages, source_leakage
 from budget.network.media import Media, pascals
-from budget.network.results import HEADINGS, FluidResult, SourceResult
+from budget.network.results import FluidResult, SourceResult
 from budget.physics.power import (
     electrical_power,
     hydraulic_power,

@@ -21,7 +21,7 @@ from budget.description import (
     Terminal,
     error,
 )
-from budget.network import results
+from budget.description.schema import HEADINGS
 from budget.network.arrays import DeviceUse, Floats, Ints, Items, Terminals
 from budget.network.media import Media, pascals, volume
 from budget.network.topology import Leg, Topology
@@ -208,7 +208,7 @@ class EquipmentRows:
         rows["density"].append(density)
         rows["reference"].append(reference)
         rows["neck"].append(neck)
-        rows["heading"].append(results.HEADINGS.index(self._heading(item, carrier)))
+        rows["heading"].append(HEADINGS.index(self._heading(item, carrier)))
         self._items.append(item)
 
     def _is_broken(self, item: Item) -> bool:

@@ -17,6 +17,7 @@ from budget.physics.fittings import valve_drop
 from budget.physics.friction import friction_factor, pressure_gradient, regime, reynolds
 from budget.physics.junctions import junction_coefficients
 from budget.physics.power import velocity_pressure
+from budget.physics.terminals import extract_total, supply_total
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -342,7 +343,7 @@ def _terminal_drops(layout: Layout, mass: Floats) -> Floats:
     if static.any():
         neck_pv = velocity_pressure(terminals.density, flow / terminals.neck)
         part = terminals.static_drop * ratio
-        total = np.where(terminals.discharge, part + neck_pv, np.abs(part) - neck_pv)
+        total = np.where(terminals.discharge, supply_total(part, neck_pv), extract_total(part, neck_pv))
         drop = np.where(static, total, drop)
     drop = np.where(terminals.broken, np.nan, drop)
     return np.asarray(np.where(np.isnan(mass), np.nan, drop), dtype=np.float64)

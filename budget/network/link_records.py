@@ -4,9 +4,10 @@ from __future__ import annotations
 
 import math
 
+from budget.description.schema import HEADINGS
 from budget.network.arrays import Loss
 from budget.network.computed import Computed
-from budget.network.results import HEADINGS, ItemResult, LegResult, LinkResult, LossResult, RunResult
+from budget.network.results import ItemResult, LegResult, LinkResult, LossResult, RunResult
 from budget.physics.elbows import reynolds_factor
 from budget.physics.friction import REGIMES
 

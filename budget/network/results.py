@@ -10,9 +10,6 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
-HEADINGS = ("plant", "distribution", "terminal", "control", "balancing", "static")
-"""The headings under which the required pressure is spent."""
-
 Side = Literal["supply", "return", "discharge", "suction"]
 
 

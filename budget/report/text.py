@@ -8,6 +8,7 @@ from budget import __version__
 from budget.catalogue import CATALOGUE_VERSION
 from budget.description import Description, Level
 from budget.network import HEADINGS, Budget, SourceResult
+from budget.physics.power import sfp_class
 from budget.report.caution import CAUTION
 from budget.report.figures import NONE, Figures, plain_number
 from budget.report.ledger import devices, fittings, items, joints, ledger, libraries, terminals
@@ -77,7 +78,7 @@ def _summary(description: Description, result: SourceResult, figures: Figures, b
         ("hydraulic power", _power(result.hydraulic_power, description)),
         ("shaft power", _power(result.shaft_power, description)),
         ("electrical power", _power(result.electrical_power, description)),
-        ("specific power", "" if result.sfp is None else f"{plain_number(result.sfp, 4)} W/(m3/s)"),
+        ("specific power", _specific_power(result)),
         ("index terminal", ", ".join(map(plain, result.index)) or NONE),
         ("index circuit", "; ".join(_circuit(description, budget, result.id, terminal) for terminal in result.index)),
     ]
@@ -95,6 +96,14 @@ def _fluid(result: SourceResult, figures: Figures) -> str:
     other = "suction" if result.kind == "air" else "return"
     supply, back = leg(fluid.density, fluid.viscosity), leg(fluid.return_density, fluid.return_viscosity)
     return f"{plain(fluid.name)}, {supply}" + (f"; {other} {back}" if back != supply else "")
+
+
+def _specific_power(result: SourceResult) -> str:
+    """Spell the specific power; of a fan with its class."""
+    if result.sfp is None:
+        return ""
+    text = f"{plain_number(result.sfp, 4)} W/(m3/s)"
+    return f"{text}, {sfp_class(result.sfp)}" if result.kind == "air" else text
 
 
 def _power(value: float | None, description: Description) -> str:

@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 
 from budget.description.finding import Level
+from budget.description.schema import HEADINGS
 from budget.document import Snapshot
-from budget.network.results import HEADINGS, SourceResult
+from budget.network.results import SourceResult
 from budget.report.figures import Figures, share
 from budget.report.plain import plain
 from budget.screens.lines import Lines, Piece

@@ -61,13 +61,6 @@ class Lines(Widget):
                 spans = differing(old, new)
             self.refresh(*(Region(first, y, last - first, 1) for first, last in spans))
 
-    def wear(self, theme: Theme) -> None:
-        """Put on another theme."""
-        self.colours = theme
-        self._styles.clear()
-        self._painted.clear()
-        self.refresh()
-
     def style_of(self, roles: str) -> Style:
         """Return the style of a role, or of several joined, on the background of the text."""
         style = self._styles.get(roles)

@@ -10,8 +10,6 @@ from typing import Any
 
 from budget.description.finding import Level, Path
 from budget.description.schema import (
-    FITTING_USE,
-    ITEM,
     KEYED,
     SINGLE,
     Array,
@@ -183,13 +181,6 @@ def spec_of(path: Path) -> Spec | None:
         spec = keys.get(str(part)) if keys else None
         keys = spec.keys if isinstance(spec, Array | Table) else None
     return spec
-
-
-def keys_of_table(path: Path) -> tuple[str, ...]:
-    """Return every key that may be set in the table of a row."""
-    if len(path) == 4:
-        return tuple(FITTING_USE if path[2] == "fitting" else ITEM)
-    return tuple(KEYED.get(str(path[0]), {}))
 
 
 def objection(before: Snapshot, after: Snapshot, path: Path) -> str:

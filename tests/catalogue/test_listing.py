@@ -13,7 +13,7 @@ from budget.catalogue import (
 )
 from budget.catalogue.listing import KINDS, Row, aligned, rows
 from budget.catalogue.loader import load
-from budget.catalogue.provenance import from_memory, how_known
+from budget.catalogue.provenance import how_known
 
 
 def text(kind: str, name: str | None = None) -> str:
@@ -118,8 +118,6 @@ def test_how_known_in_words() -> None:
     assert how_known("read+memory") == "read in print or public data, in part from memory"
     assert how_known("read+library+memory").endswith("in part taken off a library and from memory")
     assert how_known("measured on site") == "measured on site"
-    assert from_memory("read+memory")
-    assert not from_memory("library")
 
 
 def test_files_are_read_once_and_a_missing_one_is_an_error() -> None:

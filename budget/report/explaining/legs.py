@@ -14,6 +14,7 @@ from budget.network import LegResult, LossResult
 from budget.network.media import Medium
 from budget.physics.elbows import reynolds_factor
 from budget.physics.friction import LAMINAR_LIMIT, TURBULENT_LIMIT, colebrook, laminar_factor
+from budget.physics.shapes import heyt_diaz, huebscher
 from budget.physics.smooth import smooth_step
 from budget.report.explaining.scene import Scene
 from budget.report.explaining.writing import Step, Writer, calculation, factor, names, number, product, said
@@ -57,6 +58,10 @@ def cross_section(write: Writer, geometry: Geometry | None, line: Line | None) -
         numbers = f"4 x {write.area(area)} / (pi x {a} + 2 x ({b} - {a}))"
     diameter = write.of(4.0 * area / perimeter, Dimension.LENGTH, small=True)
     yield calculation("hydraulic diameter", formula, numbers, diameter)
+    equal = huebscher(width, height) if geometry.shape == "rectangular" else heyt_diaz(width, height)
+    source = "Huebscher (1948)" if geometry.shape == "rectangular" else "Heyt and Diaz (1975)"
+    shown = write.of(float(equal), Dimension.LENGTH, small=True)
+    yield Step("round duct of equal friction", result=shown, source=f"for information, no drop rests on it; {source}")
 
 
 def bore_source(line: Line | None) -> str:
