@@ -131,7 +131,8 @@ def _legs(run: Computed) -> Iterator[Finding]:
         for leg in _worst(run, wrong, values if side == "above" else -values):
             owner, _ = _owner(run, leg)
             word = "gradient" if code == "gradient" else "velocity"
-            text = f"{word} {{0}} is {side} its limit, {{1}}"
+            on = "" if run.layout.legs.first[leg] else f" of its {run.layout.topology.legs[leg].side} leg"
+            text = f"{word} {{0}}{on} is {side} its limit, {{1}}"
             yield warning(
                 code, text, _size_path(owner), (float(values[leg]), dimension), (float(limit[leg]), dimension)
             )
