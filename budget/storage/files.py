@@ -1,15 +1,21 @@
-"""Reading a run's file, and saving it whole or not at all."""
+"""Reading a run's file, looking whether somebody changed it, and saving it whole or not at all."""
 
 from __future__ import annotations
 
 import hashlib
 import os
 import stat
+from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Literal
 
 from budget.description import read_bytes
 from budget.description.source import LARGEST_FILE, Source
+from budget.storage import writing
+
+What = Literal["same", "changed", "gone", "there"]
+"""What became of a file since it was read; "there": a file stands where none was expected."""
 
 
 class StorageError(Exception):
@@ -17,7 +23,12 @@ class StorageError(Exception):
 
 
 class ChangedOnDisk(StorageError):  # noqa: N818 - named after what happened
-    """The file was changed by somebody else since it was read."""
+    """The file is not what it was when it was read, or a file stands where none was expected."""
+
+    def __init__(self, message: str, what: What) -> None:
+        """Say what happened, in a sentence and in a word."""
+        super().__init__(message)
+        self.what = what
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,6 +40,19 @@ class Stamp:
     size: int
     modified: int
     digest: str
+
+
+@dataclass(frozen=True, slots=True)
+class Look:
+    """What is on disk now, beside what was read or written last."""
+
+    what: What
+    source: Source | None = None
+    """The text there, where it is another one that can be read."""
+    stamp: Stamp | None = None
+    """That of the bytes there; None where there are none that can be read."""
+    why: str = ""
+    """Why what is there can't be read."""
 
 
 def load(path: Path) -> tuple[bytes, Stamp]:
@@ -61,24 +85,59 @@ def load_text(path: Path) -> tuple[Source, Stamp]:
     return source, stamp
 
 
-def save(path: Path, content: bytes, stamp: Stamp | None) -> Stamp:
+def look(path: Path, stamp: Stamp | None) -> Look:
+    """Look whether a file is still what it was when it was read or written last. Nothing is raised.
+
+    Other times or another place on disk with the same bytes (a touch, a checkout of the same version) are no change.
+    """
+    try:
+        status = path.stat()
+    except OSError as wrong:
+        if isinstance(wrong, FileNotFoundError | NotADirectoryError):
+            return Look("gone" if stamp is not None else "same")
+        return Look("changed", why=f"{path} could not be looked at: {_reason(wrong)}")
+    if stamp is not None and _outside(status) == (stamp.device, stamp.inode, stamp.size, stamp.modified):
+        return Look("same", stamp=stamp)
+    try:
+        content, found = load(path)
+    except StorageError as wrong:
+        return Look("changed", why=str(wrong))
+    if stamp is not None and found.digest == stamp.digest:
+        return Look("same", stamp=found)
+    source = read_bytes(content)
+    if source.data is None and not source.text:
+        return Look("changed", stamp=found, why=f"{path} could not be read: {source.findings[0].message}")
+    return Look("changed" if stamp is not None else "there", source, found)
+
+
+def save(
+    path: Path,
+    content: bytes,
+    stamp: Stamp | None,
+    *,
+    over: bool = False,
+    keep: Callable[[], object] = lambda: None,
+) -> Stamp:
     """Write a file's bytes, so that it holds either the old or the new ones whole. Returns what was written.
 
-    `stamp` is that of the bytes on disk as they were read last, None for a new file or to write over whatever is there.
-    The bytes must be TOML. Raises ChangedOnDisk where other bytes are on disk by now, StorageError where it can't be
-    written; the old file is untouched then.
+    `stamp` is that of the bytes on disk as they were read last, None where there must be no file yet; with `over`
+    whatever is there is written over. The bytes must be TOML. `keep` is called when nothing stands in the way of
+    writing any more, to put what is written in a safe place as well.
+
+    Raises ChangedOnDisk where other bytes are on disk by now, StorageError where it can't be written; the old file is
+    untouched then.
     """
     source = read_bytes(content)
     if source.data is None:
         raise StorageError(f"{path} was not written: {source.findings[0].message}")
     target = _real(path)
-    if stamp is not None:
+    if not over:
         _check_unchanged(target, stamp)
+    keep()
     try:
-        if _must_stay(target):
-            _write_in_place(target, content)
-        else:
-            _replace(target, content)
+        writing.put(target, content, new=stamp is None and not over)
+    except FileExistsError as taken:
+        raise _there(target) from taken
     except OSError as wrong:
         raise StorageError(f"{path} could not be written: {_reason(wrong)}") from wrong
     written, found = load(target)
@@ -88,8 +147,16 @@ def save(path: Path, content: bytes, stamp: Stamp | None) -> Stamp:
 
 
 def _stamp(status: os.stat_result, content: bytes) -> Stamp:
-    digest = hashlib.sha256(content).hexdigest()
-    return Stamp(status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns, digest)
+    return Stamp(*_outside(status), digest_of(content))
+
+
+def digest_of(content: bytes) -> str:
+    """Return what identifies bytes: their SHA-256."""
+    return hashlib.sha256(content).hexdigest()
+
+
+def _outside(status: os.stat_result) -> tuple[int, int, int, int]:
+    return status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns
 
 
 def _reason(wrong: OSError) -> str:
@@ -110,102 +177,16 @@ def _real(path: Path) -> Path:
     return target
 
 
-def _check_unchanged(target: Path, stamp: Stamp) -> None:
-    try:
-        status = target.stat()
-    except OSError as wrong:
-        raise ChangedOnDisk(f"{target} is gone; save under another name, or write it anew") from wrong
-    if (status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns) == (
-        stamp.device,
-        stamp.inode,
-        stamp.size,
-        stamp.modified,
-    ):
-        return
-    _, found = load(target)
-    if found.digest != stamp.digest:
-        raise ChangedOnDisk(f"{target} was changed on disk since it was opened; reload, or save under another name")
+def _check_unchanged(target: Path, stamp: Stamp | None) -> None:
+    seen = look(target, stamp)
+    if stamp is None and seen.what != "same":
+        raise _there(target)
+    if seen.what == "gone":
+        raise ChangedOnDisk(f"{target} is gone; save under another name, or write it anew", "gone")
+    if seen.what == "changed":
+        message = f"{target} was changed on disk since it was opened; reload, or save under another name"
+        raise ChangedOnDisk(message, "changed")
 
 
-def _must_stay(target: Path) -> bool:
-    """Whether the file can't be replaced by another one: hard links, a folder not writable, an owner that is lost."""
-    if not target.exists():
-        return False
-    status = target.stat()
-    keeps_owner = os.geteuid() == 0 or (
-        os.geteuid() == status.st_uid and status.st_gid in {os.getegid(), *os.getgroups()}
-    )
-    return status.st_nlink > 1 or not keeps_owner or not os.access(target.parent, os.W_OK | os.X_OK)
-
-
-def _replace(target: Path, content: bytes) -> None:
-    import tempfile  # noqa: PLC0415 - with all it brings it is for saving alone
-
-    handle, name = tempfile.mkstemp(prefix=f".{target.name[:100]}.", suffix=".saving", dir=target.parent)
-    try:
-        try:
-            _write(handle, content)
-            if target.exists():
-                status, own = target.stat(), os.fstat(handle)
-                if (status.st_uid, status.st_gid) != (own.st_uid, own.st_gid):
-                    os.fchown(handle, status.st_uid, status.st_gid)
-                os.fchmod(handle, stat.S_IMODE(status.st_mode))
-            else:
-                os.fchmod(handle, 0o666 & ~_umask())
-            os.fsync(handle)
-        finally:
-            os.close(handle)
-        Path(name).replace(target)
-    except BaseException:
-        Path(name).unlink(missing_ok=True)
-        raise
-    _sync_folder(target.parent)
-
-
-def _write_in_place(target: Path, content: bytes) -> None:
-    """Write over a file's bytes; where that fails the old ones, which have their space, are put back."""
-    handle = os.open(target, os.O_RDWR)
-    try:
-        with os.fdopen(handle, "rb", closefd=False) as stream:
-            old = stream.read()
-        try:
-            if hasattr(os, "posix_fallocate") and content:
-                os.posix_fallocate(handle, 0, len(content))
-            _overwrite(handle, content)
-        except BaseException:
-            _overwrite(handle, old)
-            raise
-    finally:
-        os.close(handle)
-
-
-def _overwrite(handle: int, content: bytes) -> None:
-    os.lseek(handle, 0, os.SEEK_SET)
-    _write(handle, content)
-    os.ftruncate(handle, len(content))
-    os.fsync(handle)
-
-
-def _write(handle: int, content: bytes) -> None:
-    left = memoryview(content)
-    while left:
-        left = left[os.write(handle, left) :]
-
-
-def _umask() -> int:
-    mask = os.umask(0)
-    os.umask(mask)
-    return mask
-
-
-def _sync_folder(folder: Path) -> None:
-    try:
-        handle = os.open(folder, os.O_RDONLY)
-    except OSError:
-        return
-    try:
-        os.fsync(handle)
-    except OSError:
-        pass  # some file systems can't sync a folder; the file itself is on disk
-    finally:
-        os.close(handle)
+def _there(target: Path) -> ChangedOnDisk:
+    return ChangedOnDisk(f"{target} exists already; save under another name, or write over it", "there")
