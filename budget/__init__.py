@@ -120,11 +120,11 @@ def apply(run: Run, edit: Edit) -> Run:
 def save(run: Run, path: str | Path, *, over: bool = False) -> Run:
     """Write a run to its file, whole or not at all.
 
-    A run that was read from a file is not written over what somebody else has put there since, unless `over`: then
-    ChangedOnDisk is raised. Raises StorageError where it can't be written.
+    Nothing is written over what somebody else has put there since the run was read, nor over another file that exists:
+    ChangedOnDisk is raised then, unless `over`. Raises StorageError where it can't be written.
     """
     same = _real(path) == run.path
-    stamp = write(Path(path), run.text.encode("utf-8"), run.stamp if same and not over else None)
+    stamp = write(Path(path), run.text.encode("utf-8"), run.stamp if same else None, over=over)
     source = read_text(run.text)
     libraries = read_libraries(source, Path(path))
     description = run.description if libraries == run.libraries else describe(source, libraries)

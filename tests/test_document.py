@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 
 import pytest
@@ -286,6 +287,156 @@ def test_what_somebody_else_wrote_is_written_over_only_when_asked(file: Path) ->
     document.save(over=True)
     assert '"20 m"' in file.read_text()
     assert not is_dirty(document)
+
+
+# What others do to the file
+
+
+def test_a_document_without_changes_follows_its_file_one_step_forth(file: Path) -> None:
+    document = Document.open(file)
+    other = TEXT.replace('"10 m"', '"11 m"')
+    file.write_text(other)
+    assert document.meet(document.look(), "here")
+    assert document.snapshot.text == other
+    assert not is_dirty(document)
+    assert document.undo() == "here"
+    assert document.snapshot.text == TEXT
+    assert is_dirty(document)
+    document.save()
+    assert file.read_text() == TEXT
+
+
+def test_a_changed_document_keeps_its_changes_and_tells_of_the_file(file: Path) -> None:
+    document = Document.open(file)
+    document.apply(SetValue(LENGTH, "20 m"), "length of M1")
+    mine = document.snapshot.text
+    file.write_text(TEXT.replace('"10 m"', '"11 m"'))
+    seen = document.look()
+    assert not document.meet(seen)
+    assert document.snapshot.text == mine
+    assert document.on_disk.what == "changed"
+    with pytest.raises(ChangedOnDisk):
+        document.save()
+    document.acknowledge(seen)
+    assert document.saved_text == file.read_text()
+    document.save()
+    assert file.read_text() == mine
+
+
+def test_only_what_was_seen_is_written_over(file: Path) -> None:
+    document = Document.open(file)
+    document.apply(SetValue(LENGTH, "20 m"), "length of M1")
+    file.write_text(TEXT.replace('"10 m"', '"11 m"'))
+    document.acknowledge(document.look())
+    file.write_text(TEXT.replace('"10 m"', '"12 m"'))
+    with pytest.raises(ChangedOnDisk):
+        document.save()
+    assert '"12 m"' in file.read_text()
+
+
+def test_what_is_on_disk_can_be_taken_and_the_own_text_is_one_step_back(file: Path) -> None:
+    document = Document.open(file)
+    document.apply(SetValue(LENGTH, "20 m"), "length of M1")
+    mine = document.snapshot.text
+    file.write_text(TEXT.replace('"10 m"', '"11 m"'))
+    assert document.take_from_disk(document.look())
+    assert not is_dirty(document)
+    document.undo()
+    assert document.snapshot.text == mine
+
+
+def test_the_same_change_on_both_sides_is_no_conflict(file: Path) -> None:
+    document = Document.open(file)
+    document.apply(SetValue(LENGTH, "20 m"), "length of M1")
+    file.write_text(document.snapshot.text)
+    assert not document.meet(document.look())
+    assert document.on_disk.what == "same"
+    assert not is_dirty(document)
+
+
+def test_a_touch_is_no_change(file: Path) -> None:
+    document = Document.open(file)
+    os.utime(file, (1, 1))
+    seen = document.look()
+    assert seen.what == "same"
+    document.meet(seen)
+    assert document.stamp == seen.stamp
+    assert document.stamp is not None
+    assert document.stamp.modified == 1_000_000_000
+
+
+def test_a_file_that_is_gone_makes_the_document_unsaved_until_it_is_written_anew(file: Path) -> None:
+    document = Document.open(file)
+    file.unlink()
+    document.meet(document.look())
+    assert document.on_disk.what == "gone"
+    assert is_dirty(document)
+    with pytest.raises(ChangedOnDisk) as raised:
+        document.save()
+    assert raised.value.what == "gone"
+    document.acknowledge(document.look())
+    document.save()
+    assert file.read_text() == TEXT
+    assert not is_dirty(document)
+
+
+def test_a_file_that_comes_back_as_it_was_is_no_change(file: Path) -> None:
+    document = Document.open(file)
+    file.unlink()
+    document.meet(document.look())
+    file.write_text(TEXT)
+    document.meet(document.look())
+    assert not is_dirty(document)
+
+
+def test_what_can_t_be_read_any_more_is_told_and_not_taken(file: Path) -> None:
+    document = Document.open(file)
+    file.write_bytes(b"\xff\xfe")
+    assert not document.meet(document.look())
+    assert document.snapshot.text == TEXT
+    assert "UTF-8" in document.on_disk.why
+
+
+def test_another_file_that_exists_is_not_written_over(file: Path, tmp_path: Path) -> None:
+    document = Document.open(file)
+    (tmp_path / "other.toml").write_text("format = 1\n")
+    with pytest.raises(ChangedOnDisk) as raised:
+        document.save(tmp_path / "other.toml")
+    assert raised.value.what == "there"
+    assert document.path == file
+    assert (tmp_path / "other.toml").read_text() == "format = 1\n"
+
+
+def test_what_is_changed_while_it_is_saved_stays_unsaved(file: Path) -> None:
+    document = Document.open(file)
+    document.apply(SetValue(LENGTH, "20 m"), "length of M1")
+    saving = document.prepare()
+    document.apply(SetValue(LENGTH, "30 m"), "length of M1")
+    document.saved(saving, saving.write())
+    assert '"20 m"' in file.read_text()
+    assert is_dirty(document)
+    document.undo()
+    assert not is_dirty(document)
+
+
+def test_of_a_document_that_is_read_only_nothing_is_changed(file: Path) -> None:
+    document = Document.open(file)
+    document.read_only = "it is open elsewhere"
+    with pytest.raises(EditError, match="open elsewhere"):
+        document.apply(SetValue(LENGTH, "20 m"), "length of M1")
+    with pytest.raises(EditError, match="open elsewhere"):
+        document.replace_text("", "typed")
+    assert document.snapshot.text == TEXT
+    file.write_text(TEXT.replace('"10 m"', '"11 m"'))
+    assert document.meet(document.look())
+
+
+def test_half_a_character_is_refused_where_it_stands(file: Path) -> None:
+    document = Document.open(file)
+    document.replace_text(TEXT + "# \ud800\n", "typed")
+    with pytest.raises(StorageError, match=f"line {TEXT.count(chr(10)) + 1} holds half a character"):
+        document.save()
+    assert file.read_text() == TEXT
 
 
 def test_a_text_that_can_t_be_read_is_not_saved(file: Path) -> None:

@@ -12,6 +12,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--ascii", action="store_const", const=True, help="draw with plain characters, for a terminal without UTF-8"
     )
+    parser.add_argument("--read-only", action="store_true", help="open it to look at; nothing can be changed")
     parser.add_argument("--mouse", action="store_const", const=True, help="let the mouse work in the app")
 
 
@@ -19,4 +20,4 @@ def run(options: argparse.Namespace) -> int:
     """Open the app; return its exit status. What is not said here is as the settings say."""
     from budget import screens  # noqa: PLC0415 - help and completion must not wait for the app
 
-    return screens.run(Path(options.file), ascii=options.ascii, mouse=options.mouse) or 0
+    return screens.run(Path(options.file), ascii=options.ascii, mouse=options.mouse, read_only=options.read_only) or 0

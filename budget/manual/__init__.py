@@ -20,6 +20,7 @@ TOPICS = (
     "balancing",
     "flows",
     "keys",
+    "saving-and-recovery",
     "config",
     "accuracy-and-caution",
 )

@@ -13,7 +13,7 @@ from budget.screens.terminal import objection_here, prepare
 __all__ = ["run"]
 
 
-def run(path: Path, *, ascii: bool | None = None, mouse: bool | None = None) -> int:  # noqa: A002
+def run(path: Path, *, ascii: bool | None = None, mouse: bool | None = None, read_only: bool = False) -> int:  # noqa: A002
     """Open a run in the app and stay in it until the user leaves; return the exit code.
 
     `ascii` and `mouse` overrule the user's config. 2 where the terminal or the file can't be used, with the
@@ -29,4 +29,5 @@ def run(path: Path, *, ascii: bool | None = None, mouse: bool | None = None) -> 
     gc.disable()  # until the first frame: nothing that is imported or read before it is garbage
     from budget.screens.opening import open_app  # noqa: PLC0415 - the toolkit reads its switches when it is imported
 
-    return open_app(path, config, problems, ascii_only=ascii_only, mouse=config.mouse if mouse is None else mouse)
+    mouse = config.mouse if mouse is None else mouse
+    return open_app(path, config, problems, ascii_only=ascii_only, mouse=mouse, read_only=read_only)

@@ -101,6 +101,9 @@ ACTIONS: tuple[Action, ...] = (
     Action("back", "Back to the ledger", ("escape",), EVERYWHERE, "back"),
     Action("save", "Save", ("ctrl+s",), EVERYWHERE, "save"),
     Action("save_as", "Save under another name", (), SCREENS),
+    Action("show_changes", "Changes: what differs from the file on disk", ("D",), SCREENS, "changes"),
+    Action("recover", "Recover unsaved changes that were left behind", (), SCREENS),
+    Action("edit_outside", "Edit the file in your own editor: $VISUAL or $EDITOR", ("ctrl+o",), EVERYWHERE, "editor"),
     Action("suspend", "Suspend to the shell", ("ctrl+z",), SCREENS),
     Action("quit", "Quit", ("ctrl+q",), (*EVERYWHERE, "list", "form", "entry")),
     Action("choose", "Take what is marked", ("enter",), ("list", "findings"), "take", 1),
@@ -116,6 +119,13 @@ ACTIONS: tuple[Action, ...] = (
 )
 
 BY_ID: Mapping[str, Action] = {action.id: action for action in ACTIONS}
+
+CHANGING = frozenset({
+    "edit", "set", "pick", "pick_size", "pick_fitting", "pick_takeoff", "pick_family", "pick_transition", "add_after",
+    "add_before", "add_beneath", "add_terminal", "duplicate", "move", "earlier", "later", "delete", "rename",
+    "propose_kv", "apply_text", "edit_outside",
+})  # fmt: skip
+"""What changes the run, and is refused where that is open read-only."""
 
 LETTERS: Mapping[str, str] = {"h": "left", "j": "down", "k": "up", "l": "right"}
 """Letters for movement, where the config asks for them."""

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import asyncio
+import contextlib
 import gc
+import sys
 from typing import TYPE_CHECKING, ClassVar
 
 from textual import events
@@ -15,8 +17,8 @@ from budget.description.edits import Edit
 from budget.description.finding import Path
 from budget.document import Document, Snapshot
 from budget.report.plain import plain
-from budget.screens import choosing, entering, turning
-from budget.screens.actions import Place
+from budget.screens import choosing, entering, recovering, turning, unsaved, watching
+from budget.screens.actions import CHANGING, Place
 from budget.screens.beside import Beside
 from budget.screens.board import Board
 from budget.screens.budget_line import BudgetLine, change_of
@@ -30,14 +32,25 @@ from budget.screens.rows import View
 from budget.screens.themes import Theme
 from budget.screens.toolkit import AsciiFilter, FrugalScreen, SafeFilter, widget_theme
 from budget.screens.trials import Trials
+from budget.storage.keeping import Keeper
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    import subprocess
+    from collections.abc import Callable, Sequence
+    from pathlib import Path as FilePath
 
+    from textual.timer import Timer
     from textual.widget import Widget
 
+    from budget.document import Saving
     from budget.screens.manual import ManualScreen
     from budget.screens.text import TextScreen
+
+INTERNAL = 70
+"""Exit status where the program itself failed."""
+
+TEXT_PAUSE = 1.0
+"""Seconds without a letter after which what is written on the Text screen is kept."""
 
 WIDE = 120
 """Columns from which the row detail stands beside the ledger."""
@@ -76,6 +89,17 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.wide = False
         self.beside_width = 0
         self.change: tuple[str, str] = ("", "")
+        self.keeper = Keeper(unsaved.work_of(document))
+        self.saving: Saving | None = None
+        self.after_saving: Callable[[], object] | None = None
+        self.looking = False
+        self.discarding = False
+        self.pending = 0
+        self.told_problem = ""
+        self.child: subprocess.Popen[bytes] | None = None
+        self.failure: BaseException | None = None
+        self.failure_log: FilePath | None = None
+        self.failing: Callable[[], object] = lambda: None
         self.animation_level = "none"
         self._own_filters: tuple[LineFilter, ...] = (SafeFilter(), AsciiFilter()) if ascii_only else (SafeFilter(),)
         self._running_loop: asyncio.AbstractEventLoop | None = None
@@ -91,6 +115,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self._form: Form | None = None
         self._text: TextScreen | None = None
         self._manual: ManualScreen | None = None
+        self._text_timer: Timer | None = None
 
     def get_default_screen(self) -> FrugalScreen:
         """Paint on a screen that sends no more than it must."""
@@ -109,10 +134,17 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
         self.show(self.document.snapshot)
         self.tell()
-        self.call_after_refresh(gc.enable)
+        self.call_after_refresh(self._begin)
         if self.notes:
             more = f" (and {len(self.notes) - 1} more)" if len(self.notes) > 1 else ""
             self.say(plain(self.notes[0]) + more, "warning")
+
+    def _begin(self) -> None:
+        """Begin with what can wait for the first frame."""
+        gc.enable()
+        self.keeper.start()
+        recovering.look(self)
+        self.set_interval(watching.EVERY, lambda: watching.look(self))
 
     # What is in front
 
@@ -199,12 +231,17 @@ class BudgetApp(App[int], inherit_bindings=False):
         change = change_of(before, snapshot, self.ledger.source) if before is not None else self.change
         if snapshot is self.document.snapshot:
             self.change = change
+            unsaved.note(self)
         self._show_budget(view, change)
 
     def _show_budget(self, view: View, change: tuple[str, str]) -> None:
         source = self.ledger.source
         changed = change[1] if change[0] == source else ""
-        self.budget_line.show(view, source, changed, modified=self.document.dirty)
+        self.budget_line.show(view, source, changed, unsaved.state(self.document, self.keeper.problem))
+
+    def tell_state(self) -> None:
+        """Tell at the head how the run stands to its file."""
+        self._show_budget(self.ledger.view, self.change)
 
     def apply(self, edit: Edit, label: str, path: Path | None = None) -> None:
         """Put an edit into the document as one undo step; the cursor goes to `path`. Raises EditError."""
@@ -247,7 +284,10 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.do(action)
 
     def do(self, action: str) -> None:
-        """Do an action by its name."""
+        """Do an action by its name, unless it would change what is open read-only."""
+        if self.document.read_only and action in CHANGING:
+            self.say(f"{self.document.read_only}; it can be saved under another name", "note")
+            return
         DOINGS[action](self)
 
     def on_paste(self, event: events.Paste) -> None:
@@ -282,10 +322,68 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.wide = event.size.width >= WIDE
         turning.lay_out(self, event.size.width)
 
+    def on_app_focus(self) -> None:
+        """Look at the file when somebody comes back to the window."""
+        watching.look(self)
+
+    def on_text_area_changed(self) -> None:
+        """Have kept what is written on the Text screen, when the letters pause."""
+        if self._text_timer is not None:
+            self._text_timer.stop()
+        self._text_timer = self.set_timer(TEXT_PAUSE, lambda: turning.text_written(self))
+
+    # The file
+
+    @property
+    def written(self) -> str | None:
+        """What is written on the Text screen and is not in the design yet."""
+        return self._text.text if self._text is not None and self.at == "text" and self._text.changed else None
+
+    def reload_text(self) -> None:
+        """Let the Text screen show what is in the design, where it is in front."""
+        if self._text is not None and self.at == "text":
+            self._text.open(self.document.snapshot.text, self.ledger.row)
+
+    def keep_now(self) -> bool:
+        """Write what is unsaved for recovery at once; return whether it is safe."""
+        return self.keeper.keep_now()
+
+    def look_again(self) -> None:
+        """Look at once whether the file was changed."""
+        watching.look(self, anyway=True)
+
+    # The end
+
     def close_with(self, code: int) -> None:
         """End from a signal handler or another thread."""
+        if self.child is not None:
+            with contextlib.suppress(OSError):
+                self.child.terminate()
         if self._running_loop is not None:
             self._running_loop.call_soon_threadsafe(self.exit, code)
+
+    def _handle_exception(self, error: Exception) -> None:
+        """End after an unexpected error: what is unsaved is kept, what happened goes to the log."""
+        if self._exception is None:
+            self._exception = error
+            self._exception_event.set()
+        self.fail(error)
+
+    def panic(self, *_renderables: object) -> None:
+        """End after an error of the toolkit, which has told it on the screen otherwise."""
+        self.fail(sys.exc_info()[1] or RuntimeError("the terminal could not be read any more"))
+
+    def fail(self, error: BaseException) -> None:
+        """Keep what is unsaved, write the log, and close."""
+        self._return_code = INTERNAL
+        if self.failure is None:
+            from budget.storage.faults import record_fault  # noqa: PLC0415 - seldom, if ever
+
+            self.failing()
+            self.failure = error
+            self.keep_now()
+            self.failure_log = record_fault(error, "budget edit")
+        self._close_messages_no_wait()
 
     def get_line_filters(self) -> Sequence[LineFilter]:
         """Whatever a widget paints goes through these, last through our own."""

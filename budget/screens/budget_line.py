@@ -30,11 +30,14 @@ class BudgetLine(Lines):
         self.view = view
         self.source = source
         self.change = ""
-        self.modified = False
+        self.state = ("saved", "faint")
 
-    def show(self, view: View, source: str, change: str, *, modified: bool) -> None:
-        """Show the budget of a source, by how much the last edit changed it, and whether the file is behind."""
-        self.view, self.source, self.change, self.modified = view, source, change, modified
+    def show(self, view: View, source: str, change: str, state: tuple[str, str]) -> None:
+        """Show the budget of a source, by how much the last edit changed it, and how the run stands to its file.
+
+        `state` is a few words and the role of their style.
+        """
+        self.view, self.source, self.change, self.state = view, source, change, state
         self.repaint()
 
     def line(self, y: int, width: int) -> Iterable[Piece]:
@@ -59,7 +62,7 @@ class BudgetLine(Lines):
                 yield f"  {count} {level.value}{'s' if count > 1 else ''}", level.value
         if not self.view.snapshot.readable:
             yield "  the text is not TOML", "error"
-        yield ("  not saved" if self.modified else "  saved"), "faint"
+        yield f"  {self.state[0]}", self.state[1]
         description = self.view.snapshot.description
         source = description.sources.get(self.source)
         titles = (source.title if source else "", description.design.title)

@@ -47,7 +47,8 @@ class Offer:
 
     `more` computes further cells of the entries in view: all at once, one by one between the keys, or of the marked
     one alone when no key comes, by the `pace`; `beneath` tells more of the marked entry in paragraphs under the list;
-    `write` makes an entry of what was typed, where that is allowed; `step` says what left and right do with an entry.
+    `write` makes an entry of what was typed, where that is allowed; `step` says what left and right do with an entry;
+    `leave` is done where the list is left without taking one.
     """
 
     title: str
@@ -77,7 +78,8 @@ class Chooser(Lines):
         self.kept: list[Choice] = []
         self.cursor = 0
         self.top = 0
-        self._more: dict[int, tuple[str, ...]] = {}
+        # With the entry itself, so that no other is given its number.
+        self._more: dict[int, tuple[Choice, tuple[str, ...]]] = {}
         self._waiting: Timer | None = None
         self._shaped: tuple[list[int], list[bool]] | None = None
 
@@ -102,6 +104,11 @@ class Chooser(Lines):
     def page(self) -> int:
         """Entries on a page."""
         return max(1, self.size.height - HEAD - self._tail)
+
+    @property
+    def looking(self) -> bool:
+        """Whether further cells are still to be computed."""
+        return self._waiting is not None
 
     @property
     def _tail(self) -> int:
@@ -179,10 +186,15 @@ class Chooser(Lines):
         """Spell a line of what is told of the marked entry; where there is more, the last line ends in an ellipsis."""
         if self.offer.beneath is None or self.marked is None:
             return
-        lines = [line for text in self.offer.beneath(self.marked.value) for line in wrapped(text, width - 2)]
+        room = width - 2
+        lines = [
+            line
+            for text in self.offer.beneath(self.marked.value)
+            for line in ([text] if width_of(text) <= room else wrapped(text, room))
+        ]
         if y < len(lines):
             more = y == self._tail - 1 and len(lines) > self._tail
-            yield f" {clip(lines[y] + '  ' + lines[y + 1], width - 2) if more else lines[y]}", "faint"
+            yield f" {clip(lines[y] + '  ' + lines[y + 1], room) if more else lines[y]}", "faint"
 
     @staticmethod
     def _cells(cells: Sequence[str], widths: Sequence[int], right: Sequence[bool], roles: str) -> Iterator[Piece]:
@@ -214,9 +226,11 @@ class Chooser(Lines):
     def _all_cells(self, choice: Choice) -> tuple[str, ...]:
         if self.offer.more is None:
             return choice.cells
-        found = self._more.get(id(choice))
+        known = self._more.get(id(choice))
+        found = known[1] if known is not None else None
         if found is None and self.offer.pace == "at once":
-            found = self._more[id(choice)] = self.offer.more(choice.value)
+            found = self.offer.more(choice.value)
+            self._more[id(choice)] = (choice, found)
         elif found is None:
             found = ("",) * (len(self.offer.heads) - len(choice.cells))
             if choice is self.marked or self.offer.pace == "one by one":
@@ -230,12 +244,13 @@ class Chooser(Lines):
 
     def _look(self) -> None:
         """Compute the further cells of one entry, the marked one first, and go on with the next if there is time."""
+        self._waiting = None
         more, view = self.offer.more, self.kept[self.top : self.top + self.page]
         one_by_one = self.offer.pace == "one by one"
         wanted = [c for c in (self.marked, *(view if one_by_one else ())) if c is not None and id(c) not in self._more]
         if not self.display or more is None or not wanted:
             return
-        self._more[id(wanted[0])] = more(wanted[0].value)
+        self._more[id(wanted[0])] = (wanted[0], more(wanted[0].value))
         self.repaint()
         if one_by_one and wanted[1:]:
             self._look_later(BREATH)

@@ -79,9 +79,12 @@ def leave(app: BudgetApp) -> None:
     if app.at == "form" and app.form.sheet is not None:
         app.form.sheet.leave()
         return
+    offer = app.choosers["list"].offer if app.at == "list" else None
     app.turn_to(app.returns_to)
     app.show(app.document.snapshot)
     app.tell()
+    if offer is not None and offer.leave is not None:
+        offer.leave()
 
 
 def write(app: BudgetApp, key: str, character: str | None) -> bool:

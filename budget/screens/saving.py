@@ -1,20 +1,24 @@
-"""Saving the run, and the way out where it is not saved."""
+"""Saving the run, beside the keyboard, and the way out where it is not saved."""
 
 from __future__ import annotations
 
+import dataclasses
 from collections.abc import Callable
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from budget.report.plain import plain
-from budget.screens.chooser import Choice, Offer
+from budget.screens import conflict, unsaved
+from budget.screens.asking import ask
+from budget.screens.background import in_background
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
 from budget.screens.writing import WritingError
-from budget.storage import ChangedOnDisk, StorageError
+from budget.storage import ChangedOnDisk, Stamp, StorageError, look
 
 if TYPE_CHECKING:
-    from budget.document import Snapshot
+    from budget.document import Saving, Snapshot
     from budget.screens.app import BudgetApp
 
 Doing = Callable[[], object]
@@ -22,10 +26,14 @@ Doing = Callable[[], object]
 
 def save(app: BudgetApp, then: Doing | None = None) -> None:
     """Write the run to its file, then do what comes next; where the file was changed by others, ask."""
-    if app.document.path is None:
+    if app.document.read_only:
+        ask(app, app.document.read_only, (("save under another name", lambda: save_as(app, then)),))
+    elif app.document.path is None:
         save_as(app, then)
-        return
-    _write(app, app.document.path, then, over=False)
+    elif app.saving is not None:
+        app.after_saving = partial(save, app, then)
+    else:
+        write(app, app.document.prepare(), then)
 
 
 def save_as(app: BudgetApp, then: Doing | None = None) -> None:
@@ -35,6 +43,8 @@ def save_as(app: BudgetApp, then: Doing | None = None) -> None:
     def target(text: str) -> Path:
         if not text.strip():
             raise WritingError("write the name of a file")
+        if "\0" in text:
+            raise WritingError("no file has such a name")
         return here.parent / Path(text.strip()).expanduser()
 
     def attempt(text: str) -> Snapshot | None:
@@ -42,58 +52,102 @@ def save_as(app: BudgetApp, then: Doing | None = None) -> None:
         return None
 
     def take(text: str) -> None:
-        path = target(text)
-        if path.exists() and path != app.document.path:
-            ask(app, f"{path} exists", (("write over it", lambda: _write(app, path, then, over=True)),))
+        if app.saving is not None:
+            app.after_saving = partial(take, text)
+            return
+        saving = app.document.prepare(target(text))
+        if saving.path == app.document.path:
+            save(app, then)
         else:
-            _write(app, path, then, over=False)
+            write(app, saving, then)
 
     begin(app, Entry("save as", Field.holding(str(here)), attempt, take))
 
 
-def leave(app: BudgetApp) -> None:
-    """Quit; where the run is not saved, ask first."""
-    if not app.document.dirty:
-        app.exit(0)
+def write(app: BudgetApp, saving: Saving, then: Doing | None) -> None:
+    """Write what is to be saved, in a thread, so that the next edit need not wait for the disk."""
+    app.saving = saving
+    in_background(app, partial(_write, saving, app.keeper.keep_now), partial(_written, app, saving, then))
+
+
+def _write(saving: Saving, keep: Callable[[], object]) -> Stamp | StorageError:
+    try:
+        return saving.write(keep)
+    except StorageError as refused:
+        return refused
+
+
+def _written(app: BudgetApp, saving: Saving, then: Doing | None, outcome: Stamp | StorageError) -> None:
+    app.saving = None
+    queued, app.after_saving = app.after_saving, None
+    if isinstance(outcome, StorageError):
+        _refused(app, saving, then, outcome)
         return
+    before = app.document.snapshot
+    app.document.saved(saving, outcome)
+    unsaved.note(app)
+    if app.document.snapshot is not before and app.entry is None:
+        app.show(app.document.snapshot)
+    app.tell_state()
+    app.say(f"saved {plain(str(saving.path))}")
+    for doing in (then, queued):
+        if doing is not None:
+            doing()
+
+
+def _refused(app: BudgetApp, saving: Saving, then: Doing | None, refused: StorageError) -> None:
+    if app.entry is not None:  # the hands are at another value; what it is about is told, and asked at the next save
+        app.tell_state()
+        app.say(plain(str(refused)), "error")
+        return
+    elsewhere = ("save under another name", lambda: save_as(app, then))
+    if not isinstance(refused, ChangedOnDisk):
+        ask(app, _short(refused, saving.path), (elsewhere, ("try again", lambda: save(app, then))))
+    elif saving.path == app.document.path:
+        conflict.settle(app, elsewhere, lambda: save(app, then))
+    else:
+        _ask_over(app, saving, then, refused)
+
+
+def _ask_over(app: BudgetApp, saving: Saving, then: Doing | None, refused: ChangedOnDisk) -> None:
+    """Ask whether another file is to be written over, as it is at this moment and no other."""
+    seen = look(saving.path, None)
+    over = dataclasses.replace(saving, stamp=seen.stamp, over=seen.stamp is None)
     ask(
         app,
-        "The run is not saved",
+        _short(refused, saving.path),
         (
-            ("save and quit", lambda: save(app, then=lambda: app.exit(0))),
-            ("quit without saving", lambda: app.exit(0)),
+            ("write over it", lambda: write(app, over, then)),
+            ("save under another name", lambda: save_as(app, then)),
         ),
     )
 
 
-def _write(app: BudgetApp, path: Path, then: Doing | None, *, over: bool) -> None:
-    try:
-        app.document.save(path, over=over)
-    except ChangedOnDisk as changed:
-        ask(
-            app,
-            str(changed).partition(";")[0],
-            (
-                ("save under another name", lambda: save_as(app, then)),
-                ("write over what is on disk", lambda: _write(app, path, then, over=True)),
-            ),
-        )
+def _short(refused: StorageError, path: Path) -> str:
+    """Say what was wrong with the name of the file alone, so that it can be read on one line."""
+    return str(refused).replace(str(path), path.name).replace(str(path.resolve()), path.name).partition(";")[0]
+
+
+def leave(app: BudgetApp) -> None:
+    """Quit; where the run is not saved, ask first."""
+    if app.saving is not None:
+        app.after_saving = partial(leave, app)
+        app.say("still saving")
         return
-    except StorageError as refused:
-        app.say(plain(str(refused)), "error")
+    if not app.document.dirty:
+        app.exit(0)
         return
-    app.show(app.document.snapshot)
-    app.say(f"saved {plain(str(path))}")
-    if then is not None:
-        then()
 
+    def throw_away() -> None:
+        app.discarding = True
+        app.exit(0)
 
-def ask(app: BudgetApp, question: str, answers: tuple[tuple[str, Doing], ...], stay: str = "stay") -> None:
-    """Ask, with a list of what can be done; the last is to leave things as they are."""
-    choices = [Choice((text,), doing) for text, doing in (*answers, (stay, lambda: app.say("")))]
-
-    def take(doing: object) -> None:
-        if callable(doing):
-            doing()
-
-    app.offer(Offer(plain(question), ("",), choices, take))
+    ask(
+        app,
+        "The run is not saved",
+        (
+            ("save and quit", lambda: save(app, then=lambda: leave(app))),
+            ("quit, and keep the changes for the next time", lambda: app.exit(0)),
+            ("quit without saving", throw_away),
+        ),
+    )

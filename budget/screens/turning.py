@@ -9,7 +9,8 @@ from budget.description.finding import Level, dotted
 from budget.manual import titles
 from budget.report.located import Located
 from budget.report.plain import plain
-from budget.screens import boards, entering, moving, saving, telling
+from budget.screens import boards, conflict, entering, moving, recovering, saving, telling, unsaved
+from budget.screens.asking import ask
 from budget.screens.chooser import Choice, Chooser, Offer
 
 if TYPE_CHECKING:
@@ -134,6 +135,12 @@ def apply_text(app: BudgetApp) -> bool:
     return True
 
 
+def text_written(app: BudgetApp) -> None:
+    """Have what is written on the Text screen kept, a while after the last letter."""
+    if app.at == "text" and app.text.changed:
+        unsaved.note(app)
+
+
 def _forget(app: BudgetApp) -> None:
     app.text.open(app.document.snapshot.text, app.ledger.row)
     app.turn_to("ledger")
@@ -160,7 +167,7 @@ def back(app: BudgetApp) -> None:
     """Go back to the ledger; a changed text is taken into the design first, or thrown away where it is not TOML."""
     if app.at == "text" and app.text.changed and not apply_text(app):
         reason = app.foot.message
-        saving.ask(app, "The text is not TOML", (("throw away what was written", lambda: _forget(app)),), "mend it")
+        ask(app, "The text is not TOML", (("throw away what was written", lambda: _forget(app)),), "mend it")
         app.say(reason, "error")
         return
     if boards.stop(app):
@@ -183,6 +190,25 @@ def save_as(app: BudgetApp) -> None:
     saving.save_as(app)
 
 
+def show_changes(app: BudgetApp) -> None:
+    """Show what differs from the file on disk."""
+    conflict.show_changes(app)
+
+
+def recover(app: BudgetApp) -> None:
+    """Look for unsaved changes of this run that were left behind."""
+    recovering.look(app, asked=True)
+
+
+def edit_outside(app: BudgetApp) -> None:
+    """Edit the file in the user's own editor; what is written on the Text screen is taken first."""
+    from budget.screens import outside  # noqa: PLC0415 - few need it, and the first frame does not wait for it
+
+    if app.at == "text" and app.text.changed and not apply_text(app):
+        return
+    outside.edit_outside(app)
+
+
 def leave_app(app: BudgetApp) -> None:
     """Quit; what is written on the Text screen is taken first."""
     if app.at == "text" and app.text.changed and not apply_text(app):
@@ -193,5 +219,6 @@ def leave_app(app: BudgetApp) -> None:
 
 
 def suspend(app: BudgetApp) -> None:
-    """Go to the shell; `fg` comes back."""
+    """Go to the shell, with what is unsaved kept first; `fg` comes back."""
+    app.keep_now()
     app.action_suspend_process()

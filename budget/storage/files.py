@@ -52,7 +52,7 @@ class Look:
     stamp: Stamp | None = None
     """That of the bytes there; None where there are none that can be read."""
     why: str = ""
-    """Why what is there can't be read."""
+    """Why what is there can't be read, in words that follow the name of the file."""
 
 
 def load(path: Path) -> tuple[bytes, Stamp]:
@@ -95,18 +95,18 @@ def look(path: Path, stamp: Stamp | None) -> Look:
     except OSError as wrong:
         if isinstance(wrong, FileNotFoundError | NotADirectoryError):
             return Look("gone" if stamp is not None else "same")
-        return Look("changed", why=f"{path} could not be looked at: {_reason(wrong)}")
+        return Look("changed", why=f"could not be looked at: {_reason(wrong)}")
     if stamp is not None and _outside(status) == (stamp.device, stamp.inode, stamp.size, stamp.modified):
         return Look("same", stamp=stamp)
     try:
         content, found = load(path)
     except StorageError as wrong:
-        return Look("changed", why=str(wrong))
+        return Look("changed", why=str(wrong).removeprefix(f"{path} "))
     if stamp is not None and found.digest == stamp.digest:
         return Look("same", stamp=found)
     source = read_bytes(content)
     if source.data is None and not source.text:
-        return Look("changed", stamp=found, why=f"{path} could not be read: {source.findings[0].message}")
+        return Look("changed", stamp=found, why=f"could not be read: {source.findings[0].message}")
     return Look("changed" if stamp is not None else "there", source, found)
 
 

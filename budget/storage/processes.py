@@ -40,6 +40,8 @@ def is_alive(process: Process) -> bool | None:
         return False
     if process.space != here.space:
         return None
+    if process.pid <= 0:  # to the system these are groups of processes
+        return False
     try:
         os.kill(process.pid, 0)
     except ProcessLookupError:

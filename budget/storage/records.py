@@ -33,6 +33,7 @@ KEPT = timedelta(days=90)
 LARGEST = 4 * LARGEST_FILE
 """Bytes of a record; a text may be larger than a file that can be read, and is kept all the same."""
 
+_FIRST_YEAR, _LAST_YEAR = 1970, 9000
 _LONGEST_HEADER = 64 * 1024
 _numbers = itertools.count()
 
@@ -194,4 +195,6 @@ def _record(head: Mapping[str, Any], file: Path) -> Record:
 
 def _time(text: str) -> datetime:
     time = datetime.fromisoformat(text)
+    if not _FIRST_YEAR <= time.year < _LAST_YEAR:
+        raise ValueError("no time of ours")
     return time if time.tzinfo is not None else time.replace(tzinfo=UTC)

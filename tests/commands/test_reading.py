@@ -117,7 +117,12 @@ def test_the_app_is_opened_with_what_was_asked_for(
     monkeypatch.setattr(screens, "run", run, raising=False)
     assert call("edit", run_file).status == 0
     assert call("edit", "--ascii", "--mouse", run_file).status == 3
-    assert seen == [(run_file, {"ascii": None, "mouse": None}), (run_file, {"ascii": True, "mouse": True})]
+    assert call("edit", "--read-only", run_file).status == 0
+    assert seen == [
+        (run_file, {"ascii": None, "mouse": None, "read_only": False}),
+        (run_file, {"ascii": True, "mouse": True, "read_only": False}),
+        (run_file, {"ascii": None, "mouse": None, "read_only": True}),
+    ]
 
 
 def test_completion_knows_every_command_option_and_word(call: Caller) -> None:

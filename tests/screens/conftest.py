@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import time
 from collections.abc import Awaitable, Callable
 from pathlib import Path
 
@@ -38,11 +39,27 @@ class Hands:
         self.app.post_message(event)
         for _ in range(2):
             await self.pilot._wait_for_screen()
+        await self.done()
         shown = self.app.form if self.app.at == "form" else self.app.front
-        for _ in range(50):
-            if shown.size or not shown.display:
-                break
-            await self.pilot._wait_for_screen()  # it has just been mounted, and is not laid out yet
+        until = time.monotonic() + 5.0
+        while not shown.size and shown.display and time.monotonic() < until:
+            await asyncio.sleep(0.001)  # it has just been mounted, and is not laid out yet
+            await self.pilot._wait_for_screen()
+
+    async def done(self) -> None:
+        """Wait until the disk has done what was asked of it."""
+        until = time.monotonic() + 5.0
+        while self.app.pending and self.app.is_running and not self.app._exit:
+            await asyncio.sleep(0.002)
+            assert time.monotonic() < until, "the disk never came back"
+
+    async def looked(self) -> None:
+        """Wait until the list shows what each entry in view would cost."""
+        until = time.monotonic() + 5.0
+        await self.pilot._wait_for_screen()
+        while self.app.choosers[self.app.at].looking and time.monotonic() < until:
+            await asyncio.sleep(0.002)
+            await self.pilot._wait_for_screen()
 
     async def type(self, text: str) -> None:
         """Type letters."""

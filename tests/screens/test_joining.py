@@ -41,6 +41,7 @@ def test_each_way_shows_the_drop_at_both_legs_and_is_what_it_then_gives(
         assert hands.lines()[1].split() == ["at", "B", "Pa", "at", "C", "Pa", "required", "Pa"]
         await hands.press(*keys)
         assert hands.app.choosers["list"].marked is not None
+        await hands.looked()
         shown = hands.listing(row).removeprefix(f" {row}").split()
         assert shown[:2] == [at_joint(changed, "B"), at_joint(changed, "C")]
         await hands.press("enter")
@@ -93,6 +94,7 @@ def test_a_change_of_area_is_picked_by_its_angle_or_written(play: Stage) -> None
         assert hands.listed[:3] == ["abrupt", "15 deg", "20 deg"]
         for way, value in (("abrupt", '"abrupt"'), ("60 deg", "60")):
             changed = DUCT.replace('takeoff = "straight"\n', f'takeoff = "straight"\ntransition = {value}\n')
+            await hands.looked()
             assert hands.listing(way).removeprefix(f" {way}").split()[0] == at_joint(changed, "C")
         await hands.type("25")
         assert hands.listed == ["25"]
@@ -100,6 +102,7 @@ def test_a_change_of_area_is_picked_by_its_angle_or_written(play: Stage) -> None
         assert tomllib.loads(hands.text)["section"]["C"]["transition"] == 25
         await hands.press("w")
         await hands.type("200")
+        await hands.looked()
         assert hands.listing("200").split()[1:4] == ["-", "-", "-"]
         await hands.press("escape", "w")
         await hands.type("not stated")

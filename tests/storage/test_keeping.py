@@ -63,6 +63,7 @@ def test_a_change_is_kept_after_a_pause_and_in_any_case_after_a_while(tmp_path: 
     time.sleep(0.05)
     assert text_in(tmp_path) is None
     wait_for(lambda: text_in(tmp_path) == "a = 1\n", 1.0)
+    wait_for(lambda: keeper.kept)
 
     begun, number = time.monotonic(), 0
     while text_in(tmp_path) == "a = 1\n":  # no pause between the changes

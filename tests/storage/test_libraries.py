@@ -143,6 +143,29 @@ def test_a_library_that_is_too_large_is_not_read(project: Path) -> None:
     assert "4.2 MB" in fault(project, "../office/large.toml")
 
 
+def test_what_a_device_gives_is_not_read(project: Path) -> None:
+    (project / "office" / "zero.toml").symlink_to("/dev/zero")
+    assert "lies outside" in fault(project, "../office/zero.toml")
+
+
+def test_a_library_that_is_nested_too_deep_is_a_finding(project: Path) -> None:
+    (project / "office" / "deep.toml").write_text("format = 1\nx = " + "[" * 100_000)
+    source = naming("../office/deep.toml")
+    found = describe(source, read_libraries(source, project / "runs" / "run.toml")).findings
+    said = [one.message for one in found if one.code == "library"]
+    assert len(said) == 1
+    assert said[0].startswith("../office/deep.toml:2:5: brackets or dotted keys are nested more than 32 deep")
+
+
+def test_libraries_that_are_too_large_together_are_not_read(project: Path) -> None:
+    for number in range(6):
+        (project / "office" / f"{number}.toml").write_bytes(b"format = 1\n#" + b"x" * (LARGEST_FILE - 20))
+    source = naming(*(f"../office/{number}.toml" for number in range(6)), WRITTEN)
+    read = read_libraries(source, project / "runs" / "run.toml")
+    assert [library.source is not None for library in read] == [True, True, True, True, False, False, False]
+    assert "more than 16.8 MB of libraries" in read[4].fault
+
+
 def test_bytes_that_are_no_text_are_a_finding(project: Path) -> None:
     (project / "office" / "bytes.toml").write_bytes(b"format = 1\n# \xff\n")
     description = describe(

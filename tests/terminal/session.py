@@ -52,7 +52,8 @@ class Session:
         self.received = b""
         self.code: int | None = None
         keep = {name: value for name, value in os.environ.items() if name in ("PATH", "HOME", "VIRTUAL_ENV")}
-        whole = {**keep, **ENVIRONMENT, "XDG_CONFIG_HOME": str(config), **(environment or {})}
+        folders = {"XDG_CONFIG_HOME": str(config), "XDG_STATE_HOME": str(config / "state")}
+        whole = {**keep, **ENVIRONMENT, **folders, **(environment or {})}
         self.pid, self._fd = pty.fork()
         if self.pid == 0:
             os.execve(sys.executable, [sys.executable, "-c", code, str(file)], whole)
