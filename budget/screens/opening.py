@@ -14,7 +14,6 @@ from budget.screens.config import Config, config_folder
 from budget.screens.signals import Guard
 from budget.screens.themes import load_theme
 from budget.storage import StorageError
-from budget.storage.faults import record_fault
 from budget.storage.records import Record, find_records
 
 
@@ -74,7 +73,14 @@ def _left_behind(path: Path) -> Record | None:
 
 def _quiet() -> None:
     """Let nothing write on the screen but the app: what goes wrong in a thread or a task goes to the log."""
-    threading.excepthook = lambda told: record_fault(told.exc_value, "a thread") if told.exc_value else None
+
+    def log(told: threading.ExceptHookArgs) -> None:
+        from budget.storage.faults import record_fault  # noqa: PLC0415 - seldom, if ever
+
+        if told.exc_value is not None:
+            record_fault(told.exc_value, "budget edit, a thread")
+
+    threading.excepthook = log
     logging.getLogger("asyncio").addHandler(logging.NullHandler())
 
 

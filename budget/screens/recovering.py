@@ -9,7 +9,7 @@ from functools import partial
 from typing import TYPE_CHECKING
 
 from budget.report.plain import plain
-from budget.screens import conflict, unsaved
+from budget.screens import unsaved
 from budget.screens.asking import ask
 from budget.screens.background import in_background
 from budget.screens.ledger import Mark
@@ -124,6 +124,8 @@ def _ask_of_changes(app: BudgetApp, record: Record, go_on: Callable[[], object])
         in_background(app, partial(_hand_over, app, record), lambda _: None)
 
     def differences() -> None:
+        from budget.screens import conflict  # noqa: PLC0415 - the first frame does not wait for it
+
         title = f"What was unsaved at {told(record)}"
         conflict.list_differences(app, title, app.document.saved_text or "", text, again)
 

@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from budget.report.plain import plain
-from budget.screens import conflict, unsaved
+from budget.screens import unsaved
 from budget.screens.asking import ask
 from budget.screens.background import in_background
 from budget.screens.entering import Entry, begin
@@ -104,6 +104,8 @@ def _refused(app: BudgetApp, saving: Saving, then: Doing | None, refused: Storag
     if not isinstance(refused, ChangedOnDisk):
         ask(app, _short(refused, saving.path), (elsewhere, ("try again", lambda: save(app, then))))
     elif saving.path == app.document.path:
+        from budget.screens import conflict  # noqa: PLC0415 - the first frame does not wait for it
+
         conflict.settle(app, elsewhere, lambda: save(app, then))
     else:
         _ask_over(app, saving, then, refused)

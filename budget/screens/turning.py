@@ -9,7 +9,7 @@ from budget.description.finding import Level, dotted
 from budget.manual import titles
 from budget.report.located import Located
 from budget.report.plain import plain
-from budget.screens import boards, conflict, entering, moving, recovering, saving, telling, unsaved
+from budget.screens import boards, entering, moving, recovering, saving, telling, unsaved
 from budget.screens.asking import ask
 from budget.screens.chooser import Choice, Chooser, Offer
 
@@ -192,6 +192,8 @@ def save_as(app: BudgetApp) -> None:
 
 def show_changes(app: BudgetApp) -> None:
     """Show what differs from the file on disk."""
+    from budget.screens import conflict  # noqa: PLC0415 - the first frame does not wait for it
+
     conflict.show_changes(app)
 
 

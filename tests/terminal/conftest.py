@@ -33,7 +33,9 @@ def opened(tmp_path: Path) -> Iterator[Open]:
         file.write_text(text, encoding="utf-8", newline="")
         (tmp_path / "budget").mkdir(exist_ok=True)
         (tmp_path / "budget" / "config.toml").write_text(config)
-        session = Session(file, config=tmp_path, size=size, environment=environment, code=code)
+        # Of its own what each keeps: the same run in several terminals would be open elsewhere.
+        own = {"XDG_STATE_HOME": str(tmp_path / f"state-{len(sessions)}"), **(environment or {})}
+        session = Session(file, config=tmp_path, size=size, environment=own, code=code)
         sessions.append(session)
         if wait:
             session.wait_for(wait)
