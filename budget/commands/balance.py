@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import json
+import math
 import sys
 from pathlib import Path
 
@@ -38,7 +39,10 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 
 def _share(text: str) -> float:
-    share = float(text)
+    try:
+        share = float(text)
+    except ValueError:
+        share = math.nan
     if not 0.0 < share < 1.0:
         raise argparse.ArgumentTypeError(f"{text} is not an authority; write one above 0 and below 1")
     return share

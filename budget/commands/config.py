@@ -20,11 +20,12 @@ def run(options: argparse.Namespace) -> int:
     """Print the path, or the problems; 2 where there are any."""
     path = config_path()
     if options.path:
-        print(path)
+        print(plain(str(path)))
         return OK
     _, problems = load_config(path)
     for problem in problems:
         print(plain(problem))
     if not problems:
-        print(f"{path}: {'nothing is wrong with it' if path.exists() else 'there is no such file, the defaults stand'}")
+        said = "nothing is wrong with it" if path.exists() else "there is no such file, the defaults stand"
+        print(f"{plain(str(path))}: {said}")
     return REFUSED if problems else OK

@@ -9,10 +9,14 @@ import importlib
 import os
 import sys
 from collections.abc import Mapping, Sequence
-from typing import NamedTuple
+from typing import TYPE_CHECKING, NamedTuple, NoReturn
 
 from budget import __version__
+from budget.commands import streams
 from budget.report.plain import plain
+
+if TYPE_CHECKING:
+    from _typeshed import SupportsWrite
 
 OK = 0
 """Nothing above a note."""
@@ -47,6 +51,7 @@ COMMANDS: Mapping[str, Command] = {
     "new": Command("Write a small run to start from.", "budget new heating.toml --kind heating --units SI"),
     "set": Command("Set one key in a run's file.", "budget set heating.toml section.M1.length '14.5 m'"),
     "unset": Command("Take one key out of a run's file.", "budget unset heating.toml section.M1.note"),
+    "recover": Command("List unsaved work that was kept, and write it out.", "budget recover heating.toml"),
     "list": Command("List what the catalogue holds, the units or the examples.", "budget list fittings 'elbow 90'"),
     "explain": Command("Show a row's figures as calculations, or what a code means.", "budget explain run.toml M1"),
     "manual": Command("Read the manual.", "budget manual file"),
@@ -59,42 +64,60 @@ def main(argv: Sequence[str] | None = None) -> int:
     """Run a command; return its exit status. No exception leaves it."""
     if argv is None:
         gc.disable()  # a process of its own soon ends; the app turns collection on again after its first frame
-    arguments = list(sys.argv[1:] if argv is None else argv)
-    for stream in (sys.stdout, sys.stderr):
-        if hasattr(stream, "reconfigure"):
-            stream.reconfigure(errors="backslashreplace")
+        streams.take()
+    streams.soften()
     try:
-        status = _dispatch(arguments)
-        if sys.stdout is not None:
-            sys.stdout.flush()
-    except SystemExit as leaving:
-        status = leaving.code if isinstance(leaving.code, int) else REFUSED
-    except KeyboardInterrupt:
-        status = INTERRUPTED
+        status = _run(list(sys.argv[1:] if argv is None else argv))
+    except (KeyboardInterrupt, streams.Ended) as stopped:
+        streams.drop(sys.stdout)  # whoever reads it may have stopped reading
+        status = 128 + stopped.number if isinstance(stopped, streams.Ended) else INTERRUPTED
     except BrokenPipeError:
-        _drop_output()
+        streams.drop(sys.stdout)
         status = PIPE_CLOSED
     except OSError as wrong:
-        _drop_output()
+        streams.drop(sys.stdout)
         say(f"{wrong.filename or 'the output'} could not be read or written: {wrong.strerror or wrong}")
         status = REFUSED
     except Exception as wrong:
         if os.environ.get(DEBUG):
             raise
-        say(f"internal error: {type(wrong).__name__}: {wrong}; set {DEBUG}=1 to see where")
+        log = _logged(wrong, sys.argv[1:] if argv is None else argv)
+        say(f"internal error: {type(wrong).__name__}: {wrong}; {log}set {DEBUG}=1 to see where")
         status = INTERNAL
+    for stream in (sys.stdout, sys.stderr):
+        streams.settle(stream)
     return status
 
 
 def say(message: str) -> None:
-    """Tell something on standard error, in one line."""
-    print(f"budget: {plain(message)}", file=sys.stderr)
+    """Tell something on standard error, in one line; where that can't be written, the status alone tells."""
+    try:
+        print(f"budget: {plain(message)}", file=sys.stderr)
+    except OSError:
+        streams.drop(sys.stderr)
+
+
+def _logged(wrong: Exception, arguments: Sequence[str]) -> str:
+    """Write an error to the log; say where that is, if it could be written."""
+    from budget.storage.faults import record_fault  # noqa: PLC0415 - seldom, if ever
+
+    called = " ".join(["budget", *(name for name in arguments[:1] if name in COMMANDS)])
+    log = record_fault(wrong, called)
+    return f"the log is {log}; " if log is not None else ""
+
+
+class _Parser(argparse.ArgumentParser):
+    def print_help(self, file: SupportsWrite[str] | None = None) -> None:
+        print(self.format_help(), end="", file=file)  # argparse itself would keep quiet where that fails
+
+    def error(self, message: str) -> NoReturn:
+        super().error(plain(message))
 
 
 def parser_of(name: str) -> argparse.ArgumentParser:
     """Return the parser of one command."""
     command = COMMANDS[name]
-    parser = argparse.ArgumentParser(
+    parser = _Parser(
         prog=f"budget {name}",
         description=command.summary,
         epilog=f"example:\n  {command.example}",
@@ -115,6 +138,17 @@ def overview() -> str:
     lines += ["examples:", *(f"  {command.example}" for command in COMMANDS.values()), ""]
     lines += ["A design calculation, to be checked by an engineer: budget manual accuracy-and-caution."]
     return "\n".join(lines)
+
+
+def _run(arguments: list[str]) -> int:
+    """Run a command and write its output whole; a parser leaves with a status of its own."""
+    try:
+        status = _dispatch(arguments)
+    except SystemExit as leaving:
+        status = leaving.code if isinstance(leaving.code, int) else REFUSED
+    if sys.stdout is not None:
+        sys.stdout.flush()
+    return status
 
 
 def _dispatch(arguments: list[str]) -> int:
@@ -150,13 +184,3 @@ def _version() -> str:
     from budget.catalogue import CATALOGUE_VERSION  # noqa: PLC0415 - a call of another command does without
 
     return f"budget {__version__}, catalogue {CATALOGUE_VERSION}"
-
-
-def _drop_output() -> None:
-    """Let nothing be written any more, so that leaving the interpreter doesn't fail a second time."""
-    try:
-        nowhere = os.open(os.devnull, os.O_WRONLY)
-        os.dup2(nowhere, sys.stdout.fileno())
-        os.close(nowhere)
-    except (OSError, ValueError):
-        pass

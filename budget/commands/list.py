@@ -9,6 +9,7 @@ from itertools import takewhile
 from budget.catalogue.listing import Row, aligned, rows
 from budget.commands.dispatch import OK, REFUSED, say
 from budget.description import nearest
+from budget.report.plain import plain
 from budget.shipped import shipped
 from budget.units import Basis, factors
 
@@ -43,7 +44,7 @@ def _examples(name: str | None) -> list[Row]:
     for file in files:
         lines = takewhile(lambda line: line.startswith("#"), file.read_text("utf-8").splitlines())
         about = " ".join(line.lstrip("# ") for line in lines)
-        listing += [Row((str(file),), heading=True), *(Row((line,)) for line in textwrap.wrap(about, 100))]
+        listing += [Row((plain(str(file)),), heading=True), *(Row((line,)) for line in textwrap.wrap(about, 100))]
     return listing
 
 

@@ -9,6 +9,7 @@ from pathlib import Path
 
 from budget.commands.dispatch import OK, REFUSED, say
 from budget.commands.starts import FLUIDS, KINDS, start
+from budget.report.plain import plain
 
 FLUID_NAMES = tuple(dict.fromkeys(name for names in FLUIDS.values() for name in names))
 SYSTEMS = ("SI", "IP")
@@ -41,7 +42,8 @@ def run(options: argparse.Namespace) -> int:
     except OSError as wrong:
         say(f"{path} could not be written: {wrong.strerror or wrong}")
         return REFUSED
-    print(f"{options.file} was written; open it with: budget edit {options.file}")
+    name = plain(options.file)
+    print(f"{name} was written; open it with: budget edit {name}")
     return OK
 
 

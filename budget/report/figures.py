@@ -97,7 +97,8 @@ class Figures:
         """Take the units of a description."""
         self._system: Literal["SI", "IP"] = description.design.units
         self._gas = description.fluid.gas
-        self._shown = description.display
+        # A unit may be written with any blanks around and within it, such as a line break.
+        self._shown = {name: " ".join(unit.split()) for name, unit in description.display.items()}
 
     def unit(self, dimension: Dimension, *, small: bool = False) -> str:
         """Name the unit in which a quantity is shown; `small` for a bore, a size or a roughness."""

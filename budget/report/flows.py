@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 from budget.description import Description
@@ -49,24 +49,23 @@ def _known(value: float | None) -> float | None:
 
 
 def flows_text(description: Description, budget: Budget, flows: Flows) -> str:
-    """Return the flows as tables, in the units of the design."""
+    """Return the flows as tables, in the units of the design; "" where none could be computed."""
     figures = Figures(description)
     parts = [
-        _sources(budget, flows, figures),
-        ["Sections", *table(_section_columns(figures), [_section(one, figures) for one in flows.sections.values()])],
-        ["Links", *table(_section_columns(figures), [_section(one, figures) for one in flows.links.values()])]
-        if flows.links
-        else [],
-        [
-            "Terminals",
-            *table(_terminal_columns(figures), [_terminal(one, figures) for one in flows.terminals.values()]),
-        ],
+        _part("Sources", _source_columns(figures), [_source(budget, one, figures) for one in flows.sources.values()]),
+        _part("Sections", _section_columns(figures), [_section(one, figures) for one in flows.sections.values()]),
+        _part("Links", _section_columns(figures), [_section(one, figures) for one in flows.links.values()]),
+        _part("Terminals", _terminal_columns(figures), [_terminal(one, figures) for one in flows.terminals.values()]),
     ]
-    return "\n\n".join("\n".join(lines) for lines in parts if len(lines) > 1) + "\n"
+    return "\n".join(f"{part}\n" for part in parts if part)
 
 
-def _sources(budget: Budget, flows: Flows, figures: Figures) -> list[str]:
-    columns = [
+def _part(title: str, columns: Sequence[Column], rows: Sequence[Sequence[str]]) -> str:
+    return "\n".join([title, *table(columns, rows)]) if rows else ""
+
+
+def _source_columns(figures: Figures) -> list[Column]:
+    return [
         Column("", left=True),
         Column("flow", figures.unit(Dimension.FLOW)),
         Column("pressure", figures.unit(Dimension.PRESSURE)),
@@ -75,7 +74,6 @@ def _sources(budget: Budget, flows: Flows, figures: Figures) -> list[str]:
         Column("design", figures.unit(Dimension.FLOW)),
         Column("required", figures.unit(Dimension.PRESSURE)),
     ]
-    return ["Sources", *table(columns, [_source(budget, one, figures) for one in flows.sources.values()])]
 
 
 def _source(budget: Budget, one: SourceFlow, figures: Figures) -> tuple[str, ...]:

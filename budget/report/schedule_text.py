@@ -6,6 +6,7 @@ import csv
 import dataclasses
 import io
 import math
+import re
 from collections.abc import Iterable, Iterator
 from typing import Any
 
@@ -26,8 +27,8 @@ BLANK = "________"
 LONGEST = 20
 """Columns that an ID, a device or a size may take in the text; CSV and JSON have it whole."""
 
-RISKY = ("=", "+", "-", "@", "\t", "\r", "\n", "\uff1d", "\uff0b", "\uff0d", "\uff20")
-"""With these a spreadsheet begins a formula, or looks for one behind them; the last four are full-width."""
+_FORMULA = re.compile("(^|;)(?=\\s*[=+@\uff1d\uff0b\uff0d\uff20-])")
+"""Where a spreadsheet begins a formula; four of the signs are full-width."""
 
 TOLD = (
     "order", "id", "kind", "source", "branch", "location", "title", "design_flow", "device", "size", "setting", "drop",
@@ -184,9 +185,12 @@ def schedule_csv(found: Schedule, figures: Figures) -> str:
 
 
 def harmless(text: str) -> str:
-    """Return a text as a cell that no spreadsheet takes for a formula: with an apostrophe before what begins one."""
-    said = plain(text)
-    return f"'{said}" if text.startswith(RISKY) or said.lstrip().startswith(RISKY) else said
+    """Return a text as a cell that no spreadsheet takes for a formula: with an apostrophe before what begins one.
+
+    So too behind a semicolon, by which some spreadsheets split the cells whatever quotes stand around them.
+    """
+    said = _FORMULA.sub(r"\1'", plain(text))
+    return f"'{said}" if text.startswith(("\t", "\r", "\n")) and not said.startswith("'") else said
 
 
 def _figure(text: str) -> str:

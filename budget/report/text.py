@@ -110,7 +110,7 @@ def _power(value: float | None, description: Description) -> str:
     if value is None:
         return ""
     unit = description.display.get("power", "W" if description.design.units == "SI" else "hp")
-    return f"{plain_number(to_unit(value, unit, Dimension.POWER), 4)} {unit}"
+    return f"{plain_number(to_unit(value, unit, Dimension.POWER), 4)} {' '.join(unit.split())}"
 
 
 def _circuit(description: Description, budget: Budget, source: str, terminal: str) -> str:

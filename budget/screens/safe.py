@@ -8,7 +8,7 @@ from functools import lru_cache
 
 from rich.cells import get_character_cell_size
 
-from budget.report.plain import UNKNOWN, plain
+from budget.report.plain import UNKNOWN, plain, thinned
 
 _ASCII = str.maketrans({
     "»": ">", "█": "#", "░": "-", "▓": "#", "▒": "=", "▸": ">", "…": "~", "·": ".", "→": ">", "×": "x",
@@ -86,10 +86,10 @@ def packed(pieces: Iterable[str], width: int, gap: str = "  ") -> list[str]:
 
 @lru_cache(8192)
 def harmless(text: str) -> str:
-    """Return a piece of a painted line without control characters, as wide as it was counted."""
-    if text.isprintable():
+    """Return a piece of a painted line without control characters and piled up marks, as wide as it was counted."""
+    if text.isascii() and text.isprintable():
         return text
-    return "".join(c if c.isprintable() or c == "\xa0" or _is_space(c) else " " * _cells(c) for c in text)
+    return thinned("".join(c if c.isprintable() or _is_space(c) else " " * _cells(c) for c in text))
 
 
 @lru_cache(8192)

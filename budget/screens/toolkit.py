@@ -55,10 +55,7 @@ class SafeFilter(LineFilter):
 
     def apply(self, segments: list[Segment], background: Color) -> list[Segment]:  # noqa: ARG002
         """Return the segments without them, as wide as they were."""
-        return [
-            segment if segment.control or segment.text.isprintable() else Segment(harmless(segment.text), segment.style)
-            for segment in segments
-        ]
+        return [segment if segment.control else Segment(harmless(segment.text), segment.style) for segment in segments]
 
 
 class AsciiFilter(LineFilter):

@@ -82,7 +82,7 @@ def test_valves_and_devices_are_proposed(call: Caller, run_file: Path) -> None:
         (("--propose", "R3"), "did you mean"),
         (("--propose", "R1", "--csv"), "leave them out"),
         (("--authority", "1"), "above 0 and below 1"),
-        (("--authority", "half"), "invalid"),
+        (("--authority", "half"), "is not an authority"),
     ],
 )
 def test_a_proposal_that_can_t_be_made_is_status_2(

@@ -9,6 +9,7 @@ from pathlib import Path
 
 import pytest
 
+from budget.storage.folders import state_folder
 from tests.commands.calls import RUN, Caller
 
 OVER = RUN.replace("[device", '[limits]\nvelocity = "0.1 m/s"\n\n[device')
@@ -143,7 +144,10 @@ def test_an_internal_error_is_one_line_and_status_70(
     monkeypatch.delenv("BUDGET_DEBUG", raising=False)
     status, out, err = call("check", run_file)
     assert (status, out) == (70, "")
-    assert err == ("budget: internal error: ZeroDivisionError: nothing to divide by; set BUDGET_DEBUG=1 to see where\n")
+    log = state_folder("log") / "faults.log"
+    told = f"ZeroDivisionError: nothing to divide by; the log is {log}; set BUDGET_DEBUG=1 to see where"
+    assert err == f"budget: internal error: {told}\n"
+    assert "  budget check\n" in log.read_text()
     monkeypatch.setenv("BUDGET_DEBUG", "1")
     with pytest.raises(ZeroDivisionError):
         call("check", run_file)

@@ -154,3 +154,14 @@ def test_rounded_settings_are_a_way_to_set_devices(call: Caller, run_file: Path)
     _, out, _ = call("flows", run_file, "--json", "--devices", "rounded")
     for terminal in json.loads(out)["terminals"].values():
         assert terminal["share"] == pytest.approx(1.0, abs=0.1)
+
+
+@pytest.mark.parametrize("wrong", ['load = "much"', 'flow = "1 furlong"'])
+def test_a_run_whose_flows_are_not_known_has_findings_alone(wrong: str, call: Caller, run_file: Path) -> None:
+    curve = 'curve = [["0 L/s", "30 kPa"], ["0.2 L/s", "20 kPa"]]\n'
+    text = run_file.read_text().replace('title = "Boiler pump"\n', f'title = "Boiler pump"\n{curve}')
+    run_file.write_text(text.replace('load = "2.4 kW"', wrong))
+    status, out, err = call("flows", run_file)
+    assert (status, err) == (2, "")
+    assert [line.partition(":")[0] for line in out.splitlines()] == [str(run_file)] * len(out.splitlines())
+    assert ": error " in out

@@ -9,7 +9,7 @@ from rich.cells import cell_len
 from rich.segment import Segment
 from textual.color import Color
 
-from budget.report.plain import plain
+from budget.report.plain import plain, thinned
 from budget.screens.safe import ascii_only, clip, fit, harmless, steady, width_of
 from budget.screens.toolkit import AsciiFilter, SafeFilter
 
@@ -31,6 +31,22 @@ PAYLOADS = [
 def test_controls_and_direction_marks_never_pass(text: str) -> None:
     for made in (plain(text), steady(text), harmless(text), ascii_only(harmless(text))):
         assert all(c.isprintable() or c == "\xa0" or unicodedata.category(c) == "Zs" for c in made)
+
+
+def test_marks_piled_upon_a_letter_are_thinned_and_those_of_a_script_stay() -> None:
+    storm = "Z" + "\u0301\u0316\u20dd" * 40 + "e"
+    for made in (plain(storm), harmless(storm)):
+        assert made == "Z\u0301\u0316\u20dd\u0301e"
+        assert width_of(made) == width_of(storm) == 2
+    told = SafeFilter().apply([Segment(storm)], Color(0, 0, 0))
+    assert [segment.text for segment in told] == ["Z\u0301\u0316\u20dd\u0301e"]
+    assert thinned("a\U000e0100" + "\U000e0101" * 9) == "a\U000e0100" + "\U000e0101" * 3
+    for text in (
+        "\u05d1\u05bc\u05b0\u05e8\u05b5\u05d0\u05e9\u05b4\u05c1\u05d9\u05ea",
+        "\u0e17\u0e35\u0e48\u0e19\u0e35\u0e48",
+        "Vi\u1ec7t",
+    ):
+        assert plain(text) == harmless(text) == text
 
 
 def test_letters_of_any_script_stay() -> None:

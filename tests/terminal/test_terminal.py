@@ -16,9 +16,6 @@ from tests.terminal.session import RUN, Session
 BACK = b"\x1b[?1049l"
 CURSOR = b"\x1b[?25h"
 
-HOSTILE = r"\u001b]52;c;aGVsbG8=\u0007\u001b[2J\u009b31m\u0000\u007f\u202e [@click=app.quit]x[/] [bold]"
-FORBIDDEN = (b"\x1b]52", b"\x1b[2J", b"\x9b", b"\x00", b"\x7f", "\u202e".encode(), b"aGVsbG8=\x07")
-
 
 @pytest.mark.parametrize(
     ("environment", "terminals", "encoding", "told"),
@@ -89,25 +86,6 @@ def test_after_a_stop_everything_is_painted_again(opened: Open) -> None:
     session.wait_for("required")
     session.press("down", "enter")
     assert "computed" in session.text or "Escape leave" in session.text
-
-
-def test_nothing_from_the_file_reaches_the_terminal_raw(opened: Open) -> None:
-    text = SMALL.replace('"Boiler pump"', f'"{HOSTILE}"').replace('"Main from the boiler"', f'"{HOSTILE}"')
-    text = text.replace('name = "Boiler"', f'name = "{HOSTILE}"').replace('title = "Lock', f'title = "{HOSTILE}Lock')
-    text += f'[fitting.odd]\nk = 0.5\nsource = "{HOSTILE}"\n'
-    session = opened(text)
-    session.press("down", "down")
-    for keys in (
-        ("f", "odd", "escape"), ("E", "escape"), ("y", "escape"),
-        ("v", "pagedown", "escape"), ("F", "escape"), ("g", "escape"), ("m", "escape"), ("s", "escape"), ("colon",),
-        ("escape",), ("/", "click", "enter"), ("T",), ("escape",), ("r", "escape"), ("=", "note = x", "escape"),
-    ):  # fmt: skip
-        session.press(*(":" if key == "colon" else key for key in keys))
-        assert not session.ended, keys
-    painted = session.received[session.received.index(b"required") :]
-    for payload in FORBIDDEN:
-        assert payload not in painted, payload
-    assert "[@click=app.quit]" in session.text or "click" in session.text
 
 
 def test_ascii_mode_sends_nothing_else(opened: Open) -> None:

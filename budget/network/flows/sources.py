@@ -50,11 +50,11 @@ class Curve:
         return cls(flow, pressure, slope, (min(float(slope[0]), least), min(float(slope[-1]), least)))
 
     def at(self, flow: float) -> tuple[float, float]:
-        """Return pressure and slope at a flow."""
+        """Return pressure and slope at a flow; no pressure where the flow is NaN."""
         x, y = self.flow, self.pressure
         if flow < x[0]:
             return float(y[0] + self.ends[0] * (flow - x[0])), self.ends[0]
-        if flow >= x[-1]:
+        if not flow < x[-1]:  # so too where the flow is not known
             return float(y[-1] + self.ends[1] * (flow - x[-1])), self.ends[1]
         place = int(np.searchsorted(x, flow, side="right")) - 1
         width = float(x[place + 1] - x[place])

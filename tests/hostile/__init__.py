@@ -1,0 +1,1 @@
+"""What somebody may have put into a file."""
