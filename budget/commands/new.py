@@ -10,6 +10,7 @@ from pathlib import Path
 from budget.commands.dispatch import OK, REFUSED, say
 from budget.commands.starts import FLUIDS, KINDS, start
 from budget.report.plain import plain
+from budget.storage import StorageError, save
 
 FLUID_NAMES = tuple(dict.fromkeys(name for names in FLUIDS.values() for name in names))
 SYSTEMS = ("SI", "IP")
@@ -37,10 +38,9 @@ def run(options: argparse.Namespace) -> int:
     units = options.units or _ask("units", SYSTEMS)
     content = start(kind, fluid, "IP" if units == "IP" else "SI").encode("utf-8")
     try:
-        with path.open("xb") as file:  # refuses what came up in the meantime
-            file.write(content)
-    except OSError as wrong:
-        say(f"{path} could not be written: {wrong.strerror or wrong}")
+        save(path, content, None)  # refuses what came up in the meantime
+    except StorageError as wrong:
+        say(str(wrong))
         return REFUSED
     name = plain(options.file)
     print(f"{name} was written; open it with: budget edit {name}")

@@ -123,7 +123,7 @@ BY_ID: Mapping[str, Action] = {action.id: action for action in ACTIONS}
 CHANGING = frozenset({
     "edit", "set", "pick", "pick_size", "pick_fitting", "pick_takeoff", "pick_family", "pick_transition", "add_after",
     "add_before", "add_beneath", "add_terminal", "duplicate", "move", "earlier", "later", "delete", "rename",
-    "propose_kv", "apply_text", "edit_outside",
+    "propose_kv", "apply_text", "edit_outside", "undo", "redo", "recover",
 })  # fmt: skip
 """What changes the run, and is refused where that is open read-only."""
 

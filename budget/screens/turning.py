@@ -115,6 +115,7 @@ def _to_finding(app: BudgetApp, value: Located) -> None:
 
 def show_text(app: BudgetApp) -> None:
     """Show the file itself, to be edited."""
+    app.text.read_only = bool(app.document.read_only)
     app.text.open(app.document.snapshot.text, app.ledger.row)
     app.turn_to("text")
 
@@ -136,9 +137,8 @@ def apply_text(app: BudgetApp) -> bool:
 
 
 def text_written(app: BudgetApp) -> None:
-    """Have what is written on the Text screen kept, a while after the last letter."""
-    if app.at == "text" and app.text.changed:
-        unsaved.note(app)
+    """Have what is written on the Text screen kept."""
+    unsaved.note(app)
 
 
 def _forget(app: BudgetApp) -> None:

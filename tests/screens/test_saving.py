@@ -8,6 +8,7 @@ import os
 from pathlib import Path
 
 import pytest
+from textual import events
 
 from budget.document import Saving
 from budget.screens import watching
@@ -200,8 +201,7 @@ def test_what_is_being_written_is_not_taken_away_by_a_reload(play: Stage) -> Non
 def test_coming_back_to_the_window_looks_at_the_file(play: Stage) -> None:
     async def act(hands: Hands) -> None:
         path_of(hands).write_text(ELSEWHERE)
-        hands.app.on_app_focus()
-        await hands.done()
+        await hands.send(events.AppFocus())
         await hands.press("down")
         assert hands.text == ELSEWHERE
 
@@ -424,6 +424,8 @@ def test_a_run_that_is_open_elsewhere_is_opened_read_only_or_anyway(
             await hands.press(key)
             assert hands.place == "ledger"
             assert "read-only" in hands.foot
+        await hands.press("T", "#", "f2")
+        assert hands.place == "ledger"
         assert hands.text == SMALL
 
     play(act)
