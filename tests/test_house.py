@@ -130,3 +130,95 @@ def test_nothing_else_stands_at_the_top() -> None:
     top = {line.partition("/")[0].strip('"') for line in run.stdout.splitlines()}
     expected = {"README.md", "DEVELOPERS.md", "pyproject.toml", "budget", "tests", "examples", "themes"}
     assert {name for name in top if not name.startswith(".")} == expected
+
+
+REACHES_OUT = {
+    "socket",
+    "ssl",
+    "http",
+    "ftplib",
+    "smtplib",
+    "urllib.request",
+    "xmlrpc",
+    "asyncio.streams",
+    "webbrowser",
+}
+RUNS_DATA = {"pickle", "marshal", "shelve", "dill", "code", "codeop", "ctypes", "runpy"}
+CALLS = {"eval", "exec", "compile", "__import__"}
+OF_OS = {"system", "popen"}
+OF_OS_AT_THE_START = ("exec", "spawn", "posix_spawn")
+EDITOR = "budget/screens/outside.py"
+"""It alone starts a program: the editor that the user has named in the environment."""
+
+
+def reaches(path: Path) -> Iterator[str]:
+    """What a module does that could reach a network, start a program or run what a file says."""
+    name = str(path.relative_to(ROOT))
+    tree = ast.parse(path.read_text(encoding="utf-8"))
+    for_types = {
+        inner
+        for node in ast.walk(tree)
+        if isinstance(node, ast.If) and isinstance(node.test, ast.Name) and node.test.id == "TYPE_CHECKING"
+        for inner in ast.walk(node)
+    }
+    for node in ast.walk(tree):
+        if node in for_types:
+            continue
+        imported: list[str] = []
+        if isinstance(node, ast.Import):
+            imported = [alias.name for alias in node.names]
+        elif isinstance(node, ast.ImportFrom) and not node.level:
+            imported = [node.module or "", *(f"{node.module}.{alias.name}" for alias in node.names)]
+        refused = REACHES_OUT | RUNS_DATA | ({"subprocess"} if name != EDITOR else set())
+        for module in imported:
+            parts = module.split(".")
+            if any(".".join(parts[:size]) in refused for size in range(1, len(parts) + 1)):
+                yield f"{name}:{getattr(node, 'lineno', 0)}: imports {module}"
+            if parts[0] == "os" and len(parts) > 1 and starts_a_program(parts[1]):
+                yield f"{name}:{getattr(node, 'lineno', 0)}: imports {module}"
+        if isinstance(node, ast.Call):
+            called = node.func
+            if isinstance(called, ast.Name) and called.id in CALLS:
+                yield f"{name}:{node.lineno}: calls {called.id}"
+            if any(word.arg == "shell" for word in node.keywords):
+                yield f"{name}:{node.lineno}: asks for a shell"
+        if isinstance(node, ast.Attribute) and isinstance(node.value, ast.Name):
+            if node.value.id == "os" and starts_a_program(node.attr):
+                yield f"{name}:{node.lineno}: uses os.{node.attr}"
+            if node.value.id == "asyncio" and node.attr.startswith(("open_", "start_", "create_subprocess")):
+                yield f"{name}:{node.lineno}: uses asyncio.{node.attr}"
+
+
+def starts_a_program(name: str) -> bool:
+    return name in OF_OS or name.startswith(OF_OS_AT_THE_START)
+
+
+def test_no_module_reaches_a_network_starts_a_shell_or_runs_what_a_file_says() -> None:
+    assert [found for path in sorted(PACKAGE.rglob("*.py")) for found in reaches(path)] == []
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        "import socket",
+        "from urllib import request",
+        "import urllib.request as u",
+        "from http.client import HTTPConnection",
+        "import pickle",
+        "import subprocess",
+        "from os import system",
+        "import os\nos.popen('ls')",
+        "import os\nos.execv('ls', [])",
+        "eval('1')",
+        "exec('1')",
+        "compile('1', '', 'eval')",
+        "run('ls', shell=True)",
+        "import asyncio\nasyncio.open_connection('a', 1)",
+    ],
+)
+def test_a_module_that_does_is_found(text: str, monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    monkeypatch.setattr("tests.test_house.ROOT", tmp_path)
+    (tmp_path / "module.py").write_text(text)
+    assert len(set(reaches(tmp_path / "module.py"))) >= 1
+    (tmp_path / "module.py").write_text("import os, re, urllib.parse\nre.compile('a')\nos.replace('a', 'b')\n")
+    assert list(reaches(tmp_path / "module.py")) == []

@@ -5,7 +5,6 @@ spelling of numbers, line ends. Before a text is handed back it is read again an
 for the data; where the two differ the edit is refused.
 """
 
-import tomllib
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from types import MappingProxyType
@@ -14,6 +13,7 @@ from budget.description import blocks, effects, entries
 from budget.description.blocks import Splice, splice
 from budget.description.finding import Path
 from budget.description.renames import references
+from budget.description.source import read_text
 from budget.description.spans import SpanError, SpanIndex
 from budget.description.spelling import (
     EditError,
@@ -45,6 +45,11 @@ __all__ = [
     "render_key",
     "render_value",
 ]
+
+NO_KEY = "a key is needed, nothing was named"
+
+MOST_ADDED = 200
+"""Keys that one new value may add to a table with lines of its own: each has its place looked for."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,6 +133,8 @@ def apply_to_text(text: str, edit: Edit, *, verify: bool = True, data: Mapping[s
     for a preview only.
     """
     steps = tuple(_flat(edit))
+    if not all(step.path for step in steps):
+        raise EditError(NO_KEY)
     try:
         if not verify:
             return _Writing(text).after(steps)
@@ -160,10 +167,10 @@ def rename_everywhere(text: str, kind: str, old: str, new: str) -> Edit:
 
 
 def _read(text: str) -> dict[str, Toml]:
-    try:
-        return tomllib.loads(text)
-    except (tomllib.TOMLDecodeError, RecursionError) as error:
-        raise EditError(f"the text cannot be read: {error}") from None
+    source = read_text(text)
+    if source.data is None:
+        raise EditError(f"the text cannot be read: {source.findings[0].message}")
+    return source.data
 
 
 def _flat(edit: Edit) -> "Iterator[_Step]":
@@ -179,7 +186,7 @@ _Step = SetValue | Unset | AddTable | RemoveTable | MoveTable | CopyTable | Rena
 
 def _effect(data: Toml, step: _Step) -> Toml:
     if not step.path:
-        raise EditError("a key is needed, nothing was named")
+        raise EditError(NO_KEY)
     match step:
         case SetValue(path, value):
             return effects.set_value(data, path, plain(value))
@@ -222,13 +229,16 @@ def _target(step: MoveTable) -> tuple[Path, bool]:
 
 def _place_of_copy(data: Toml, path: Path, new: Path) -> Path:
     """Return where a copy goes; one of a list element to the end of a list that is named without a position."""
-    if not new:
-        raise EditError("a key is needed for the copy, nothing was named")
+    if not new or not isinstance(new[0], str):
+        raise EditError("a key is needed for the copy, none was named")
     if isinstance(path[-1], int) and not isinstance(new[-1], int):
         try:
-            return (*new, len(effects.get(data, new)))
+            found = effects.get(data, new)
         except EditError:
             return (*new, 0)
+        if not isinstance(found, list):
+            raise EditError(f"{show(new)} is not a list")
+        return (*new, len(found))
     return new
 
 
@@ -241,6 +251,7 @@ class _Writing:
         self.index = SpanIndex.of(text)
         self.splices: list[Splice] = []  # not yet in the text
         self.touched: set[Path] = set()  # by those splices
+        self.around: set[Path] = set()  # what is touched, and what it lies in
 
     def after(self, steps: Iterable[_Step]) -> str:
         """Apply all steps; those that only replace what is there share one index of the text."""
@@ -254,7 +265,7 @@ class _Writing:
                 self.settle_around(path)
                 if self.index.value(path) is not None:
                     self.splices += entries.set_value(self.index, path, value)
-                    self.touched.add(path)
+                    self.touch(path)
                     return
                 self.settle()
                 if path and (blocks.blocks_under(self.index, path) or self.index.occurrences(path)):
@@ -264,7 +275,8 @@ class _Writing:
             case RenameKey(path, new_key):
                 self.settle_around(path)
                 self.splices += entries.rename(self.index, path, new_key)
-                self.touched |= {path, (*path[:-1], new_key)}
+                self.touch(path)
+                self.touch((*path[:-1], new_key))
             case _:
                 self.settle()
                 self.rearrange(step)
@@ -285,8 +297,12 @@ class _Writing:
     def settle_around(self, path: Path) -> None:
         """Bring the text up to date where a path leads through one that is being changed, or around it."""
         through = any(path[:size] in self.touched for size in range(1, len(path) + 1))
-        if through or any(other[: len(path)] == path for other in self.touched):
+        if through or path in self.around:
             self.settle()
+
+    def touch(self, path: Path) -> None:
+        self.touched.add(path)
+        self.around.update(path[:size] for size in range(len(path) + 1))
 
     def settle(self) -> None:
         if self.splices:
@@ -298,14 +314,23 @@ class _Writing:
     def replace(self, text: str) -> None:
         self.text = text
         self.index = SpanIndex.of(text)
-        self.splices, self.touched = [], set()
+        self.splices, self.touched, self.around = [], set(), set()
 
     def rewrite(self, path: Path, value: Toml) -> None:
         """Turn a table, or a list of tables, into another one by changing what differs and nothing else."""
         found = effects.get(_read(self.text), path)
         if type(found) is not type(value):
             raise EditError(f"{show(path)} is a table; its keys are set one by one")
-        for step in _differences(path, found, value):
+        steps = list(_differences(path, found, value))
+        if sum(not entries.exists(self.index, step.path) for step in steps) > MOST_ADDED:
+            raise EditError(f"more than {MOST_ADDED} keys would be added to {show(path)} at once; add some at a time")
+        gone = [step.path for step in steps if isinstance(step, Unset)]
+        cuts = entries.remove_all(self.index, gone) if gone else None
+        if cuts is not None:
+            self.emptied |= {one[:size] for one in gone for size in range(1, len(one))}
+            self.write(cuts)
+            steps = steps[len(gone) :]
+        for step in steps:
             self.apply(step)
         self.settle()
 
@@ -321,6 +346,8 @@ class _Writing:
     def copy(self, path: Path, new: Path, changes: Mapping[str, Toml]) -> None:
         data = _read(self.text)
         original = effects.get(data, path)
+        if changes and not isinstance(original, dict):
+            raise EditError(f"{show(path)} is not one table")
         place = _place_of_copy(data, path, new)
         span = self.index.value(path)
         if blocks.blocks_under(self.index, path):

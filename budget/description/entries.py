@@ -4,7 +4,8 @@ Every function takes the index of a text and returns splices; what lies outside 
 """
 
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
+from collections.abc import Set as AbstractSet
 
 from budget.description.blocks import LISTED, Splice, add_blocks, blocks_under, cut_blocks, newline_of
 from budget.description.finding import ID_TABLES, Path
@@ -22,7 +23,7 @@ def set_value(index: SpanIndex, path: Path, value: Toml) -> list[Splice]:
     if blocks_under(index, path) or index.occurrences(path):
         raise EditError(f"{show(path)} is a table; its keys are set one by one")
     around = path[:-1]
-    while around and not _exists(index, around):
+    while around and not exists(index, around):
         around = around[:-1]
     return _add(index, around, path, value)
 
@@ -31,24 +32,20 @@ def remove(index: SpanIndex, path: Path) -> list[Splice]:
     """Cut a key with its line, an element with its comma, or a table with all blocks under it."""
     if not path:
         raise EditError("a key is needed, nothing was named")
-    blocks = blocks_under(index, path)
-    removed = {table.number for table in blocks}
-    size = len(path)
-    lines = [
-        (start, end)
-        for table in index.all_tables()
-        if table.number not in removed
-        for start, end, found in table.statements
-        if found[:size] == path
-    ]
-    cuts = [_line_cut(index.text, start, end) for start, end in lines]
-    cuts += cut_blocks(index, blocks)
+    cuts, _ = _cuts(index, {path}, len(path))
     if not cuts:
         container = _container(index, path[:-1])
         if container is None:
             raise EditError(f"there is no {show(path)}")
         cuts = _cuts_inside(index, container, path)
     return cuts
+
+
+def remove_all(index: SpanIndex, paths: Sequence[Path]) -> list[Splice] | None:
+    """Cut several keys of one table, or elements of one list; None where one of them has no lines or blocks."""
+    gone = set(paths)
+    cuts, found = _cuts(index, gone, len(paths[0]))
+    return cuts if found == gone else None
 
 
 def rename(index: SpanIndex, path: Path, new: str) -> list[Splice]:
@@ -64,7 +61,8 @@ def rename(index: SpanIndex, path: Path, new: str) -> list[Splice]:
 # Adding a key or an element.
 
 
-def _exists(index: SpanIndex, path: Path) -> bool:
+def exists(index: SpanIndex, path: Path) -> bool:
+    """Tell whether a text has a key, an element or a table."""
     return index.value(path) is not None or bool(index.occurrences(path)) or index.table(path) is not None
 
 
@@ -220,6 +218,23 @@ def _respelled(old: str, value: Toml, newline: str) -> str:
 
 
 # Cutting.
+
+
+def _cuts(index: SpanIndex, gone: AbstractSet[Path], size: int) -> tuple[list[Splice], set[Path]]:
+    """Return the cuts of the lines and blocks of paths of one length, and the paths that have such."""
+    blocks = [table for table in index.all_tables()[1:] if table.path[:size] in gone]
+    removed = {table.number for table in blocks}
+    found = {table.path[:size] for table in blocks}
+    cuts = []
+    for table in index.all_tables():
+        if table.number in removed:
+            continue
+        for start, end, path in table.statements:
+            if path[:size] in gone:
+                cuts.append(_line_cut(index.text, start, end))
+                found.add(path[:size])
+    return cuts + cut_blocks(index, blocks), found
+
 
 _COMMA = re.compile(r"[ \t]*,")
 _COMMA_BEHIND = re.compile(r"(?:[ \t\r\n]|#[^\n]*)*,")

@@ -174,7 +174,7 @@ def _check_ids(reading: Reading, source: Source, data: Mapping[str, Any]) -> Non
 
 
 def _check_sensors(reading: Reading, description: Description) -> None:
-    known = [*description.sections, *description.terminals]
+    known = {**description.sections, **description.terminals}
     for source in description.sources.values():
         if source.sensor is not None and source.sensor not in known:
             text = f"{source.sensor!r} is neither a section nor a terminal; {nearest(source.sensor, known)}"
@@ -189,13 +189,14 @@ def _read_later(reading: Reading, data: Mapping[str, Any]) -> None:
 
 def _check_cases(reading: Reading, description: Description) -> None:
     """Find what a case names and the run does not have."""
+    order = dict.fromkeys(description.order)
     for case in description.cases.values():
         named: list[tuple[Path, str]] = [(("off", place), name) for place, name in enumerate(case.off)]
         named += [(("share", name), name) for name in case.share]
         named += [(("stroke", name), name) for name in case.stroke]
         named += [(("source", name), name) for name in case.sources]
         for where, name in named:
-            among = description.sources if where[0] == "source" else description.order
+            among = description.sources if where[0] == "source" else order
             if name not in among:
                 hint = nearest(name, among)
                 reading.wrong("dangling", f"{name!r} is not an ID of this run; {hint}", (*case.path, *where))

@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from itertools import chain
 from typing import Any
 
 from budget.description.finding import Finding, Path
@@ -82,9 +83,9 @@ def _measured(values: Values, description: Description, id_: str, entry: Any) ->
     if not isinstance(entry, dict):
         values.wrong("type", f"{id_!r} must be a table; write [reading.{id_}]", path)
         return None
-    known = (*description.sources, *description.sections, *description.terminals)
-    if id_ not in known:
-        values.wrong("dangling", f"{id_!r} is not an ID of the run; {nearest(id_, known)}", path)
+    run = (description.sources, description.sections, description.terminals)
+    if not any(id_ in known for known in run):
+        values.wrong("dangling", f"{id_!r} is not an ID of the run; {nearest(id_, chain(*run))}", path)
         return None
     stated = [key for key in ("flow", "signal") if key in entry]
     if len(stated) == 2:

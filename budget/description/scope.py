@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from itertools import chain
 from typing import Any
 
 from budget.catalogue import fitting_names
@@ -37,8 +38,9 @@ class Scope:
         """Return the line of a local name; an error names the nearest where there is none."""
         found = self.lines.get((kind, name))
         if found is None:
-            known = [local for local_kind, local in self.lines if local_kind == kind]
-            hint = nearest(name, known) if known else f"add [{kind}.{name}]"
+            known = (local for local_kind, local in self.lines if local_kind == kind)
+            some = any(local_kind == kind for local_kind, _ in self.lines)
+            hint = nearest(name, known) if some else f"add [{kind}.{name}]"
             self.reading.wrong("unknown-line", f"{name!r} is not a {kind} of this design; {hint}", path)
         return found
 
@@ -88,4 +90,4 @@ class Scope:
 
     def nearest_fitting(self, name: str, kinds: Iterable[str] = ()) -> str:
         """Return the nearest known fittings, for a message."""
-        return nearest(name, [*self.own_fittings, *fitting_names(), *kinds], 3)
+        return nearest(name, chain(self.own_fittings, fitting_names(), kinds), 3)

@@ -9,20 +9,12 @@ from functools import cached_property
 from typing import Any
 
 from budget.description.finding import Finding, Path, error
+from budget.description.limits import LARGEST_FILE, LONGEST_KEY, Beyond, beyond_as_data, beyond_as_text, too_deep
 from budget.description.spans import SpanIndex
 
-LARGEST_FILE = 4 * 1024 * 1024
-"""Bytes; a run of ten thousand sections takes about two million."""
-
-DEEPEST = 32
-"""Levels of nesting; a run has five."""
+__all__ = ["LARGEST_FILE", "Source", "read_bytes", "read_text"]
 
 _PLACE = re.compile(r"\(at line (\d+), column (\d+)\)|\(at end of document\)")
-_DIGITS = re.compile(r"[0-9][0-9_]{4000}")
-_NAME = r"(?>[\w-]++|\"[^\"\n]*+\"|'[^'\n]*+')"
-_DOTTED = re.compile(rf"(?<![\w-])(?:{_NAME}[ \t]*+\.[ \t]*+){{{DEEPEST + 1}}}{_NAME}")
-_BRACKETS = re.compile(r"""[\[{\]}]|#[^\n]*+|"(?:\\.|[^"\\\n])*+"|'[^'\n]*+'""")
-_OPENERS = re.compile(r"[\[{]{33}")
 
 
 @dataclass(frozen=True)
@@ -67,24 +59,18 @@ def read_bytes(content: bytes) -> Source:
 
 
 def read_text(text: str) -> Source:
-    """Read a text; one that is not TOML has no data and one finding."""
-    if (deep := _OPENERS.search(text) or _DOTTED.search(text)) is not None:
-        message = f"brackets or dotted keys are nested more than {DEEPEST} deep; a run needs five levels"
-        return _refused("nesting", message, text, _line_column(text, deep.start()))
+    """Read a text; one that is not TOML, or is beyond a limit, has no data and one finding."""
+    beyond = beyond_as_text(text)
+    if beyond is not None:
+        return _stopped(text, beyond)
     try:
         data = tomllib.loads(text)
     except tomllib.TOMLDecodeError as wrong:
         return _syntax(text, str(wrong))
-    except (RecursionError, ValueError) as wrong:
-        code = "nesting" if isinstance(wrong, RecursionError) else "syntax"
-        what = "values are nested too deep" if code == "nesting" else "a number has too many digits"
-        digits = _DIGITS.search(text) if code == "syntax" else None
-        place = _line_column(text, digits.start()) if digits else _deepest_place(text)
-        return _refused(code, f"{what}; a run needs neither", text, place)
-    if _depth(data) > DEEPEST:
-        message = f"tables are nested more than {DEEPEST} deep; a run needs five levels"
-        return _refused("nesting", message, text, _deepest_place(text))
-    return Source(text, data)
+    except RecursionError:
+        return _stopped(text, too_deep(text))
+    beyond = beyond_as_data(text, data)
+    return Source(text, data) if beyond is None else _stopped(text, beyond)
 
 
 def _syntax(text: str, message: str) -> Source:
@@ -110,34 +96,18 @@ def _refused(code: str, message: str, text: str, place: tuple[int, int] = (1, 1)
     return Source(text, None, (error(code, message),), place)
 
 
+def _stopped(text: str, beyond: Beyond) -> Source:
+    code, message, place = beyond
+    at = _line_column(text, place) if isinstance(place, int) else _place_of(SpanIndex.of(text), place)
+    return _refused(code, message, text, at)
+
+
+def _place_of(spans: SpanIndex, path: Path) -> tuple[int, int]:
+    """Return line and column of a value, of a key that is itself too long where that begins."""
+    key = spans.key(path) if path and len(str(path[-1])) > LONGEST_KEY else None
+    return spans.locate(path) if key is None else spans.line_and_column(key.start)
+
+
 def _line_column(text: str, offset: int) -> tuple[int, int]:
     before = text[:offset]
     return before.count("\n") + 1, offset - (before.rfind("\n") + 1) + 1
-
-
-def _deepest_place(text: str) -> tuple[int, int]:
-    """Return the place of the first bracket that is nested too deep, the first character where there is none."""
-    level = 0
-    for found in _BRACKETS.finditer(text):
-        if found.group() in "[{":
-            level += 1
-        elif found.group() in "]}":
-            level -= 1
-        if level > DEEPEST:
-            return _line_column(text, found.start())
-    return 1, 1
-
-
-def _depth(data: Any) -> int:
-    deepest, level = 0, [data]
-    while level:
-        deepest += 1
-        if deepest > DEEPEST:
-            break
-        level = [
-            inner
-            for value in level
-            for inner in (value.values() if isinstance(value, dict) else value)
-            if isinstance(inner, dict | list)
-        ]
-    return deepest

@@ -9,13 +9,11 @@ from dataclasses import dataclass
 from typing import Any
 
 from budget.description.finding import Path
+from budget.description.limits import DEEPEST, beyond_as_text
 from budget.description.spans import SpanError, SpanIndex
 
 Toml = Any
 """What tomllib gives: a string, a number, a truth value, a date or time, a list or a dictionary of such."""
-
-DEEPEST = 32
-"""Levels of nested lists and tables that a new value may have."""
 
 
 class EditError(ValueError):
@@ -31,6 +29,9 @@ class Literal:
     def value(self) -> Toml:
         """Read the value. Raises EditError where the text is not exactly one value."""
         line = f"x = {self.text.strip()}"
+        beyond = beyond_as_text(line)
+        if beyond is not None:
+            raise EditError(f"{_shortened(self.text)} is not a TOML value that is read: {beyond.message}")
         try:
             data = tomllib.loads(line)
             span = SpanIndex.of(line).value(("x",))

@@ -10,6 +10,7 @@ from typing import Any
 
 from budget.catalogue import fitting_names, kinds_by_name
 from budget.description.finding import Path, dotted, warning
+from budget.description.limits import LONGEST_ID
 from budget.description.model import Case, Device, OwnFitting, SourceCase
 from budget.description.schema import FORMAT, KEYED, SINGLE
 from budget.description.values import Reading, what_is
@@ -58,8 +59,8 @@ def check_format(reading: Reading, data: Mapping[str, Any]) -> None:
 def check_id(reading: Reading, path: Path) -> None:
     """Find an ID or name that can't be shown or typed."""
     id_ = str(path[-1])
-    if not id_.strip() or len(id_) > 100:
-        reading.wrong("id", "an ID has 1 to 100 characters, not all blank; rename it", path)
+    if not id_.strip() or len(id_) > LONGEST_ID:
+        reading.wrong("id", f"an ID has 1 to {LONGEST_ID} characters, not all blank; rename it", path)
     if any(unicodedata.category(c) in ("Cc", "Cf", "Cs", "Zl", "Zp") for c in id_):
         reading.wrong("control-character", "the ID has a control character; rename it without", path)
 

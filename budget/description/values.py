@@ -8,7 +8,7 @@ import re
 import sys
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
-from itertools import pairwise
+from itertools import islice, pairwise
 from typing import Any
 
 from budget.description.finding import Finding, Path, error
@@ -31,6 +31,14 @@ from budget.units import Dimension, Quantity, UnitError, bare, bare_unit, parse,
 
 KEEPS_BASIS = frozenset({Dimension.FLOW, Dimension.PRESSURE, Dimension.VISCOSITY})
 """Dimensions that can be stated on another basis (mass, head, kinematic) and stay quantities until it is known."""
+
+MANY_WORDS = 300
+"""Known words that are all compared with a wrong one."""
+
+MOST_WORDS = 2_000
+"""Known words among which, where there are more, a few are chosen to compare."""
+
+FEW_WORDS = 30
 
 _NUMERAL = re.compile(r"[+-]?[0-9]{1,20}(\.[0-9]{1,20})?")
 
@@ -240,15 +248,27 @@ class Reading:
 
 
 def nearest(word: str, known: Iterable[str], count: int = 1) -> str:
-    """Return "did you mean ...?" with the nearest known words, or the list of them where none is near."""
-    words = list(known)
-    close = difflib.get_close_matches(word, words, n=count, cutoff=0.5)
+    """Return "did you mean ...?" with the nearest known words, or the list of them where none is near.
+
+    Of very many words only some are looked at, so that a run where everything is wrong is told so in good time.
+    """
+    words = list(islice(known, MOST_WORDS))
+    close = difflib.get_close_matches(word, _likely(word, words), n=count, cutoff=0.5)
     if close:
         return "did you mean " + " or ".join(map(repr, close)) + "?"
     if not words:
         return "none is known yet"
     shown = ", ".join(words[:12]) + (", ..." if len(words) > 12 else "")
     return f"known are {shown}"
+
+
+def _likely(word: str, words: list[str]) -> list[str]:
+    """Return the words that are worth a closer look: of many those with the same beginning or end, and length."""
+    if len(words) <= MANY_WORDS:
+        return words
+    start, end = word[:2], word[-2:]
+    alike = [other for other in words if other.startswith(start) or other.endswith(end)]
+    return sorted(alike, key=lambda other: abs(len(other) - len(word)))[:FEW_WORDS]
 
 
 def _huge(value: Any) -> bool:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from itertools import chain
 from typing import Literal
 
 from budget.description import Description, Finding, Run, Section, Terminal, error, nearest, note
@@ -138,7 +139,7 @@ class _Rooting:
             return None
         other = known.sections.get(target)
         if other is None:
-            hint = nearest(target, [*known.sources, *known.sections])
+            hint = nearest(target, chain(known.sources, known.sections))
             self._wrong("dangling", id_, f"{target!r} is neither a source nor a section; {hint}", key)
             return None
         if other.from_ is None and other.to is None:
@@ -250,7 +251,7 @@ class _Joining:
             if target in self.description.terminals:
                 self._wrong("wrong-connection", f"{target!r} is a terminal; name a section or a source", key)
             else:
-                known = [*self.numbers, *self.description.sections]
+                known = chain(self.numbers, self.description.sections)
                 self._wrong("dangling", f"{target!r} is neither a source nor a section; {nearest(target, known)}", key)
             return False
         legs = self.topology.section_legs.get(target)

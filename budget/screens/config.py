@@ -9,13 +9,13 @@
     undo = "u"
     save = ["ctrl+s", "f12"]
 
-A setting that can't be taken is reported and left at its default, so that the app always opens.
+The file itself may be a symbolic link to anywhere; a theme is a file in the folder `themes` beside it, and is named
+without a folder. A setting that can't be taken is reported and left at its default, so that the app always opens.
 """
 
 from __future__ import annotations
 
 import difflib
-import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -23,11 +23,12 @@ from typing import Any
 
 import platformdirs
 
+from budget.description.finding import dotted
 from budget.screens.keymap import Keymap, build
-from budget.screens.themes import TERMINAL, names_of_themes
+from budget.screens.settings import read_file, read_toml
+from budget.screens.themes import TERMINAL, names_of_themes, no_theme
 
 NAME = "config.toml"
-LARGEST = 256 * 1024
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,14 +55,9 @@ def config_path() -> Path:
 def load_config(path: Path | None = None) -> tuple[Config, tuple[str, ...]]:
     """Read the user's config file; without one, the defaults. Problems start with the path of the file."""
     path = path or config_path()
-    try:
-        if path.stat().st_size > LARGEST:
-            return Config(), (f"{path}: the file is larger than {LARGEST // 1024} kB; it was not read",)
-        text = path.read_bytes().decode("utf-8")
-    except (FileNotFoundError, NotADirectoryError):
-        return Config(), ()
-    except (OSError, UnicodeDecodeError) as refused:
-        return Config(), (f"{path}: could not be read: {refused}",)
+    text, problem = read_file(path)
+    if text is None:
+        return Config(), ((f"{path}: {problem}",) if problem else ())
     config, problems = read_config(text, path.parent)
     return config, tuple(f"{path}: {problem}" for problem in problems)
 
@@ -71,10 +67,9 @@ def read_config(text: str, folder: Path | None = None) -> tuple[Config, tuple[st
 
     Returns what could be taken, and one sentence for everything that could not.
     """
-    try:
-        data = tomllib.loads(text)
-    except (tomllib.TOMLDecodeError, RecursionError, ValueError) as refused:
-        return Config(), (f"it is not TOML: {refused}; every setting is at its default",)
+    data, problem = read_toml(text)
+    if data is None:
+        return Config(), (f"{problem}; every setting is at its default",)
     problems: list[str] = []
     settings: dict[str, Any] = {}
     for key, value in data.items():
@@ -105,6 +100,8 @@ def _check(key: str, value: object, folder: Path | None) -> str:
         names = names_of_themes(folder)
         if isinstance(value, str) and value in names:
             return ""
-        return f"theme: there is no theme {value!r}; there are {', '.join(names)}"
+        return no_theme(value, names)
     close = difflib.get_close_matches(key, ["theme", "mouse", "ascii", "letters", "keys"], n=1, cutoff=0.5)
-    return f"{key}: there is no such setting; " + (f"did you mean {close[0]}?" if close else "remove it")
+    return f"{dotted((key[:60],))}: there is no such setting; " + (
+        f"did you mean {close[0]}?" if close else "remove it"
+    )

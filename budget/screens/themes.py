@@ -6,8 +6,8 @@ is shipped, the config folder may hold more, and one is built in that follows th
 
 from __future__ import annotations
 
-import tomllib
-from collections.abc import Mapping
+import os
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
@@ -15,6 +15,11 @@ from pathlib import Path
 from rich.color import ColorSystem
 from rich.errors import StyleSyntaxError
 from rich.style import Style
+
+from budget.description.finding import dotted
+from budget.description.values import what_is
+from budget.report.plain import plain
+from budget.screens.settings import lies_within, read_file, read_toml
 
 TERMINAL = "terminal"
 """The built-in theme: the terminal's own colours, with bold, reverse and a colour or two that any palette has."""
@@ -89,44 +94,58 @@ def names_of_themes(folder: Path | None = None) -> tuple[str, ...]:
     names = [TERMINAL]
     for place in (shipped_folder(), *((folder / "themes",) if folder else ())):
         if place.is_dir():
-            names += sorted(path.stem for path in place.glob("*.toml") if path.stem not in names)
+            found = sorted(path.stem for path in place.glob("*.toml") if path.stem.isprintable())
+            names += [name for name in found if name not in names]
     return tuple(names)
 
 
+def no_theme(name: object, names: Iterable[str]) -> str:
+    """Say that there is no theme of a name, and which there are."""
+    shown = repr(name[:60] if isinstance(name, str) else what_is(name))
+    return f"theme: there is no theme {shown}; there are {', '.join(names)}"
+
+
 def load_theme(name: str, folder: Path | None = None) -> tuple[Theme, tuple[str, ...]]:
-    """Return a theme by name; the built-in one, with the reasons, where it can't be used."""
+    """Return a theme by name; the built-in one, with the reasons, where it can't be used.
+
+    A theme of one's own is a file directly in `folder`/themes. It may be a symbolic link to another file in `folder`,
+    which may itself be one, but not to anywhere else: what a settings file names is read from there alone.
+    """
+    names = names_of_themes(folder)
     if name == TERMINAL:
         return terminal_theme(), ()
-    for place in (*((folder / "themes",) if folder else ()), shipped_folder()):
-        path = place / f"{name}.toml"
-        if not path.is_file():
-            continue
-        try:
-            theme, problems = read_theme(path.read_bytes().decode("utf-8"), name)
-        except (OSError, UnicodeDecodeError) as refused:
-            return terminal_theme(), (f"{path}: could not be read: {refused}",)
-        if theme is not None:
-            return theme, ()
-        return terminal_theme(), tuple(f"{path}: {problem}" for problem in problems)
-    return terminal_theme(), (f"theme: there is no theme {name!r}; there are {', '.join(names_of_themes(folder))}",)
+    if name not in names:
+        return terminal_theme(), (no_theme(name, names),)
+    path = shipped_folder() / f"{name}.toml"
+    own = folder / "themes" / f"{name}.toml" if folder else path
+    if folder and os.path.lexists(own):
+        path = own
+        if not lies_within(path, folder):
+            return terminal_theme(), (f"{path}: it leads out of {folder}; copy the theme there",)
+    text, problem = read_file(path)
+    if text is None:
+        return terminal_theme(), (f"{path}: {problem or 'there is no such file'}",)
+    theme, problems = read_theme(text, name)
+    return theme or terminal_theme(), tuple(f"{path}: {problem}" for problem in problems)
 
 
 def read_theme(text: str, name: str) -> tuple[Theme | None, tuple[str, ...]]:
     """Read a theme's TOML. None with the reasons where a role is unknown, missing, no style, or not legible."""
-    try:
-        data = tomllib.loads(text)
-    except (tomllib.TOMLDecodeError, RecursionError, ValueError) as refused:
-        return None, (f"it is not TOML: {refused}",)
-    problems = [f"{key}: there is no such setting" for key in data if key not in ("title", "dark", "styles")]
+    data, problem = read_toml(text)
+    if data is None:
+        return None, (problem,)
+    problems = [
+        f"{dotted((key[:60],))}: there is no such setting" for key in data if key not in ("title", "dark", "styles")
+    ]
     styles = data.get("styles")
     if not isinstance(styles, dict) or not isinstance(data.get("dark"), bool):
         return None, (*problems, "write dark = true or false, and a table [styles]")
-    problems += [f"styles.{role}: there is no such role" for role in styles if role not in ROLES]
+    problems += [f"{dotted(('styles', role[:60]))}: there is no such role" for role in styles if role not in ROLES]
     problems += [f"styles.{role}: it is missing ({ROLES[role]})" for role in ROLES if role not in styles]
     read = {role: _read_style(role, styles[role], problems) for role in ROLES if role in styles}
     if problems:
         return None, tuple(problems)
-    theme = Theme(name, str(data.get("title", name)), data["dark"], read)
+    theme = Theme(name, plain(str(data.get("title", name)))[:60], data["dark"], read)
     problems += _illegible(theme)
     return (None if problems else theme), tuple(problems)
 
@@ -160,7 +179,8 @@ def _read_style(role: str, words: object, problems: list[str]) -> Style:
     try:
         style = Style.parse(words if isinstance(words, str) else "?")
     except StyleSyntaxError:
-        problems.append(f'styles.{role}: {words!r} is no style; write "bold #ffffff on #204060"')
+        shown = repr(words[:60]) if isinstance(words, str) else what_is(words)
+        problems.append(f'styles.{role}: {shown} is no style; write "bold #ffffff on #204060"')
         return Style()
     if style.blink or style.blink2 or style.conceal or style.link:
         problems.append(f"styles.{role}: blink, conceal and links are not allowed")

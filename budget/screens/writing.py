@@ -9,6 +9,7 @@ from functools import lru_cache
 from typing import Any
 
 from budget.description.finding import Level, Path
+from budget.description.limits import LONGEST_NUMBER
 from budget.description.schema import (
     KEYED,
     SINGLE,
@@ -158,7 +159,7 @@ def value_of(typed: str, path: Path, before: str) -> Any:
             return text
     try:
         return tomllib.loads(f"x = {text}")["x"]
-    except tomllib.TOMLDecodeError:
+    except (ValueError, RecursionError):
         raise WritingError(f"write it as in the file, {_example(spec)}") from None
 
 
@@ -209,6 +210,8 @@ def index_of(text: str) -> SpanIndex:
 def _number(text: str) -> int | float:
     if not _NUMBER.fullmatch(text):
         raise WritingError("write a plain number" if text else "write a number")
+    if len(text) > LONGEST_NUMBER:
+        raise WritingError(f"write at most {LONGEST_NUMBER} characters")
     return int(text) if re.fullmatch(r"[+-]?[0-9]+", text) else float(text)
 
 

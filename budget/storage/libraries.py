@@ -14,6 +14,9 @@ from budget.storage.files import StorageError, load
 MOST = 50
 """Libraries that one run may name."""
 
+LARGEST_TOGETHER = 4 * LARGEST_FILE
+"""Bytes of all libraries of a run together."""
+
 _URL = re.compile(r"[A-Za-z][A-Za-z0-9+.-]+:")
 
 
@@ -24,7 +27,13 @@ def read_libraries(source: SourceText, path: Path | None) -> tuple[Library, ...]
     the run (the nearest folder above it with a .git, else the run's own folder) or in the user's settings folder.
     Nothing is raised: a library that can't be read says why.
     """
-    return tuple(_read(written, path, place) for place, written in enumerate(library_paths(source)))
+    read: list[Library] = []
+    left = LARGEST_TOGETHER
+    for place, written in enumerate(library_paths(source)):
+        library, size = _read(written, path, place, left)
+        read.append(library)
+        left -= size
+    return tuple(read)
 
 
 def renew(source: SourceText, path: Path | None, known: tuple[Library, ...]) -> tuple[Library, ...]:
@@ -34,28 +43,37 @@ def renew(source: SourceText, path: Path | None, known: tuple[Library, ...]) -> 
     return read_libraries(source, path)
 
 
-def _read(written: str, path: Path | None, place: int) -> Library:
+def _read(written: str, path: Path | None, place: int, left: int) -> tuple[Library, int]:
+    """Return a library and its size, where so many bytes may still be read."""
+    content, fault = _content(written, path, place)
+    if not fault and len(content) > left:
+        fault = f"would make more than {LARGEST_TOGETHER / 1e6:.1f} MB of libraries; name fewer, or split them"
+    return (Library(written, fault=fault), 0) if fault else (Library(written, read_bytes(content)), len(content))
+
+
+def _content(written: str, path: Path | None, place: int) -> tuple[bytes, str]:
+    """Return the bytes of a library, or none and the reason why."""
     fault = _fault_of(written, path, place)
     if fault or path is None:
-        return Library(written, fault=fault)
+        return b"", fault
     run = os.path.realpath(path)
     folder = Path(run).parent
     target = Path(os.path.realpath(folder / written))
     allowed = (_repository(folder), *_settings())
     if not any(target.is_relative_to(place) for place in allowed):
-        return Library(written, fault="lies outside the run's repository and the settings folder; copy it into one")
+        return b"", "lies outside the run's repository and the settings folder; copy it into one"
     if str(target) == run:
-        return Library(written, fault="is the run itself; name a file of pipe, duct, fitting and device tables")
+        return b"", "is the run itself; name a file of pipe, duct, fitting and device tables"
     try:
         content, _ = load(target)
     except StorageError as refused:
         why = refused.__cause__
         if isinstance(why, OSError):
-            return Library(written, fault=f"could not be read: {why.strerror or why}; correct the path")
-        return Library(written, fault="is not a regular file; name a TOML file")
+            return b"", f"could not be read: {why.strerror or why}; correct the path"
+        return b"", "is not a regular file; name a TOML file"
     if len(content) > LARGEST_FILE:
-        return Library(written, fault=f"has more than {LARGEST_FILE / 1e6:.1f} MB, which is not read; split it")
-    return Library(written, read_bytes(content))
+        return b"", f"has more than {LARGEST_FILE / 1e6:.1f} MB, which is not read; split it"
+    return content, ""
 
 
 def _fault_of(written: str, path: Path | None, place: int) -> str:

@@ -1,6 +1,7 @@
 """Edits: the text changes where it must, and nowhere else."""
 
 import difflib
+import time
 import tomllib
 from typing import Any
 
@@ -493,7 +494,7 @@ def test_a_preview_is_refused_too_where_the_text_has_no_place_for_it(edit: Edit,
 
 def test_a_text_that_cannot_be_read_is_refused() -> None:
     assert "cannot be read" in refused(SetValue(("a",), 1), "a = ")
-    assert "cannot be edited" in refused(SetValue(("b",), 1), f"a = {'[' * 80}{']' * 80}")
+    assert "cannot be read: brackets" in refused(SetValue(("b",), 1), f"a = {'[' * 80}{']' * 80}")
 
 
 def test_a_file_with_nan_in_it_can_be_edited() -> None:
@@ -651,3 +652,51 @@ def test_renaming_and_copying_in_any_document(text: str, data: st.DataObject) ->
         copied = tomllib.loads(apply_to_text(text, CopyTable(table, place)))
         copy = value_of(copied, place) if isinstance(table[-1], str) else value_of(copied, place)[-1]
         assert copy == value_of(before, table)
+
+
+def test_a_copy_into_what_is_no_list_is_refused() -> None:
+    text = "a = 1\n[[b]]\nc = 1\n"
+    assert "a is not a list" in refused(CopyTable(("b", 0), ("a",)), text)
+
+
+def test_a_text_beyond_a_limit_is_not_made() -> None:
+    assert "more than 50 characters" in refused(SetValue(("a",), Literal("9" * 60)), "a = 1\n")
+    assert "more than 50 characters" in refused(SetValue(("b",), Literal("9" * 5000)), "a = 1\n")
+
+
+def test_many_tables_are_taken_out_of_one_in_good_time() -> None:
+    text = "".join(f"# {n}\n[section.S{n}]\nlength = {n}\n\n" for n in range(2_000)) + "[design]\ntitle = 'a'\n"
+    start = time.process_time()
+    left = apply_to_text(text, SetValue(("section",), {"S7": {"length": 8}}))
+    assert left == "# 7\n[section.S7]\nlength = 8\n\n[design]\ntitle = 'a'\n"
+    tables = "[[a]]\nb = 1\n" * 2_000
+    assert apply_to_text(tables, SetValue(("a",), [{"b": 1}])) == "[[a]]\nb = 1\n"
+    assert time.process_time() - start < 2.0
+
+
+def test_many_references_are_renamed_in_good_time() -> None:
+    text = "[device.V]\nk = 1\n" + "".join(f"[section.S{n}]\nbalance = 'V'\n" for n in range(4_000))
+    start = time.process_time()
+    renamed = apply_to_text(text, rename_everywhere(text, "device", "V", "W"))
+    assert renamed == text.replace("'V'", "'W'").replace("device.V", "device.W")
+    assert time.process_time() - start < 3.0
+
+
+def test_so_many_keys_are_not_added_at_once() -> None:
+    text = "[section.A]\n"
+    assert "at once" in refused(SetValue(("section",), {f"S{n}": {} for n in range(300)}), text)
+
+
+@pytest.mark.parametrize("edit", [SetValue((), 1), AddTable(()), Unset(()), RenameKey((), "a"), CopyTable((), ("a",))])
+@pytest.mark.parametrize("verify", [True, False])
+def test_an_edit_of_nothing_is_refused(edit: Edit, *, verify: bool) -> None:
+    with pytest.raises(EditError, match="a key is needed"):
+        apply_to_text("a = 1\n[b]\n", edit, verify=verify)
+    with pytest.raises(EditError, match="a key is needed for the copy"):
+        apply_to_text("[b]\n", CopyTable(("b",), (0,)), verify=verify)
+
+
+@pytest.mark.parametrize("verify", [True, False])
+def test_changes_to_the_copy_of_a_value_are_refused(*, verify: bool) -> None:
+    with pytest.raises(EditError, match="not one table"):
+        apply_to_text("a = 1.5\n[b]\n", CopyTable(("a",), ("c",), {"d": None}), verify=verify)

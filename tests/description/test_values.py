@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import time
 from typing import Any
 
 import pytest
@@ -152,3 +153,14 @@ def test_every_table_of_the_format_is_known() -> None:
     assert set(TOP) == {"format", "library"} | set(SINGLE) | set(KEYED)
     assert all((SINGLE | KEYED).values())
     assert {"from", "to", "size", "length", "fittings", "item"} <= set(KEYED["section"])
+
+
+def test_among_very_many_words_the_nearest_is_found_in_good_time() -> None:
+    known = [f"S{number}" for number in range(50_000)]
+    assert nearest("S12E", known).startswith("did you mean 'S12")
+    assert nearest("s1234", known) == "did you mean 'S1234'?"
+    assert nearest("elbow", known).startswith("known are S0, S1, ")
+    start = time.process_time()
+    for number in range(1_000):
+        nearest(f"X{number}", known)
+    assert time.process_time() - start < 2.0

@@ -45,7 +45,7 @@ def test_settings_are_taken() -> None:
         ('[keys]\nleave = "q"', 'a field needs "q"'),
         ("[keys]\nquit = []", "quit: it needs a key"),
         ("[keys]\nundo = 4", "write a key or a list of keys"),
-        ("theme = [", "it is not TOML"),
+        ("theme = [", "line 1, column 10: the file is not TOML"),
     ],
 )
 def test_what_is_wrong_is_told(text: str, told: str) -> None:
