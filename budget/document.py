@@ -12,7 +12,7 @@ from budget.description import Description, Finding, Level, Library, SourceText,
 from budget.description.history import History
 from budget.network import Budget, evaluate
 from budget.report.located import Located, locate
-from budget.storage import Look, Stamp, StorageError, load_text, look, read_libraries, renew, save
+from budget.storage import Look, Stamp, StorageError, load_text, look, read_again, read_libraries, renew, save
 
 if TYPE_CHECKING:
     from budget.description.edits import Edit
@@ -198,7 +198,7 @@ class Document:
         self.path, self._saved, self._stamp = saving.path, saving.text, stamp
         self.on_disk = Look("same", stamp=stamp)
         self.read_only = ""
-        self.read_libraries()
+        self.take_libraries(self.look_at_libraries())
 
     def save(self, path: FilePath | None = None, *, over: bool = False) -> None:
         """Save, whole or not at all. Raises StorageError; ChangedOnDisk where the file was changed and not `over`."""
@@ -242,13 +242,18 @@ class Document:
             self._replace(seen.source.text, "reload from disk", mark)
         return self.snapshot is not before
 
-    def read_libraries(self) -> Snapshot:
-        """Read the libraries that the run names anew, as they are on disk by now."""
-        libraries = read_libraries(read_text(self.snapshot.text), self.path)
-        if libraries != self._libraries:
-            self._libraries = libraries
-            self._show(self.snapshot.text)
-        return self.snapshot
+    def look_at_libraries(self) -> tuple[Library, ...]:
+        """Look what the libraries that the run names are by now. May run in any thread; nothing changes."""
+        return read_again(self._libraries, self.path)
+
+    def take_libraries(self, libraries: tuple[Library, ...]) -> bool:
+        """Compute the run with its libraries as they were seen; return whether one of them had changed."""
+        names = [[library.written for library in some] for some in (libraries, self._libraries)]
+        if libraries == self._libraries or names[0] != names[1]:
+            return False
+        self._libraries = libraries
+        self._show(self.snapshot.text)
+        return True
 
     def _check_open(self) -> None:
         if self.read_only:

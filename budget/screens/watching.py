@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from budget.description import Library
 from budget.report.plain import plain
 from budget.screens import unsaved
 from budget.screens.background import in_background
@@ -22,11 +23,15 @@ def look(app: BudgetApp, *, anyway: bool = False) -> None:
     if (app.looking and not anyway) or app.saving is not None:
         return
     app.looking = True
-    stamp = app.document.stamp
-    in_background(app, app.document.look, lambda seen: _meet(app, seen, stamp))
+    stamp, document = app.document.stamp, app.document
+
+    def seen() -> tuple[Look, tuple[Library, ...]]:
+        return document.look(), document.look_at_libraries()
+
+    in_background(app, seen, lambda found: _meet(app, *found, stamp))
 
 
-def _meet(app: BudgetApp, seen: Look, stamp: Stamp | None) -> None:
+def _meet(app: BudgetApp, seen: Look, libraries: tuple[Library, ...], stamp: Stamp | None) -> None:
     app.looking = False
     document = app.document
     if app.saving is not None or document.stamp != stamp:
@@ -35,6 +40,11 @@ def _meet(app: BudgetApp, seen: Look, stamp: Stamp | None) -> None:
     if busy and seen.what != "same":
         return  # the hands are at something that a reload would take away; it is looked at again soon
     known, before = document.on_disk.what, document.snapshot
+    if not busy and document.take_libraries(libraries):
+        app.show(document.snapshot, before)
+        app.tell()
+        app.say("a library of the run was changed on disk and read again")
+        before = document.snapshot
     if document.meet(seen, app.ledger.mark):
         app.reload_text()
         app.show(document.snapshot, before)

@@ -1,7 +1,7 @@
 """Files: reading within limits, saving so that the file on disk is always whole, and what is kept of unsaved work."""
 
 from budget.storage.files import ChangedOnDisk, Look, Stamp, StorageError, load, load_text, look, save
-from budget.storage.libraries import read_libraries, renew
+from budget.storage.libraries import read_again, read_libraries, renew
 
 __all__ = [
     "ChangedOnDisk",
@@ -11,6 +11,7 @@ __all__ = [
     "load",
     "load_text",
     "look",
+    "read_again",
     "read_libraries",
     "renew",
     "save",

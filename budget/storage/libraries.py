@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import re
+from collections.abc import Mapping, Sequence
 from pathlib import Path, PureWindowsPath
 
 from budget.description import SourceText, read_bytes
@@ -27,13 +28,13 @@ def read_libraries(source: SourceText, path: Path | None) -> tuple[Library, ...]
     the run (the nearest folder above it with a .git, else the run's own folder) or in the user's settings folder.
     Nothing is raised: a library that can't be read says why.
     """
-    read: list[Library] = []
-    left = LARGEST_TOGETHER
-    for place, written in enumerate(library_paths(source)):
-        library, size = _read(written, path, place, left)
-        read.append(library)
-        left -= size
-    return tuple(read)
+    return _read_all(library_paths(source), path, {})
+
+
+def read_again(known: tuple[Library, ...], path: Path | None) -> tuple[Library, ...]:
+    """Return libraries as they are on disk by now; those that did not change are the very same."""
+    now = _read_all([library.written for library in known], path, {library.written: library for library in known})
+    return known if now == known else now
 
 
 def renew(source: SourceText, path: Path | None, known: tuple[Library, ...]) -> tuple[Library, ...]:
@@ -43,12 +44,21 @@ def renew(source: SourceText, path: Path | None, known: tuple[Library, ...]) -> 
     return read_libraries(source, path)
 
 
-def _read(written: str, path: Path | None, place: int, left: int) -> tuple[Library, int]:
-    """Return a library and its size, where so many bytes may still be read."""
-    content, fault = _content(written, path, place)
-    if not fault and len(content) > left:
-        fault = f"would make more than {LARGEST_TOGETHER / 1e6:.1f} MB of libraries; name fewer, or split them"
-    return (Library(written, fault=fault), 0) if fault else (Library(written, read_bytes(content)), len(content))
+def _read_all(names: Sequence[str], path: Path | None, known: Mapping[str, Library]) -> tuple[Library, ...]:
+    read: list[Library] = []
+    left = LARGEST_TOGETHER
+    for place, written in enumerate(names):
+        content, fault = _content(written, path, place)
+        if not fault and len(content) > left:
+            fault = f"would make more than {LARGEST_TOGETHER / 1e6:.1f} MB of libraries; name fewer, or split them"
+        if fault:
+            read.append(Library(written, fault=fault))
+            continue
+        left -= len(content)
+        before = known.get(written)
+        same = before is not None and before.source is not None and before.source.text.encode("utf-8") == content
+        read.append(before if before is not None and same else Library(written, read_bytes(content)))
+    return tuple(read)
 
 
 def _content(written: str, path: Path | None, place: int) -> tuple[bytes, str]:

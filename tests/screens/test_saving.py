@@ -183,6 +183,26 @@ def test_a_file_that_others_change_is_read_again_and_the_cursor_stays(play: Stag
     play(act)
 
 
+def test_a_library_that_others_change_is_read_again(play: Stage, tmp_path: Path) -> None:
+    library = tmp_path / "fittings.toml"
+    library.write_text('format = 1\n[fitting."pot strainer"]\nk = 5\n')
+    text = SMALL.replace("format = 1\n", 'format = 1\nlibrary = ["fittings.toml"]\n', 1)
+    text = text.replace(
+        '{ "elbow 90" = 4, "gate valve" = 1 }', '{ "elbow 90" = 4, "gate valve" = 1, "pot strainer" = 1 }'
+    )
+    assert text.count("pot strainer") == 1
+
+    async def act(hands: Hands) -> None:
+        required = hands.app.document.snapshot.budget.sources["P1"].required
+        library.write_text('format = 1\n[fitting."pot strainer"]\nk = 50\n')
+        await look(hands)
+        assert hands.app.document.snapshot.budget.sources["P1"].required > required
+        assert "library" in hands.foot
+        assert not hands.app.document.dirty
+
+    play(act, text)
+
+
 def test_what_is_being_written_is_not_taken_away_by_a_reload(play: Stage) -> None:
     async def act(hands: Hands) -> None:
         await hands.at("M1")

@@ -236,12 +236,27 @@ def test_a_document_reads_libraries_anew_when_the_run_names_others(project: Path
     assert document.snapshot.description.findings == ()
 
 
-def test_a_document_reads_libraries_anew_when_it_is_told_to(project: Path) -> None:
+def test_a_document_takes_libraries_as_they_are_by_now_when_it_is_told_to(project: Path) -> None:
     document = Document.open(project / "runs" / "run.toml")
-    first = document.snapshot
-    assert document.read_libraries() is first
-    (project / "office" / "valves.toml").unlink()
-    assert "library" in {one.code for one in document.read_libraries().findings}
+    first, known = document.snapshot, document.look_at_libraries()
+    assert document.look_at_libraries() is known
+    assert not document.take_libraries(known)
+    assert document.snapshot is first
+    office = project / "office" / "valves.toml"
+    office.write_text(VALVES.replace("least_drop = 3", "least_drop = 9"))
+    assert document.take_libraries(document.look_at_libraries())
+    assert least(document.snapshot.description) == 9000.0
+    office.unlink()
+    assert document.take_libraries(document.look_at_libraries())
+    assert "library" in {one.code for one in document.snapshot.findings}
+
+
+def test_libraries_seen_for_other_names_are_not_taken(project: Path) -> None:
+    document = Document.open(project / "runs" / "run.toml")
+    seen = document.look_at_libraries()
+    document.apply(budget.Unset(("library",)), "library")
+    assert not document.take_libraries(seen)
+    assert "unknown-device" in {one.code for one in document.snapshot.findings}
 
 
 def least(description: budget.Description) -> float:
