@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
-from budget.description import Description, Device, Finding, Item
+from budget.description import Description, Device, Finding, Item, Source
 from budget.network.media import Media
 from budget.network.topology import Leg, Topology
 from budget.physics.arrays import Array, Flags, Indices
@@ -208,7 +209,7 @@ class Links:
         return len(self.first)
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)
 class Layout:
     """Everything that computing needs, as arrays."""
 
@@ -229,6 +230,11 @@ class Layout:
     end: Ints
     """Each leg serves order[start:end]."""
     findings: tuple[Finding, ...]
+
+    @cached_property
+    def sources(self) -> tuple[Source, ...]:
+        """The sources by their numbers."""
+        return tuple(self.description.sources.values())
 
     def served(self, leg: int) -> Ints:
         """Return the numbers of the terminals whose path uses a leg."""

@@ -32,7 +32,7 @@ class Budget:
         """Keep the arrays that every record is read from."""
         self.run = run
         """The arrays behind the records."""
-        self._ids = tuple(run.layout.description.sources)
+        self._numbers = {id_: number for number, id_ in enumerate(run.layout.description.sources)}
 
     @cached_property
     def _authority(self) -> dict[int, tuple[float | None, float | None]]:
@@ -51,7 +51,7 @@ class Budget:
     @cached_property
     def sources(self) -> Mapping[str, SourceResult]:
         """What each pump or fan must deliver, by ID."""
-        return _Lazy(self._ids, lambda id_: source_result(self.run, self._ids.index(id_)))
+        return _Lazy(tuple(self._numbers), lambda id_: source_result(self.run, self._numbers[id_]))
 
     @cached_property
     def sections(self) -> Mapping[str, SectionResult]:

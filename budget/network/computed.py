@@ -4,19 +4,21 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from budget.description.schema import HEADINGS
-from budget.network.arrays import Layout
+from budget.network.arrays import Floats, Layout
 from budget.network.circuits import Circuits, find_circuits
 from budget.network.hydraulics import Hydraulics, flow_and_drops
+from budget.network.leakage import leakages
 from budget.network.media import pascals
 from budget.network.results import ItemResult
 from budget.network.takeup import TakeUp, take_up
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)
 class Computed:
     """The layout of a run, its flows and drops, its circuits, and what its devices take up."""
 
@@ -24,6 +26,40 @@ class Computed:
     drops: Hydraulics
     circuits: Circuits
     take_up: TakeUp
+
+    @cached_property
+    def leakage(self) -> Floats:
+        """The greatest leakage of each leg, m3/s; NaN where it states no tightness class."""
+        return leakages(self.layout, self.drops, self.circuits)
+
+    @cached_property
+    def outermost(self) -> tuple[int, ...]:
+        """By zone the outermost one that it lies within: itself where it lies within none."""
+        outer = [zone.outer for zone in self.layout.zones]
+        found: list[int] = []
+        for zone in range(len(outer)):
+            at = zone
+            while outer[at] >= 0:
+                at = outer[at]
+            found.append(at)
+        return tuple(found)
+
+    @cached_property
+    def zones_of(self) -> tuple[tuple[int, ...], ...]:
+        """By source its outermost zones."""
+        found: list[list[int]] = [[] for _ in self.layout.sources]
+        for number, zone in enumerate(self.layout.zones):
+            if zone.outer < 0:
+                found[zone.source].append(number)
+        return tuple(map(tuple, found))
+
+    @cached_property
+    def tied(self) -> dict[int, list[int]]:
+        """By outermost zone the terminals that end an index circuit, where there are any."""
+        found: dict[int, list[int]] = {}
+        for terminal in np.flatnonzero(self.circuits.index).tolist():
+            found.setdefault(self.outermost[int(self.layout.terminals.zone[terminal])], []).append(terminal)
+        return found
 
     def item_results(self, carrier: int) -> tuple[ItemResult, ...]:
         """Return the items that a leg, terminal or source carries, in the order of the file."""
@@ -41,11 +77,7 @@ class Computed:
 
     def required_of(self, source: int) -> float:
         """Return the required pressure of a source, Pa; NaN where no circuit can be computed."""
-        sides = [
-            float(self.circuits.required[number])
-            for number, zone in enumerate(self.layout.zones)
-            if zone.source == source and zone.outer < 0
-        ]
+        sides = [float(self.circuits.required[zone]) for zone in self.zones_of[source]]
         known = [side for side in sides if not math.isnan(side)]
         if not known:
             return math.nan
@@ -54,7 +86,7 @@ class Computed:
 
     def source_set_point(self, source: int) -> float | None:
         """Return the differential that a source controls, Pa; None where it controls none."""
-        described = list(self.layout.description.sources.values())[source]
+        described = self.layout.sources[source]
         if described.controls != "differential" or described.set_point is None:
             return None
         return pascals(described.set_point, self.layout.media[source].supply.density)

@@ -13,7 +13,7 @@ from budget.description.schema import HEADINGS
 from budget.network.arrays import DeviceUse
 from budget.network.computed import Computed
 from budget.network.layout import neck_area
-from budget.network.leakage import leakages, source_leakage
+from budget.network.leakage import source_leakage
 from budget.network.media import Media, pascals
 from budget.network.results import FluidResult, SourceResult
 from budget.physics.power import (
@@ -36,17 +36,10 @@ class IndexPath:
 
 def index_paths(run: Computed, source: int) -> Iterator[IndexPath]:
     """Return the index path of each outermost zone of a source: one, or one a side that carries terminals."""
-    layout = run.layout
-    for number, zone in enumerate(layout.zones):
-        if zone.outer >= 0 or zone.source != source:
-            continue
-        tied = [
-            terminal
-            for terminal in np.flatnonzero(run.circuits.index).tolist()
-            if _outermost(run, int(layout.terminals.zone[terminal])) == number
-        ]
-        if tied:
-            yield IndexPath(tied[0], tuple(path_legs(run, tied[0])), number)
+    for zone in run.zones_of[source]:
+        if zone in run.tied:
+            first = run.tied[zone][0]
+            yield IndexPath(first, tuple(path_legs(run, first)), zone)
 
 
 def path_legs(run: Computed, terminal: int) -> list[int]:
@@ -55,12 +48,6 @@ def path_legs(run: Computed, terminal: int) -> list[int]:
     out = layout.topology.chain(int(layout.terminals.out[terminal]))
     back = layout.topology.chain(int(layout.terminals.back[terminal]))
     return out[::-1] + back
-
-
-def _outermost(run: Computed, zone: int) -> int:
-    while run.layout.zones[zone].outer >= 0:
-        zone = run.layout.zones[zone].outer
-    return zone
 
 
 def spent_by_heading(run: Computed, source: int) -> dict[str, float]:
@@ -105,11 +92,10 @@ def fluid_result(media: Media) -> FluidResult:
 def source_result(run: Computed, number: int) -> SourceResult:
     """Return the duty of one source and all that is reported with it."""
     layout, drops = run.layout, run.drops
-    source = list(layout.description.sources.values())[number]
+    source = layout.sources[number]
     kind = layout.topology.kinds[number]
     media = layout.media[number]
-    zones = [n for n, zone in enumerate(layout.zones) if zone.source == number and zone.outer < 0]
-    sides = [float(run.circuits.required[zone]) for zone in zones]
+    sides = [float(run.circuits.required[zone]) for zone in run.zones_of[number]]
     items = float(drops.source_items[number])
     paths = list(index_paths(run, number))
     required = run.required_of(number)
@@ -150,7 +136,7 @@ def source_result(run: Computed, number: int) -> SourceResult:
         hydraulic_power=hydraulic,
         shaft_power=shaft,
         electrical_power=electrical,
-        leakage=source_leakage(run, leakages(run), number),
+        leakage=source_leakage(layout, run.leakage, number),
         sfp=None if electrical is None else float(specific_fan_power(electrical, flow * factor)),
         spent=spent_by_heading(run, number),
         budget={

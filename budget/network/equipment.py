@@ -29,6 +29,9 @@ from budget.network.topology import Leg, Topology
 K, KV, DROP, LENGTH = range(4)
 """Forms in which the drop of an item is stated."""
 
+ITEM = 4
+"""Keys that lead to an item: the kind of its owner, the owner, `item`, its number."""
+
 
 class EquipmentRows:
     """Collects the items and devices of sections, terminals and sources."""
@@ -49,6 +52,7 @@ class EquipmentRows:
         self.terminals = terminals
         self.broken = broken
         self.findings = findings
+        self._broken_items = {finding.path[:ITEM] for finding in description.findings if finding.level == "error"}
         self._first_terminal = len(topology.legs)
         self._first_source = self._first_terminal + len(terminals)
         self._numbers: dict[str, list[float]] = defaultdict(list)
@@ -212,10 +216,7 @@ class EquipmentRows:
         self._items.append(item)
 
     def _is_broken(self, item: Item) -> bool:
-        return "item" in self.broken.get(item.path[:2], set()) and any(
-            finding.path[: len(item.path)] == item.path and finding.level == "error"
-            for finding in self.description.findings
-        )
+        return item.path in self._broken_items
 
     def _form(self, item: Item, density: float) -> tuple[int, float]:
         if item.k is not None:

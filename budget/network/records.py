@@ -10,7 +10,6 @@ from budget.description import Geometry
 from budget.network.arrays import DeviceUse, Floats
 from budget.network.circuits import path_sums
 from budget.network.computed import Computed
-from budget.network.leakage import leakages
 from budget.network.link_records import losses_at
 from budget.network.results import DeviceResult, LegResult, LossResult, RunResult, SectionResult, TerminalResult
 from budget.network.takeup import adjust
@@ -34,7 +33,7 @@ class Records:
         self._authority = authority
         self._devices = {use.carrier: number for number, use in enumerate(run.layout.devices)}
         self._numbers = {id_: number for number, id_ in enumerate(run.layout.terminals.ids)}
-        self._leakage = leakages(run)
+        self._leakage = run.leakage
         junctions = run.layout.junctions
         self._junctions: dict[int, int] = {}
         for legs, counts in (

@@ -66,8 +66,10 @@ def connect(description: Description) -> Topology:
     rooted = _Rooting(description, topology).run()
     for id_ in rooted:
         _add_section_legs(description, topology, rooted, id_)
+    numbers = {id_: number for number, id_ in enumerate(description.sources)}
+    unpaired = _find_unpaired(description, rooted)
     for terminal in description.terminals.values():
-        _Joining(description, topology, rooted, terminal).run()
+        _Joining(description, topology, rooted, numbers, unpaired, terminal).run()
     _find_idle(description, topology, rooted)
     return topology
 
@@ -204,17 +206,35 @@ def _adder(topology: Topology, owner: str, *, run_out: bool, source: int) -> Cal
     return add
 
 
+def _find_unpaired(description: Description, rooted: dict[str, int]) -> dict[str, str]:
+    """Return by section the nearest one, itself or upstream of it, that has no return leg of its own."""
+    found: dict[str, str] = {}
+    for id_ in rooted:  # what a section hangs on comes before it
+        section = description.sections[id_]
+        nearest_one = id_ if not section.run.paired else found.get(section.from_ or "")
+        if nearest_one is not None:
+            found[id_] = nearest_one
+    return found
+
+
 class _Joining:
     """Hangs one terminal on the legs of its path."""
 
     def __init__(
-        self, description: Description, topology: Topology, rooted: dict[str, int], terminal: Terminal
+        self,
+        description: Description,
+        topology: Topology,
+        rooted: dict[str, int],
+        numbers: dict[str, int],
+        unpaired: dict[str, str],
+        terminal: Terminal,
     ) -> None:
         self.description = description
         self.topology = topology
         self.rooted = rooted
+        self.numbers = numbers
+        self.unpaired = unpaired
         self.terminal = terminal
-        self.numbers = {id_: number for number, id_ in enumerate(description.sources)}
 
     def run(self) -> None:
         """Add the run-out's legs and note where the path starts and ends."""
@@ -274,13 +294,10 @@ class _Joining:
 
     def _paired_back(self, source: int) -> tuple[int, int] | None:
         """Return the return leg of the section that feeds the terminal; an error names the unpaired one."""
-        at = feeding = self.terminal.from_ or ""
-        while at not in self.numbers:
-            section = self.description.sections[at]
-            if not section.run.paired:
-                self._wrong("unpaired", f"it returns by {at!r}, which is not paired; pair it, or state to", "from")
-                return None
-            at = section.from_ or ""
+        feeding = self.terminal.from_ or ""
+        if at := self.unpaired.get(feeding):
+            self._wrong("unpaired", f"it returns by {at!r}, which is not paired; pair it, or state to", "from")
+            return None
         legs = self.topology.section_legs.get(feeding, ())
         return (legs[1] if legs else AT_SOURCE), source
 

@@ -237,7 +237,7 @@ def _sensed(run: Computed, edges: Edges, number: int) -> tuple[int, int]:
     leg of its own, the other node is the inlet of the source; on a fan's suction side it is the outlet.
     """
     topology, terminals = run.layout.topology, run.layout.terminals
-    sensor = list(run.layout.description.sources.values())[number].sensor
+    sensor = run.layout.sources[number].sensor
     high, low = int(edges.outlet[number]), int(edges.inlet[number])
     legs = topology.section_legs.get(sensor or "", topology.run_out_legs.get(sensor or "", ()))
     if legs and topology.legs[legs[0]].source == number:

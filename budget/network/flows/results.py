@@ -269,7 +269,7 @@ class _Records:
         for place, source in self.installed.pumps.items():
             if source == number and not self.network.controls.on[place]:
                 running = self.setup.running[number]
-                path: Path = (*list(self.layout.description.sources.values())[number].path, "set_point")
+                path: Path = (*self.layout.sources[number].path, "set_point")
                 text = "its set point, {0}, is not reached at full speed"
                 yield warning("set-point-missed", text, path, (running.set_point or 0.0, "pressure"))
 
@@ -296,7 +296,7 @@ class _Records:
         if edge >= first_source + len(layout.media):
             edge = int(edges.behind[edge - first_source - len(layout.media)])
         if edge >= first_source:
-            return list(description.sources.values())[edge - first_source].path
+            return self.layout.sources[edge - first_source].path
         if edge >= len(layout.legs):
             return description.terminals[layout.terminals.ids[edge - len(layout.legs)]].path
         leg = layout.topology.legs[edge]

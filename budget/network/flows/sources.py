@@ -136,7 +136,7 @@ class Gains:
 
 def running(run: Computed, number: int, edge: int, stated: SourceCase) -> Running:
     """Return how a source runs: its description, with what a case says otherwise."""
-    source = list(run.layout.description.sources.values())[number]
+    source = run.layout.sources[number]
     medium = run.layout.media[number].supply
     curve = _curve(source, medium.density) if source.curve else None
     point = stated.set_point
