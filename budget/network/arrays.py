@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from functools import cached_property
 
 from budget.description import Description, Device, Finding, Item, Source
+from budget.network.forest import Forest
 from budget.network.media import Media
 from budget.network.topology import Leg, Topology
 from budget.physics.arrays import Array, Flags, Indices
@@ -235,6 +236,11 @@ class Layout:
     def sources(self) -> tuple[Source, ...]:
         """The sources by their numbers."""
         return tuple(self.description.sources.values())
+
+    @cached_property
+    def zone_tree(self) -> Forest:
+        """How the zones lie within each other."""
+        return Forest.of([zone.outer for zone in self.zones])
 
     def served(self, leg: int) -> Ints:
         """Return the numbers of the terminals whose path uses a leg."""

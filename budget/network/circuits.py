@@ -134,33 +134,21 @@ def _outside(along: Floats, parent: Ints) -> Floats:
 
 def _leg_margins(layout: Layout, margin: Floats, zone_margin: Floats) -> Floats:
     """Return the least margin that each leg serves; a held zone counts as one terminal outside."""
-    serving = (layout.order, layout.start, layout.end)
     if not any(zone.outer >= 0 for zone in layout.zones):
-        return least_served(margin, *serving)
+        return least_served(margin, layout.order, layout.start, layout.end)
     found = np.full(len(layout.legs), np.inf)
     for number in sorted(set(layout.legs.zone.tolist())):
         these = layout.legs.zone == number
-        found[these] = least_served(margins_within(layout, number, margin, zone_margin), *serving)[these]
+        seen = margins_within(layout, number, margin, zone_margin)
+        found[these] = least_served(seen, layout.order, layout.start[these], layout.end[these])
     return found
 
 
 def margins_within(layout: Layout, zone: int, margin: Floats, zone_margin: Floats) -> Floats:
     """Return each terminal's margin as seen in a zone: that of the held zone it is in, infinite outside."""
-    seen = np.full(len(layout.zones), np.inf)
-    for number, inner in enumerate(layout.zones):
-        if inner.outer == zone:
-            seen[number] = zone_margin[number]
-        elif inner.outer >= 0 and inner.outer != zone:
-            seen[number] = seen[inner.outer] if _within(layout, number, zone) else np.inf
-    return np.where(layout.terminals.zone == zone, margin, seen[layout.terminals.zone])
-
-
-def _within(layout: Layout, inner: int, zone: int) -> bool:
-    while inner >= 0:
-        if inner == zone:
-            return True
-        inner = layout.zones[inner].outer
-    return False
+    towards = layout.zone_tree.child_towards(zone, layout.terminals.zone)
+    inner = np.where(towards >= 0, zone_margin[towards], np.inf)
+    return np.where(layout.terminals.zone == zone, margin, inner)
 
 
 def _differentials(layout: Layout, required: Floats, start: Floats, along: Floats, outside: Floats) -> Floats:

@@ -35,13 +35,9 @@ class Computed:
     @cached_property
     def outermost(self) -> tuple[int, ...]:
         """By zone the outermost one that it lies within: itself where it lies within none."""
-        outer = [zone.outer for zone in self.layout.zones]
         found: list[int] = []
-        for zone in range(len(outer)):
-            at = zone
-            while outer[at] >= 0:
-                at = outer[at]
-            found.append(at)
+        for number, zone in enumerate(self.layout.zones):  # the one outside comes before
+            found.append(number if zone.outer < 0 else found[zone.outer])
         return tuple(found)
 
     @cached_property

@@ -93,7 +93,11 @@ def find_ringed(topology: Topology, joined: Joined) -> Bools:
     """Find the legs of the trees that are in a ring: those between the ends of a link."""
     ringed = np.zeros(len(topology.legs), dtype=np.bool_)
     for first, second in zip(joined.first, joined.second, strict=True):
-        ringed[list(set(topology.chain(first)) ^ set(topology.chain(second)))] = True
+        at, other = first, second
+        while at != other:  # whichever has the higher number goes up: a parent has a lower one
+            at, other = max(at, other), min(at, other)
+            ringed[at] = True
+            at = topology.legs[at].parent
     return ringed
 
 

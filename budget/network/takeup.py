@@ -64,8 +64,7 @@ def take_up(layout: Layout, drops: Hydraulics, circuits: Circuits) -> TakeUp:
         taken[number] = _bounded(float(np.nanmin(seen)), use, drops.device_base[number])
         direct = served[layout.terminals.zone[served] == zone]
         remaining[direct] -= taken[number]
-        for inner in _zones_directly_in(layout, zone, served):
-            zone_remaining[inner] -= taken[number]
+        zone_remaining[_zones_directly_in(layout, zone, served)] -= taken[number]
     for number, use in enumerate(layout.devices):
         if use.terminal:
             taken[number] = _bounded(float(remaining[use.number]), use, drops.device_base[number])
@@ -89,16 +88,10 @@ def _turn(layout: Layout, use: DeviceUse, rank: dict[str, int]) -> tuple[int, bo
     return -count, not leg.outward, rank.get(leg.owner, 0)
 
 
-def _zones_directly_in(layout: Layout, zone: int, served: Ints) -> set[int]:
+def _zones_directly_in(layout: Layout, zone: int, served: Ints) -> Ints:
     """Return the held zones just inside a zone that hold any of the served terminals."""
-    found = set()
-    for inner in set(layout.terminals.zone[served].tolist()):
-        at = inner
-        while at >= 0 and layout.zones[at].outer != zone:
-            at = layout.zones[at].outer
-        if at >= 0:
-            found.add(at)
-    return found
+    towards = layout.zone_tree.child_towards(zone, layout.terminals.zone[served])
+    return np.unique(towards[towards >= 0])
 
 
 def adjust(layout: Layout, drops: Hydraulics, number: int, drop: float) -> Adjusted:

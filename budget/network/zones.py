@@ -8,6 +8,7 @@ import numpy as np
 
 from budget.description import Description, Finding, error
 from budget.network.arrays import Ints, Zone
+from budget.network.forest import Forest
 from budget.network.topology import Topology
 
 
@@ -60,20 +61,23 @@ def _holding(description: Description, topology: Topology, findings: list[Findin
     ]
     if not wanted:
         return {}
-    out = {id_: set(topology.chain(leg)) for id_, leg in topology.outward.items()}
-    back = {id_: set(topology.chain(leg)) for id_, leg in topology.back.items()}
+    tree = Forest.of([leg.parent for leg in topology.legs])
+    ids = list(topology.terminal_source)
+    out, back = (
+        np.array([ends.get(id_, -1) for id_ in ids], dtype=np.int64) for ends in (topology.outward, topology.back)
+    )
     found = {}
     for section in wanted:
         legs = topology.section_legs.get(section.id, ())
         if not legs:
             continue
-        supplied = {id_ for id_, chain in out.items() if legs[0] in chain}
-        returning = {id_ for id_, chain in back.items() if legs[-1] in chain} if len(legs) == 2 else set()
-        if supplied == returning and supplied:
+        supplied = tree.within(out, legs[0])
+        returning = tree.within(back, legs[-1]) if len(legs) == 2 else np.zeros(len(ids), dtype=np.bool_)
+        if supplied.any() and np.array_equal(supplied, returning):
             found[legs[0]] = found[legs[1]] = (legs[0], legs[1])
             continue
-        odd = sorted(supplied ^ returning)
-        name = odd[0] if odd else section.id
+        odd = [ids[number] for number in np.flatnonzero(supplied != returning)]
+        name = min(odd, default=section.id)
         text = (
             f"{section.balance!r} holds a differential only if all on it returns by its paired leg; {name!r} does not"
         )
