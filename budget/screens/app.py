@@ -29,6 +29,7 @@ from budget.screens.foot import Foot
 from budget.screens.form import Form
 from budget.screens.ledger import Ledger, Mark
 from budget.screens.rows import View
+from budget.screens.signals import keep_before_stops
 from budget.screens.themes import Theme
 from budget.screens.toolkit import AsciiFilter, FrugalScreen, SafeFilter, widget_theme
 from budget.screens.trials import Trials
@@ -36,6 +37,7 @@ from budget.storage.keeping import Keeper
 
 if TYPE_CHECKING:
     import subprocess
+    import threading
     from collections.abc import Callable, Sequence
     from pathlib import Path as FilePath
 
@@ -49,8 +51,8 @@ if TYPE_CHECKING:
 INTERNAL = 70
 """Exit status where the program itself failed."""
 
-TEXT_PAUSE = 1.0
-"""Seconds without a letter after which what is written on the Text screen is kept."""
+TEXT_PAUSE = 0.5
+"""Seconds in which what is written on the Text screen is noted once."""
 
 WIDE = 120
 """Columns from which the row detail stands beside the ledger."""
@@ -91,6 +93,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.change: tuple[str, str] = ("", "")
         self.keeper = Keeper(unsaved.work_of(document))
         self.saving: Saving | None = None
+        self.saver: threading.Thread | None = None
         self.after_saving: Callable[[], object] | None = None
         self.looking = False
         self.discarding = False
@@ -132,6 +135,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         """Show the run, and say what was wrong with the settings."""
         self._running_loop = asyncio.get_running_loop()
         self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
+        keep_before_stops(self.keep_now)
         self.show(self.document.snapshot)
         self.tell()
         self.call_after_refresh(self._begin)
@@ -327,17 +331,20 @@ class BudgetApp(App[int], inherit_bindings=False):
         watching.look(self)
 
     def on_text_area_changed(self) -> None:
-        """Have kept what is written on the Text screen, when the letters pause."""
-        if self._text_timer is not None:
-            self._text_timer.stop()
-        self._text_timer = self.set_timer(TEXT_PAUSE, lambda: turning.text_written(self))
+        """Have kept what is written on the Text screen, soon, and also while letters come without a pause."""
+        if self._text_timer is None:
+            self._text_timer = self.set_timer(TEXT_PAUSE, self._text_written)
+
+    def _text_written(self) -> None:
+        self._text_timer = None
+        turning.text_written(self)
 
     # The file
 
     @property
     def written(self) -> str | None:
         """What is written on the Text screen and is not in the design yet."""
-        return self._text.text if self._text is not None and self.at == "text" and self._text.changed else None
+        return self._text.text if self._text is not None and self._text.changed else None
 
     def reload_text(self) -> None:
         """Let the Text screen show what is in the design, where it is in front."""
@@ -345,8 +352,11 @@ class BudgetApp(App[int], inherit_bindings=False):
             self._text.open(self.document.snapshot.text, self.ledger.row)
 
     def keep_now(self) -> bool:
-        """Write what is unsaved for recovery at once; return whether it is safe."""
-        return self.keeper.keep_now()
+        """Write what is unsaved for recovery at once; return whether it is safe. For signal handlers as well."""
+        work = None
+        with contextlib.suppress(Exception):  # in the midst of a change what was noted last is what there is
+            work = unsaved.work(self)
+        return self.keeper.keep_now(work)
 
     def look_again(self) -> None:
         """Look at once whether the file was changed."""
@@ -359,7 +369,7 @@ class BudgetApp(App[int], inherit_bindings=False):
         if self.child is not None:
             with contextlib.suppress(OSError):
                 self.child.terminate()
-        if self._running_loop is not None:
+        if self._running_loop is not None and not self._running_loop.is_closed():
             self._running_loop.call_soon_threadsafe(self.exit, code)
 
     def _handle_exception(self, error: Exception) -> None:

@@ -12,7 +12,7 @@ if TYPE_CHECKING:
 T = TypeVar("T")
 
 
-def in_background(app: BudgetApp, work: Callable[[], T], then: Callable[[T], object]) -> None:
+def in_background(app: BudgetApp, work: Callable[[], T], then: Callable[[T], object]) -> threading.Thread:
     """Do a piece of work, then take its result where the keys are dealt with. What it raises ends the app."""
 
     def finish(result: T) -> None:
@@ -33,4 +33,6 @@ def in_background(app: BudgetApp, work: Callable[[], T], then: Callable[[T], obj
 
     app.pending += 1
     # A daemon: leaving the app does not wait for it.
-    threading.Thread(target=run, daemon=True).start()
+    thread = threading.Thread(target=run, daemon=True)
+    thread.start()
+    return thread

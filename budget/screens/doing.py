@@ -66,7 +66,7 @@ DOINGS: Mapping[str, Doing] = {
     "show_changes": turning.show_changes,
     "recover": turning.recover,
     "edit_outside": turning.edit_outside,
-    "show_ledger": lambda app: app.turn_to("ledger"),
+    "show_ledger": turning.show_ledger,
     "show_detail": telling.show_detail,
     "explain": telling.show_explain,
     "show_findings": turning.show_findings,

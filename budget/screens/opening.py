@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import contextlib
+import errno
 import logging
 import sys
 import threading
@@ -9,12 +11,16 @@ from pathlib import Path
 
 from budget.document import Document
 from budget.report.plain import plain
+from budget.screens import unsaved
 from budget.screens.app import INTERNAL, BudgetApp
 from budget.screens.config import Config, config_folder
 from budget.screens.signals import Guard
 from budget.screens.themes import load_theme
 from budget.storage import StorageError
 from budget.storage.records import Record, find_records
+
+SAVING = 1.0
+"""Seconds in which a save that is under way at the end may come to its own end."""
 
 
 def open_app(
@@ -42,15 +48,19 @@ def open_app(
         guard.put_back()
     if guard.code is not None:
         guard.let_go()
+    if app.saver is not None:
+        app.saver.join(SAVING)
+    with contextlib.suppress(Exception):  # of a broken app, what was noted last is what there is
+        unsaved.note(app)
     app.keeper.end(discard=app.discarding)
     if app.failure is not None:
         _tell_failure(app)
         return INTERNAL
     if guard.code is not None:
         if document.dirty:
-            print(
-                f"budget: ended by a signal; unsaved changes were kept: budget edit {plain(str(path))}", file=sys.stderr
-            )
+            kept = f"kept: budget edit {plain(str(path))}"
+            told = kept if app.keeper.kept else f"NOT kept: {plain(app.keeper.problem)}"
+            print(f"budget: ended by a signal; unsaved changes were {told}", file=sys.stderr)
         return guard.code
     return code if code is not None else app.return_code or 0
 
@@ -77,7 +87,9 @@ def _quiet() -> None:
     def log(told: threading.ExceptHookArgs) -> None:
         from budget.storage.faults import record_fault  # noqa: PLC0415 - seldom, if ever
 
-        if told.exc_value is not None:
+        # A terminal that went away is no fault of the program.
+        lost = isinstance(told.exc_value, OSError) and told.exc_value.errno == errno.EIO
+        if told.exc_value is not None and not lost:
             record_fault(told.exc_value, "budget edit, a thread")
 
     threading.excepthook = log

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import dataclasses
+import os
 from collections.abc import Callable
 from functools import partial
 from pathlib import Path
@@ -22,6 +23,9 @@ if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
 
 Doing = Callable[[], object]
+
+LONGEST_NAME = 36
+"""Letters of a file's name in a question; what it is about must have room as well."""
 
 
 def save(app: BudgetApp, then: Doing | None = None) -> None:
@@ -67,7 +71,7 @@ def save_as(app: BudgetApp, then: Doing | None = None) -> None:
 def write(app: BudgetApp, saving: Saving, then: Doing | None) -> None:
     """Write what is to be saved, in a thread, so that the next edit need not wait for the disk."""
     app.saving = saving
-    in_background(app, partial(_write, saving, app.keeper.keep_now), partial(_written, app, saving, then))
+    app.saver = in_background(app, partial(_write, saving, app.keeper.keep_now), partial(_written, app, saving, then))
 
 
 def _write(saving: Saving, keep: Callable[[], object]) -> Stamp | StorageError:
@@ -127,7 +131,8 @@ def _ask_over(app: BudgetApp, saving: Saving, then: Doing | None, refused: Chang
 
 def _short(refused: StorageError, path: Path) -> str:
     """Say what was wrong with the name of the file alone, so that it can be read on one line."""
-    return str(refused).replace(str(path), path.name).replace(str(path.resolve()), path.name).partition(";")[0]
+    name = path.name if len(path.name) <= LONGEST_NAME else f"{path.name[: LONGEST_NAME - 9]}…{path.name[-8:]}"
+    return str(refused).replace(str(path), name).replace(os.path.realpath(path), name).partition(";")[0]
 
 
 def leave(app: BudgetApp) -> None:
@@ -140,6 +145,12 @@ def leave(app: BudgetApp) -> None:
         app.exit(0)
         return
 
+    def keep() -> None:
+        if app.keep_now():
+            app.exit(0)
+        else:
+            app.say(f"the changes could not be kept: {plain(app.keeper.problem)}; save the run elsewhere", "error")
+
     def throw_away() -> None:
         app.discarding = True
         app.exit(0)
@@ -149,7 +160,7 @@ def leave(app: BudgetApp) -> None:
         "The run is not saved",
         (
             ("save and quit", lambda: save(app, then=lambda: leave(app))),
-            ("quit, and keep the changes for the next time", lambda: app.exit(0)),
+            ("quit, and keep the changes for the next time", keep),
             ("quit without saving", throw_away),
         ),
     )

@@ -9,6 +9,7 @@ import signal
 import sys
 import termios
 import threading
+import time
 from collections.abc import Callable
 from types import FrameType
 from typing import Any
@@ -19,8 +20,10 @@ PATIENCE = 2.0
 CUT_OFF = "\x18\x1b\\"
 """Ends whatever sequence was half sent when the link stalled."""
 
-RESTORED = "\x1b[?1049l\x1b[?1000l\x1b[?1003l\x1b[?2004l\x1b[?1004l\x1b[<u\x1b[?7h\x1b[?25h"
-"""Back from the alternate screen, without mouse, paste and focus reports, with the cursor."""
+_OFF = ("1000", "1003", "1006", "1015", "1016", "2004", "1004", "2048")
+
+RESTORED = f"\x1b[?1049l{''.join(f'{chr(27)}[?{mode}l' for mode in _OFF)}\x1b[<u\x1b[?7h\x1b[?25h"
+"""Back from the alternate screen, without reports of mouse, paste, focus and size, with the cursor."""
 
 ENDING = (signal.SIGTERM, signal.SIGHUP, signal.SIGINT, signal.SIGQUIT)
 """Signals that end the app; ctrl+c and ctrl+\\ are keys in it, so that the last two come from elsewhere."""
@@ -34,6 +37,7 @@ class Guard:
         self._keep, self._close = keep, close
         self._begun = threading.Lock()
         self._before: list[Any] | None = None
+        self._forcing = False
         self.code: int | None = None
 
     def watch(self) -> None:
@@ -52,6 +56,8 @@ class Guard:
         try:
             self._keep()
         finally:
+            if _in_background():  # the terminal was put back when the app was stopped, and is the shell's
+                os._exit(128 + number)
             self._close(128 + number)
 
     def hurry(self, code: int) -> None:
@@ -67,10 +73,10 @@ class Guard:
 
     def let_go(self) -> None:
         """Turn the outputs to nowhere after a hang-up: flushing them at the end would fail and change the exit code."""
+        if self._forcing:
+            time.sleep(PATIENCE)  # the process is ended by then
         if self.code == 128 + signal.SIGHUP:
-            nowhere = os.open(os.devnull, os.O_WRONLY)
-            for stream in (1, 2):
-                os.dup2(nowhere, stream)
+            _turn_to_nowhere()
 
     def _on_signal(self, number: int, _frame: FrameType | None) -> None:
         self.trigger(number)
@@ -83,14 +89,62 @@ class Guard:
             self.trigger(signal.SIGHUP)
 
     def _force(self) -> None:
-        """Put the terminal back as far as that goes, in a thread of its own: a stalled link may block, and end."""
-        restoring = threading.Thread(target=restore, args=(self._before,), daemon=True)
-        restoring.start()
-        restoring.join(0.3)
+        """Put the terminal back, keep what came since the signal, and end, whatever link or disk hangs."""
+        self._forcing = True
+        terminal = _take_away()
+        threads = [
+            threading.Thread(target=restore, args=(self._before, terminal), daemon=True),
+            threading.Thread(target=self._keep, daemon=True),
+        ]
+        for thread in threads:
+            thread.start()
+        for thread in threads:
+            thread.join(0.4)
         os._exit(self.code or 1)
 
 
-def restore(before: list[Any] | None) -> None:
+def keep_before_stops(keep: Callable[[], object]) -> None:
+    """Keep what must be kept before a stop that comes from outside, too; to be called when the app has the terminal."""
+    stop = signal.getsignal(signal.SIGTSTP)
+
+    def keep_and_stop(number: int, frame: FrameType | None) -> None:
+        keep()
+        if callable(stop):
+            stop(number, frame)
+
+    if callable(stop):
+        signal.signal(signal.SIGTSTP, keep_and_stop)
+
+
+def _in_background() -> bool:
+    """Whether the shell, or another of its jobs, has the terminal."""
+    try:
+        return os.tcgetpgrp(0) != os.getpgrp()
+    except OSError:
+        return False
+
+
+def _take_away() -> int:
+    """Take the terminal away from the app: what it sends from now on, and what it is at sending, goes nowhere.
+
+    Returns a handle of the terminal. Who waits for a stalled link is woken by a signal, and goes on at nowhere.
+    """
+    terminal = os.dup(2)
+    _turn_to_nowhere()
+    for thread in threading.enumerate():
+        if thread.ident is not None and thread is not threading.current_thread():
+            with contextlib.suppress(OSError):
+                signal.pthread_kill(thread.ident, signal.SIGTERM)
+    return terminal
+
+
+def _turn_to_nowhere() -> None:
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    for stream in (1, 2):
+        os.dup2(nowhere, stream)
+
+
+def restore(before: list[Any] | None, terminal: int = 2) -> None:
     """Put the terminal back to what it was. What a stalled link has not taken yet is dropped, to make room for that."""
     with contextlib.suppress(ValueError):  # from a thread no signal can be ignored; there it is not needed
         signal.signal(signal.SIGTTOU, signal.SIG_IGN)
@@ -100,4 +154,4 @@ def restore(before: list[Any] | None) -> None:
         termios.tcflush(0, termios.TCOFLUSH)
     with contextlib.suppress(OSError):
         if sys.__stderr__ is not None:
-            os.write(2, f"{CUT_OFF}{RESTORED}".encode())
+            os.write(terminal, f"{CUT_OFF}{RESTORED}".encode())

@@ -163,6 +163,14 @@ def show_manual(app: BudgetApp) -> None:
     app.offer(Offer("Manual", ("", "topic"), choices, take))
 
 
+def show_ledger(app: BudgetApp) -> None:
+    """Show the ledger; what is written on the Text screen is taken first, as it is on the way back."""
+    if app.at == "text":
+        back(app)
+    else:
+        app.turn_to("ledger")
+
+
 def back(app: BudgetApp) -> None:
     """Go back to the ledger; a changed text is taken into the design first, or thrown away where it is not TOML."""
     if app.at == "text" and app.text.changed and not apply_text(app):

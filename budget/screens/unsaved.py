@@ -20,9 +20,14 @@ def work_of(document: Document, cursor: tuple[str | int, ...] = (), written: str
     return Work(document.path or UNNAMED.absolute(), document.base, text, cursor)
 
 
+def work(app: BudgetApp) -> Work:
+    """Return what is to be kept now, what is written on the Text screen included."""
+    return work_of(app.document, app.ledger.mark.path, app.written)
+
+
 def note(app: BudgetApp) -> None:
-    """Have kept what is unsaved now, what is written on the Text screen included."""
-    app.keeper.note(work_of(app.document, app.ledger.mark.path, app.written))
+    """Have kept what is unsaved now."""
+    app.keeper.note(work(app))
 
 
 def state(document: Document, problem: str) -> tuple[str, str]:

@@ -164,15 +164,20 @@ def _reason(wrong: OSError) -> str:
 
 
 def _real(path: Path) -> Path:
+    loop = f"{path} could not be followed: a loop of symbolic links; save under another name"
     try:
         target = path.resolve()
-    except (OSError, RuntimeError) as wrong:
-        raise StorageError(f"{path} could not be followed: a loop of symbolic links") from wrong
-    if target.is_symlink():
-        raise StorageError(f"{path} could not be followed: a loop of symbolic links")
-    if target.exists() and not target.is_file():
+        if target.is_symlink():
+            raise StorageError(loop)
+        there = target.exists()
+        regular = target.is_file()
+    except RuntimeError as wrong:
+        raise StorageError(loop) from wrong
+    except OSError as wrong:  # a folder that is closed, a name that is too long
+        raise StorageError(f"{path} could not be written: {_reason(wrong)}") from wrong
+    if there and not regular:
         raise StorageError(f"{path} is not a regular file; save under another name")
-    if target.exists() and not os.access(target, os.W_OK):
+    if there and not os.access(target, os.W_OK):
         raise StorageError(f"{path} is not writable; save under another name")
     return target
 

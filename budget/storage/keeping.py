@@ -77,19 +77,16 @@ class Keeper:
 
     def note(self, work: Work) -> None:
         """Take down what the run is now; it is kept soon."""
-        if work.path != self._work.path:
-            work = dataclasses.replace(work, path=Path(os.path.realpath(work.path)))
-        if work == self._work:
-            return
-        now = time.monotonic()
-        if self.kept:
-            self._first = now
-        self._noted = now
-        self._work = work
-        self._wake.set()
+        if self._take(work):
+            self._wake.set()
 
-    def keep_now(self) -> bool:
-        """Write what was noted last at once, unless it is kept; return whether it is. For signal handlers as well."""
+    def keep_now(self, work: Work | None = None) -> bool:
+        """Write what the run is now at once, else what was noted last, unless it is kept; return whether it is.
+
+        For signal handlers as well: no lock is taken that the handler may have interrupted.
+        """
+        if work is not None:
+            self._take(work)
         got = self._writing.acquire(timeout=_PATIENCE)
         try:
             return self._keep()
@@ -104,8 +101,23 @@ class Keeper:
         if self._work.text is not None and not discard:
             self.keep_now()
             return
-        with self._writing, contextlib.suppress(OSError):
-            remove_record(self._record)
+        with self._writing:
+            self._kept = self._work  # a signal that comes yet must not write it anew
+            with contextlib.suppress(OSError):
+                remove_record(self._record)
+
+    def _take(self, work: Work) -> bool:
+        """Put down what the run is now; return whether it is anything new."""
+        if work.path != self._work.path:
+            work = dataclasses.replace(work, path=Path(os.path.realpath(work.path)))
+        if work == self._work:
+            return False
+        now = time.monotonic()
+        if self.kept:
+            self._first = now
+        self._noted = now
+        self._work = work
+        return True
 
     def _keep(self) -> bool:
         while not self.kept:

@@ -81,4 +81,6 @@ def _started(pid: int) -> str | None:
         return None
     # The name of the program stands in parentheses and may hold anything; the fields behind it are numbers.
     fields = told.rpartition(")")[2].split()
+    if fields[:1] in (["Z"], ["X"]):  # it has ended, and nobody has asked yet how
+        return ""
     return fields[19] if len(fields) > 19 else None

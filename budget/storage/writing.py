@@ -16,6 +16,8 @@ SUFFIX = ".saving"
 STALE = 3600.0
 """Seconds after which a temporary file belongs to nobody any more."""
 
+_ACCESS = "system.posix_acl_access"
+
 _LONGEST = 100
 """Bytes of the file's name in that of its temporary file."""
 
@@ -83,8 +85,7 @@ def write_over(target: Path, content: bytes) -> None:
         with os.fdopen(handle, "rb", closefd=False) as stream:
             old = stream.read()
         try:
-            if hasattr(os, "posix_fallocate") and content:
-                os.posix_fallocate(handle, 0, len(content))
+            _reserve(handle, len(content))
             _overwrite(handle, content)
         except BaseException:
             _overwrite(handle, old)
@@ -145,8 +146,10 @@ def _copy_attributes(handle: int, target: Path) -> None:
         try:
             os.setxattr(handle, name, os.getxattr(target, name))
         except OSError as refused:
-            if name.startswith("system.posix_acl"):
+            if name == _ACCESS:
                 raise _LostRuleError(refused.errno, refused.strerror) from refused
+    if _ACCESS not in names and _ACCESS in os.listxattr(handle):  # come from the folder, and not the file's
+        os.removexattr(handle, _ACCESS)
 
 
 def _name_new(name: Path, target: Path) -> None:
@@ -161,6 +164,16 @@ def _name_new(name: Path, target: Path) -> None:
         name.replace(target)
     else:
         name.unlink()
+
+
+def _reserve(handle: int, size: int) -> None:
+    """Take the space that a file needs, so that a disk that is full says so before a byte is changed."""
+    if hasattr(os, "posix_fallocate") and size:
+        try:
+            os.posix_fallocate(handle, 0, size)
+        except OSError as refused:
+            if refused.errno not in (errno.EOPNOTSUPP, errno.EINVAL):  # a file system that reserves nothing
+                raise
 
 
 def _overwrite(handle: int, content: bytes) -> None:

@@ -1,4 +1,6 @@
-"""Situations of a disk, made for real: mounts of our own that go with a child process, and full file systems."""
+"""Situations of a disk, made for real: mounts of our own that go with a child process, full file systems, and a run in
+them that is not saved.
+"""
 
 from __future__ import annotations
 
@@ -14,8 +16,18 @@ from pathlib import Path
 
 import pytest
 
+from budget.document import Document
+from budget.screens.unsaved import work_of
+from budget.storage import StorageError
+from budget.storage.keeping import Keeper
+from budget.storage.records import find_records
+from tests.storage.contents import NEW, leftovers
+
 _NEW_MOUNTS, _NEW_USERS = 0x00020000, 0x10000000
 _CANNOT = 77
+
+LONG = NEW + b"# a good many words\n" * 2000
+"""What is to be saved: some pages of it."""
 
 
 def with_own_mounts(act: Callable[[], None]) -> None:
@@ -81,7 +93,8 @@ def fill(folder: Path, leave: int = 0) -> Path:
             while True:
                 stream.write(b"\0" * 4096)
         except OSError as full:
-            assert full.errno == errno.ENOSPC
+            if full.errno != errno.ENOSPC:
+                raise
         if leave:
             stream.truncate(max(0, stream.tell() - leave))
     return filler
@@ -104,3 +117,45 @@ def acl_of(*users: int) -> bytes:
     parts = (tag.to_bytes(2, "little") + may.to_bytes(2, "little") + (user & 0xFFFFFFFF).to_bytes(4, "little")
              for tag, may, user in entries)  # fmt: skip
     return (2).to_bytes(4, "little") + b"".join(parts)
+
+
+class Editing:
+    """A run that is open with a change that is not saved, and the record of it."""
+
+    def __init__(self, path: Path, state: Path, text: bytes = LONG) -> None:
+        self.path, self.state, self.text = path, state, text.decode()
+        self.document = Document.open(path)
+        self.keeper = Keeper(work_of(self.document), folder=state)
+        self.document.replace_text(self.text, "edit")
+        self.keeper.note(work_of(self.document))
+
+    def save(self, path: Path | None = None, *, over: bool = False) -> None:
+        """Save as the app does, the record first."""
+        saving = self.document.prepare(path, over=over)
+        self.document.saved(saving, saving.write(self.keeper.keep_now))
+        self.keeper.note(work_of(self.document))
+
+    def refused(self, *, over: bool = False) -> str:
+        """Save, which must fail and leave the run unsaved; return what was said."""
+        with pytest.raises(StorageError) as refused:
+            self.save(over=over)
+        assert self.document.dirty
+        assert self.document.snapshot.text == self.text
+        return str(refused.value).replace(str(self.path), self.path.name)
+
+    @property
+    def kept(self) -> str | None:
+        """What the record holds."""
+        found = find_records(self.path, self.state)
+        return found[0].text if found else None
+
+    def works(self) -> None:
+        """Save once more, now that the cause is gone."""
+        self.save()
+        assert self.path.read_bytes() == self.text.encode()
+        assert not self.document.dirty
+        assert leftovers(self.path.parent) == []
+
+
+def opened(place: Path, text: bytes = LONG) -> Editing:
+    return Editing(place / "work" / "run.toml", place / "state", text)

@@ -167,3 +167,18 @@ def test_a_signal_in_the_midst_of_keeping_does_not_stand_still(tmp_path: Path, w
     keeper.note(changed(work, "a = 1\n"))
     assert keeper.keep_now()
     assert calls == [True]
+
+
+def test_what_was_discarded_is_not_written_anew_by_a_late_signal(tmp_path: Path, work: Work) -> None:
+    keeper = Keeper(work, folder=tmp_path)
+    unsaved = changed(work, "a = 1\n")
+    keeper.note(unsaved)
+    keeper.end(discard=True)
+    keeper.keep_now(unsaved)
+    assert find_records(folder=tmp_path) == ()
+
+
+def test_what_a_signal_brings_is_written_though_it_was_never_noted(tmp_path: Path, work: Work) -> None:
+    keeper = Keeper(work, folder=tmp_path)
+    assert keeper.keep_now(changed(work, "a = 1\n"))
+    assert text_in(tmp_path) == "a = 1\n"

@@ -7,78 +7,15 @@ from __future__ import annotations
 
 import os
 import resource
-import tempfile
-from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import pytest
 
 from budget.document import Document
-from budget.screens.unsaved import work_of
-from budget.storage import ChangedOnDisk, StorageError
-from budget.storage.keeping import Keeper
-from budget.storage.records import find_records
-from tests.storage.contents import NEW, OLD, leftovers
-from tests.storage.situations import acl_of, fill, mode_of, mount, small_disk, with_own_mounts
-from tests.storage.test_files import NOBODY, as_nobody, hand_over
-
-LONG = NEW + b"# a good many words\n" * 2000
-
-
-class Editing:
-    """A run that is open with a change that is not saved, and the record of it."""
-
-    def __init__(self, path: Path, state: Path, text: bytes = LONG) -> None:
-        self.path, self.state, self.text = path, state, text.decode()
-        self.document = Document.open(path)
-        self.keeper = Keeper(work_of(self.document), folder=state)
-        self.document.replace_text(self.text, "edit")
-        self.keeper.note(work_of(self.document))
-
-    def save(self, path: Path | None = None, *, over: bool = False) -> None:
-        """Save as the app does, the record first."""
-        saving = self.document.prepare(path, over=over)
-        self.document.saved(saving, saving.write(self.keeper.keep_now))
-        self.keeper.note(work_of(self.document))
-
-    def refused(self, *, over: bool = False) -> str:
-        """Save, which must fail and leave the run unsaved; return what was said."""
-        with pytest.raises(StorageError) as refused:
-            self.save(over=over)
-        assert self.document.dirty
-        assert self.document.snapshot.text == self.text
-        return str(refused.value).replace(str(self.path), self.path.name)
-
-    @property
-    def kept(self) -> str | None:
-        """What the record holds."""
-        found = find_records(self.path, self.state)
-        return found[0].text if found else None
-
-    def works(self) -> None:
-        """Save once more, now that the cause is gone."""
-        self.save()
-        assert self.path.read_bytes() == self.text.encode()
-        assert not self.document.dirty
-        assert leftovers(self.path.parent) == []
-
-
-@pytest.fixture
-def place() -> Iterator[Path]:
-    """A folder that a user without privileges owns, with a file and a folder for records."""
-    with tempfile.TemporaryDirectory() as name:
-        place = Path(name)
-        (place / "work").mkdir()
-        (place / "state").mkdir()
-        (place / "work" / "run.toml").write_bytes(OLD)
-        for path in (place, place / "work", place / "state", place / "work" / "run.toml"):
-            hand_over(path)
-        yield place
-
-
-def opened(place: Path, text: bytes = LONG) -> Editing:
-    return Editing(place / "work" / "run.toml", place / "state", text)
-
+from budget.storage import StorageError
+from tests.storage.contents import OLD, leftovers
+from tests.storage.situations import LONG, Editing, acl_of, fill, mode_of, mount, opened, small_disk, with_own_mounts
+from tests.storage.test_files import NOBODY, as_nobody
 
 # Full disks
 
@@ -160,15 +97,13 @@ def test_a_limit_that_is_met_in_the_middle_of_a_file_harms_nothing(place: Path) 
         for hard in (False, True):
             if hard:
                 (place / "work" / "other.toml").hardlink_to(place / "work" / "run.toml")
+            (place / "work" / "run.toml").write_bytes(OLD)
             run = opened(place)
-            run.keeper.keep_now()
-            before = run.path.read_bytes()
-            run.document.replace_text(run.text + "# more\n" * 5000, "edit")
-            run.text = run.document.snapshot.text
+            assert run.keeper.keep_now()
             limit = resource.getrlimit(resource.RLIMIT_FSIZE)
             resource.setrlimit(resource.RLIMIT_FSIZE, (20_000, limit[1]))
             assert run.refused() == "run.toml could not be written: File too large"
-            assert run.path.read_bytes() == before
+            assert run.path.read_bytes() == OLD
             assert leftovers(run.path.parent) == []
             resource.setrlimit(resource.RLIMIT_FSIZE, limit)
             run.works()
@@ -364,6 +299,18 @@ def test_access_rules_and_notes_stay_with_the_file(place: Path, written_over: bo
     as_nobody(act)
 
 
+def test_rules_of_the_folder_do_not_come_to_a_file_that_has_none(place: Path) -> None:
+    path = place / "work" / "run.toml"
+    path.chmod(0o640)
+    try:
+        os.setxattr(path.parent, "system.posix_acl_default", acl_of(1234))
+    except OSError as refused:
+        pytest.skip(f"the file system keeps no such rules: {refused.strerror}")
+    as_nobody(lambda: opened(place).works())
+    assert os.listxattr(path) == []
+    assert path.stat().st_mode & 0o777 == 0o640
+
+
 def test_rules_that_another_file_can_not_have_are_not_lost(place: Path) -> None:
     path = place / "work" / "run.toml"
     own(path, NOBODY, NOBODY, 0o664)
@@ -373,136 +320,3 @@ def test_rules_that_another_file_can_not_have_are_not_lost(place: Path) -> None:
         pytest.skip(f"the file system keeps no such rules: {refused.strerror}")
     as_nobody(lambda: opened(place).works())
     assert path.read_bytes() == LONG
-
-
-# What others did
-
-
-Change = Callable[[Path], None]
-
-
-def changed(path: Path) -> None:
-    path.write_bytes(b"format = 1 # theirs\n")
-
-
-def deleted(path: Path) -> None:
-    path.unlink()
-
-
-def renamed(path: Path) -> None:
-    path.rename(path.with_name("renamed.toml"))
-
-
-def another_in_its_place(path: Path) -> None:
-    path.with_name("new").write_bytes(b"format = 1 # theirs\n")
-    path.with_name("new").replace(path)
-
-
-def a_folder(path: Path) -> None:
-    path.unlink()
-    path.mkdir()
-
-
-def a_pipe(path: Path) -> None:
-    path.unlink()
-    os.mkfifo(path)
-
-
-def its_folder_removed(path: Path) -> None:
-    path.unlink()
-    path.parent.rmdir()
-
-
-def its_folder_renamed(path: Path) -> None:
-    path.parent.rename(path.parent.with_name("moved"))
-
-
-def its_folder_a_file(path: Path) -> None:
-    its_folder_removed(path)
-    path.parent.write_bytes(b"")
-
-
-@pytest.mark.parametrize(
-    ("change", "told", "over"),
-    [
-        (changed, "was changed on disk since it was opened; reload, or save under another name", ""),
-        (another_in_its_place, "was changed on disk since it was opened; reload, or save under another name", ""),
-        (deleted, "is gone; save under another name, or write it anew", ""),
-        (renamed, "is gone; save under another name, or write it anew", ""),
-        (a_folder, "is not a regular file; save under another name", "is not a regular file"),
-        (a_pipe, "is not a regular file; save under another name", "is not a regular file"),
-        (its_folder_removed, "is gone; save under another name, or write it anew", "No such file or directory"),
-        (its_folder_renamed, "is gone; save under another name, or write it anew", "No such file or directory"),
-        (its_folder_a_file, "is gone; save under another name, or write it anew", "Not a directory"),
-    ],
-)
-def test_what_others_did_is_told_and_not_written_over(place: Path, change: Change, told: str, over: str) -> None:
-    def act() -> None:
-        run = opened(place)
-        change(run.path)
-        theirs = run.path.read_bytes() if run.path.is_file() else None
-        assert run.refused() == f"run.toml {told}"
-        assert theirs == (run.path.read_bytes() if run.path.is_file() else None)
-        if over:
-            assert over in run.refused(over=True)
-            assert not run.path.is_file()
-            run.save(place / "elsewhere.toml")
-            assert (place / "elsewhere.toml").read_bytes() == LONG
-        else:
-            run.save(over=True)
-            assert run.path.read_bytes() == LONG
-        assert run.kept == run.text or not run.document.dirty
-
-    as_nobody(act)
-
-
-def test_what_comes_into_being_in_the_last_moment_is_not_written_over(
-    place: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
-    target = place / "work" / "new.toml"
-
-    def act() -> None:
-        run = opened(place)
-        saving = run.document.prepare(target)
-        with pytest.raises(ChangedOnDisk, match="exists already"):
-            saving.write(lambda: target.write_bytes(b"format = 1 # theirs\n"))
-        assert target.read_bytes() == b"format = 1 # theirs\n"
-        assert leftovers(place / "work") == []
-
-    as_nobody(act)
-
-
-# Names
-
-
-@pytest.mark.parametrize(
-    "name",
-    [b"n" * 250 + b".toml", "ü".encode() * 125 + b".toml", b"B\xfcro \xff\xfe.toml", b"two\nlines.toml", b" .toml"],
-)
-def test_any_name_that_a_file_can_have(place: Path, name: bytes) -> None:
-    path = place / "work" / os.fsdecode(name)
-    (place / "work" / "run.toml").rename(path)
-
-    def act() -> None:
-        run = Editing(path, place / "state")
-        assert run.keeper.keep_now()
-        assert run.kept == run.text
-        assert find_records(path, place / "state")[0].path == path.resolve()
-        run.works()
-        run.path.unlink()
-        run.save(over=True)
-        assert [os.fsencode(file) for file in os.listdir(place / "work")] == [name]  # noqa: PTH208 - names as they are
-
-    as_nobody(act)
-
-
-def test_a_name_that_no_file_can_have_is_told(place: Path) -> None:
-    def act() -> None:
-        run = opened(place)
-        for name in ("n" * 256, "ü" * 128, "/".join(["n" * 200] * 30)):
-            with pytest.raises(StorageError, match="File name too long"):
-                run.save(place / "work" / name)
-        assert run.document.path == run.path
-        run.works()
-
-    as_nobody(act)
