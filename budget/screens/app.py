@@ -3,13 +3,11 @@
 from __future__ import annotations
 
 import asyncio
-import contextlib
 import gc
-import sys
 from typing import TYPE_CHECKING, ClassVar
 
 from textual import events
-from textual.app import App, ComposeResult
+from textual.app import ComposeResult
 from textual.containers import Horizontal
 from textual.filter import LineFilter
 
@@ -18,38 +16,25 @@ from budget.description.finding import Path
 from budget.document import Document, Snapshot
 from budget.report.plain import plain
 from budget.screens import choosing, entering, recovering, turning, unsaved, watching
-from budget.screens.actions import CHANGING, Place
+from budget.screens.actions import CHANGING
 from budget.screens.beside import Beside
-from budget.screens.board import Board
 from budget.screens.budget_line import BudgetLine, change_of
-from budget.screens.chooser import Chooser, Offer
 from budget.screens.config import Config
 from budget.screens.doing import DOINGS
 from budget.screens.foot import Foot
-from budget.screens.form import Form
-from budget.screens.ledger import Ledger, Mark
+from budget.screens.ledger import Mark
 from budget.screens.rows import View
 from budget.screens.signals import keep_before_stops
+from budget.screens.stage import Stage
 from budget.screens.themes import Theme
 from budget.screens.toolkit import AsciiFilter, FrugalScreen, SafeFilter, widget_theme
 from budget.screens.trials import Trials
-from budget.storage.keeping import Keeper
+from budget.storage.keeping import Work
 
 if TYPE_CHECKING:
-    import subprocess
-    import threading
-    from collections.abc import Callable, Sequence
-    from pathlib import Path as FilePath
+    from collections.abc import Sequence
 
     from textual.timer import Timer
-    from textual.widget import Widget
-
-    from budget.document import Saving
-    from budget.screens.manual import ManualScreen
-    from budget.screens.text import TextScreen
-
-INTERNAL = 70
-"""Exit status where the program itself failed."""
 
 TEXT_PAUSE = 0.5
 """Seconds in which what is written on the Text screen is noted once."""
@@ -58,7 +43,7 @@ WIDE = 120
 """Columns from which the row detail stands beside the ledger."""
 
 
-class BudgetApp(App[int], inherit_bindings=False):
+class BudgetApp(Stage, inherit_bindings=False):
     """The ledger with its budget line and foot; other screens take the ledger's place when they are first asked for."""
 
     ENABLE_COMMAND_PALETTE = False
@@ -79,45 +64,21 @@ class BudgetApp(App[int], inherit_bindings=False):
         self, document: Document, config: Config, theme: Theme, *, ascii_only: bool, notes: Sequence[str]
     ) -> None:
         """Open on a document, with the user's settings; notes are told at the foot."""
-        super().__init__()
-        self.document, self.config, self.colours = document, config, theme
+        super().__init__(document, theme)
+        self.config = config
         self.keymap, self.notes = config.keymap, notes
-        self.entry: entering.Entry | None = None
         self.trials = Trials(self)
         self.valves = Beside(self)
-        self.at: Place = "ledger"
-        self.returns_to: Place = "ledger"
         self.sought = ""
-        self.wide = False
         self.beside_width = 0
         self.change: tuple[str, str] = ("", "")
-        self.keeper = Keeper(unsaved.work_of(document))
-        self.saving: Saving | None = None
-        self.saver: threading.Thread | None = None
-        self.after_saving: Callable[[], object] | None = None
-        self.looking = False
-        self.discarding = False
-        self.pending = 0
-        self.told_problem = ""
-        self.child: subprocess.Popen[bytes] | None = None
-        self.failure: BaseException | None = None
-        self.failure_log: FilePath | None = None
-        self.failing: Callable[[], object] = lambda: None
         self.animation_level = "none"
         self._own_filters: tuple[LineFilter, ...] = (SafeFilter(), AsciiFilter()) if ascii_only else (SafeFilter(),)
-        self._running_loop: asyncio.AbstractEventLoop | None = None
         self.register_theme(widget_theme(theme))
         self.theme = theme.name
 
-        view = View(document.snapshot)
-        self.ledger = Ledger(theme, view)
-        self.budget_line = BudgetLine(theme, view, self.ledger.source)
+        self.budget_line = BudgetLine(theme, self.ledger.view, self.ledger.source)
         self.foot = Foot(theme, config.keymap)
-        self.choosers: dict[str, Chooser] = {}
-        self.boards: dict[str, Board] = {}
-        self._form: Form | None = None
-        self._text: TextScreen | None = None
-        self._manual: ManualScreen | None = None
         self._text_timer: Timer | None = None
 
     def get_default_screen(self) -> FrugalScreen:
@@ -149,80 +110,6 @@ class BudgetApp(App[int], inherit_bindings=False):
         self.keeper.start()
         recovering.look(self)
         self.set_interval(watching.EVERY, lambda: watching.look(self))
-
-    # What is in front
-
-    @property
-    def place(self) -> Place:
-        """Where the hands are: a field that is open, else the screen."""
-        return "entry" if self.entry is not None else self.at
-
-    @property
-    def front(self) -> Ledger | Chooser | Board:
-        """The ledger, or the list or board in its place."""
-        return self.boards[self.at] if self.at in self.boards else self.choosers.get(self.at, self.ledger)
-
-    def turn_to(self, place: Place) -> None:
-        """Bring a screen to the front, in the place of the ledger."""
-        if place == "list" and self.at not in ("list", "form"):
-            self.returns_to = self.at
-        self.at = place
-        for widget in self.middle.children:
-            if widget.id == "beside":
-                widget.display = self.wide and place in ("ledger", "list", "form", "findings")
-            else:
-                widget.display = widget.id == place
-        self.screen.set_focus({"text": self._text, "manual": self._manual}.get(place))
-        self.tell()
-
-    @property
-    def middle(self) -> Widget:
-        """What stands between the budget line and the foot."""
-        return self.query_one("#middle")
-
-    def chooser(self, place: Place) -> Chooser:
-        """Return the list of a place; it is made when it is first asked for."""
-        if place not in self.choosers:
-            self.choosers[place] = Chooser(self.colours, place)
-            self._mount(self.choosers[place])
-        return self.choosers[place]
-
-    def _mount(self, widget: Widget) -> None:
-        """Put a widget in the ledger's place, to the left of what stands beside it."""
-        self.middle.mount(widget, after=self.ledger)
-
-    @property
-    def form(self) -> Form:
-        """The form; it is made when it is first asked for."""
-        if self._form is None:
-            self._form = Form(self.colours)
-            self._mount(self._form)
-        return self._form
-
-    @property
-    def text(self) -> TextScreen:
-        """The Text screen; it is made when it is first asked for."""
-        if self._text is None:
-            from budget.screens.text import TextScreen  # noqa: PLC0415 - heavy, and seldom needed
-
-            self._text = TextScreen()
-            self.middle.mount(self._text)
-        return self._text
-
-    @property
-    def manual(self) -> ManualScreen:
-        """The Manual screen; it is made when it is first asked for."""
-        if self._manual is None:
-            from budget.screens.manual import ManualScreen  # noqa: PLC0415 - heavy, and seldom needed
-
-            self._manual = ManualScreen()
-            self.middle.mount(self._manual)
-        return self._manual
-
-    def offer(self, offer: Offer) -> None:
-        """Show a list to pick from."""
-        self.chooser("list").present(offer)
-        self.turn_to("list")
 
     # What is shown
 
@@ -351,49 +238,13 @@ class BudgetApp(App[int], inherit_bindings=False):
         if self._text is not None and self.at == "text":
             self._text.open(self.document.snapshot.text, self.ledger.row)
 
-    def keep_now(self) -> bool:
-        """Write what is unsaved for recovery at once; return whether it is safe. For signal handlers as well."""
-        work = None
-        with contextlib.suppress(Exception):  # in the midst of a change what was noted last is what there is
-            work = unsaved.work(self)
-        return self.keeper.keep_now(work)
+    def work(self) -> Work:
+        """Return what is to be kept now."""
+        return unsaved.work(self)
 
     def look_again(self) -> None:
         """Look at once whether the file was changed."""
         watching.look(self, anyway=True)
-
-    # The end
-
-    def close_with(self, code: int) -> None:
-        """End from a signal handler or another thread."""
-        if self.child is not None:
-            with contextlib.suppress(OSError):
-                self.child.terminate()
-        if self._running_loop is not None and not self._running_loop.is_closed():
-            self._running_loop.call_soon_threadsafe(self.exit, code)
-
-    def _handle_exception(self, error: Exception) -> None:
-        """End after an unexpected error: what is unsaved is kept, what happened goes to the log."""
-        if self._exception is None:
-            self._exception = error
-            self._exception_event.set()
-        self.fail(error)
-
-    def panic(self, *_renderables: object) -> None:
-        """End after an error of the toolkit, which has told it on the screen otherwise."""
-        self.fail(sys.exc_info()[1] or RuntimeError("the terminal could not be read any more"))
-
-    def fail(self, error: BaseException) -> None:
-        """Keep what is unsaved, write the log, and close."""
-        self._return_code = INTERNAL
-        if self.failure is None:
-            from budget.storage.faults import record_fault  # noqa: PLC0415 - seldom, if ever
-
-            self.failing()
-            self.failure = error
-            self.keep_now()
-            self.failure_log = record_fault(error, "budget edit")
-        self._close_messages_no_wait()
 
     def get_line_filters(self) -> Sequence[LineFilter]:
         """Whatever a widget paints goes through these, last through our own."""

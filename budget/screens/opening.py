@@ -12,8 +12,9 @@ from pathlib import Path
 from budget.document import Document
 from budget.report.plain import plain
 from budget.screens import unsaved
-from budget.screens.app import INTERNAL, BudgetApp
+from budget.screens.app import BudgetApp
 from budget.screens.config import Config, config_folder
+from budget.screens.guarded import INTERNAL
 from budget.screens.signals import Guard
 from budget.screens.themes import load_theme
 from budget.storage import StorageError

@@ -45,6 +45,7 @@ def test_what_a_size_would_give_is_what_it_then_gives(play: Stage) -> None:
         await hands.at("B2")
         await hands.press("s")
         await hands.type("22")
+        await hands.looked()
         line = hands.lines()[2].split()
         await hands.press("enter")
         shown = hands.row("B2").split()
