@@ -49,7 +49,8 @@ def _meet(app: BudgetApp, seen: Look, libraries: tuple[Library, ...], stamp: Sta
         app.reload_text()
         app.show(document.snapshot, before)
         app.tell()
-        app.say(f"reloaded: {_name(app)} was changed on disk; {app.keys('undo')} brings back what was here before")
+        back = "" if document.read_only else f"; {app.keys('undo')} brings back what was here before"
+        app.say(f"reloaded: {_name(app)} was changed on disk{back}")
     elif document.on_disk.what != known:
         unsaved.note(app)
         app.tell_state()
