@@ -100,7 +100,8 @@ def test_a_closed_pipe_is_status_141(run_file: Path) -> None:
 @pytest.mark.parametrize(("number", "status"), [("SIGINT", 130), ("SIGTERM", 143), ("SIGHUP", 129)])
 def test_a_signal_ends_it_with_a_status_of_its_own(number: str, status: int) -> None:
     script = (
-        "import sys, time, budget.commands.check as check; from budget.commands import main; "
+        "import signal, sys, time, budget.commands.check as check; from budget.commands import main; "
+        "signal.signal(signal.SIGINT, signal.default_int_handler); signal.signal(signal.SIGHUP, signal.SIG_DFL); "
         "check.open_run = lambda name: (print('.', file=sys.stderr, flush=True), time.sleep(30)); "
         "sys.argv[1:] = ['check', 'x']; sys.exit(main())"
     )

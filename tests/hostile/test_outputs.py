@@ -69,7 +69,13 @@ def everything(call: Caller, path: Path, new: Mapping[str, str], readings: Path)
     return told
 
 
-@pytest.mark.parametrize("payload", PAYLOADS.values(), ids=PAYLOADS)
+@pytest.mark.parametrize(
+    "payload",
+    [
+        pytest.param(MESS, id="all of them"),
+        *(pytest.param(text, id=name, marks=pytest.mark.long) for name, text in PAYLOADS.items()),
+    ],
+)
 def test_a_text_in_every_free_place_is_printed_plain(payload: str, call: Caller, tmp_path: Path) -> None:
     new = names(payload)
     path = write(tmp_path, filled(payload))
@@ -128,10 +134,17 @@ def test_a_text_as_a_key_is_told_plain(payload: str, call: Caller, tmp_path: Pat
         harmless(call("balance", path, "--readings", readings))
 
 
+CONTROLS = [name for name, text in PAYLOADS.items() if obeyed(text) - set("\xa0\ue000\U000f0000\ufffe")]
+
+
 @pytest.mark.parametrize(
-    "name", [name for name, text in PAYLOADS.items() if obeyed(text) - set("\xa0\ue000\U000f0000\ufffe")]
+    ("name", "table"),
+    [
+        pytest.param(name, table, marks=() if name == CONTROLS[place % len(CONTROLS)] else pytest.mark.long)
+        for name in CONTROLS
+        for place, table in enumerate(KEYED)
+    ],
 )
-@pytest.mark.parametrize("table", KEYED)
 def test_an_id_with_a_control_character_is_refused(name: str, table: str, call: Caller, tmp_path: Path) -> None:
     id_ = f"a{PAYLOADS[name][:60]}"
     path = write(tmp_path, renamed(BASE, {ENTRIES[table]: id_}) if table != "link" else put(BASE, ((table, id_), {})))

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import contextlib
 import time
 from collections.abc import Awaitable, Callable
 from pathlib import Path
@@ -37,14 +38,44 @@ class Hands:
     async def send(self, event: events.Event) -> None:
         """Send an event as the terminal does, and wait until it was dealt with."""
         self.app.post_message(event)
+        await self._passed()
         for _ in range(2):
             await self.pilot._wait_for_screen()
         await self.done()
         shown = self.app.form if self.app.at == "form" else self.app.front
         until = time.monotonic() + 5.0
-        while not shown.size and shown.display and time.monotonic() < until:
+        while not shown.size and shown.display and not self.app._exit and time.monotonic() < until:
             await asyncio.sleep(0.001)  # it has just been mounted, and is not laid out yet
             await self.pilot._wait_for_screen()
+
+    async def _passed(self) -> None:
+        """Wait until what was sent has gone the way of a key, and what it brought to the front is laid out.
+
+        A key goes to the app, to what has the focus, and back; a change of what is in front comes with a refresh.
+        """
+        passed, app = asyncio.Event(), self.app
+
+        def in_front(then: Callable[[], None]) -> object:
+            return (app.form if app.at == "form" else app.front).call_later(then)
+
+        way: list[Callable[[Callable[[], None]], object]] = [
+            app.call_later,
+            (app.focused or app.screen).call_later,
+            app.screen.call_later,
+            app.call_later,
+            app.call_after_refresh,
+            in_front,
+        ]
+
+        def go_on() -> None:
+            if way:
+                way.pop(0)(go_on)
+            else:
+                passed.set()
+
+        go_on()
+        with contextlib.suppress(TimeoutError):  # an app that has ended passes nothing on
+            await asyncio.wait_for(passed.wait(), 0.05 if app._exit else 5.0)
 
     async def done(self) -> None:
         """Wait until the disk has done what was asked of it."""
@@ -147,10 +178,13 @@ def play(tmp_path: Path) -> Stage:
 
         async def stage() -> None:
             app = BudgetApp(Document.open(path), Config(), theme or terminal_theme(), ascii_only=ascii_only, notes=())
-            async with app.run_test(size=size) as pilot:
-                while not app.ledger.size:
-                    await pilot._wait_for_screen()
-                await act(Hands(app, pilot))
+            try:
+                async with app.run_test(size=size) as pilot:
+                    while not app.ledger.size:
+                        await pilot._wait_for_screen()
+                    await act(Hands(app, pilot))
+            finally:
+                app.keeper.end()  # as the way out of the app does
 
         asyncio.run(stage())
 
