@@ -246,6 +246,6 @@ def test_what_is_no_toml_is_refused_or_indexed_but_never_hangs(text: str) -> Non
 def test_a_long_file_is_indexed_fast() -> None:
     section = '[section.M{0}]\nfrom = "P1"\nlength = "14.5 m"  # note\nfittings = {{ "elbow 90" = 4 }}\n\n'
     text = "".join(section.format(number) for number in range(2000))
-    started = time.perf_counter()
+    started = time.process_time()
     SpanIndex.of(text)
-    assert time.perf_counter() - started < 1.0  # about 0.02 s; slow machines are given room
+    assert time.process_time() - started < 5.0  # about 0.02 s; slow machines are given room

