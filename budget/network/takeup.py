@@ -91,7 +91,7 @@ def _turn(layout: Layout, use: DeviceUse, rank: dict[str, int]) -> tuple[int, bo
 def _zones_directly_in(layout: Layout, zone: int, served: Ints) -> Ints:
     """Return the held zones just inside a zone that hold any of the served terminals."""
     towards = layout.zone_tree.child_towards(zone, layout.terminals.zone[served])
-    return np.unique(towards[towards >= 0])
+    return np.array(sorted(set(towards[towards >= 0].tolist())), dtype=np.int64)  # np.unique loads masked arrays
 
 
 def adjust(layout: Layout, drops: Hydraulics, number: int, drop: float) -> Adjusted:
