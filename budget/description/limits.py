@@ -46,29 +46,30 @@ class Beyond(NamedTuple):
     place: int | Path
 
 
+# Patterns for texts that look odd at the first glance are compiled when there is one.
 _NAME = r"(?>[\w-]++|\"[^\"\n]*+\"|'[^'\n]*+')"
-_DOTTED = re.compile(rf"(?<![\w-])(?:{_NAME}[ \t]*+\.[ \t]*+){{{DEEPEST + 1}}}{_NAME}")
+_DOTTED = rf"(?<![\w-])(?:{_NAME}[ \t]*+\.[ \t]*+){{{DEEPEST + 1}}}{_NAME}"
 _OPENERS = re.compile(rf"[\[{{]{{{DEEPEST + 1}}}")
 _DIGITS = rf"[0-9][0-9A-Za-z_.:+-]{{{LONGEST_NUMBER},}}+"
 _LONG_DIGITS = re.compile(_DIGITS)
 _LINES, _LITERAL_LINES = r'"""(?>[^"\\]|\\.|"(?!""))*+"{3,5}', r"'''(?>[^']|'(?!''))*+'{3,5}"
 _BASIC, _LITERAL = r'"(?>[^"\\\n]|\\.)*+"', r"'[^'\n]*+'"
 _QUOTED = f"{_LINES}|{_LITERAL_LINES}|{_BASIC}|{_LITERAL}"
-_NUMBERS = re.compile(rf"(?s:#[^\n]*+|{_QUOTED}|(?P<number>{_DIGITS})|[A-Za-z_][0-9A-Za-z_-]*+)")
-_TABLES = re.compile(rf"(?s:#[^\n]*+|{_QUOTED}|(?P<table>\[\[|[\[{{]))")
-_BRACKETS = re.compile(rf"(?s:(?P<bracket>[\[{{\]}}])|#[^\n]*+|{_QUOTED})")
-_BEFORE_NAME = re.compile(r"[ \t]*[=.]|[ \t]*\]{1,2}[ \t\r]*(?:#[^\n]*)?(?:\n|\Z)")
+_NUMBERS = rf"(?s:#[^\n]*+|{_QUOTED}|(?P<number>{_DIGITS})|[A-Za-z_][0-9A-Za-z_-]*+)"
+_TABLES = rf"(?s:#[^\n]*+|{_QUOTED}|(?P<table>\[\[|[\[{{]))"
+_BRACKETS = rf"(?s:(?P<bracket>[\[{{\]}}])|#[^\n]*+|{_QUOTED})"
+_BEFORE_NAME = r"[ \t]*[=.]|[ \t]*\]{1,2}[ \t\r]*(?:#[^\n]*)?(?:\n|\Z)"
 _SIGN = "+-"
 
 
 def beyond_as_text(text: str) -> Beyond | None:
     """Find a bound that can be told before TOML is read: nesting in one place, tables, digits."""
     many_dots = max(map(str.count, text.split("\n"), repeat("."))) > DEEPEST
-    if (deep := _OPENERS.search(text) or (_DOTTED.search(text) if many_dots else None)) is not None:
+    if (deep := _OPENERS.search(text) or (re.search(_DOTTED, text) if many_dots else None)) is not None:
         message = f"brackets or dotted keys are nested more than {DEEPEST} deep; a run needs five levels"
         return Beyond("nesting", message, deep.start())
     if text.count("[") + text.count("{") > MOST_TABLES:
-        openers = (found.start() for found in _TABLES.finditer(text) if found["table"])
+        openers = (found.start() for found in re.finditer(_TABLES, text) if found["table"])
         place = next((start for number, start in enumerate(openers) if number == MOST_TABLES), None)
         if place is not None:
             message = f"the file has more than {MOST_TABLES:,} tables and lists; split the run"
@@ -92,7 +93,7 @@ def too_deep(text: str) -> Beyond:
     """Say that a text is nested too deep, at its first bracket beyond the bound; without one, where it begins."""
     message = f"tables are nested more than {DEEPEST} deep; a run needs five levels"
     level = 0
-    for found in _BRACKETS.finditer(text):
+    for found in re.finditer(_BRACKETS, text):
         bracket = found["bracket"]
         if bracket is not None:
             level += 1 if bracket in "[{" else -1
@@ -103,7 +104,7 @@ def too_deep(text: str) -> Beyond:
 
 def _long_numbers(text: str) -> Iterator[int]:
     """Run through the places of numbers that are too long, leaving out names, texts and comments."""
-    for found in _NUMBERS.finditer(text):
+    for found in re.finditer(_NUMBERS, text):
         start = found.start()
         if found["number"] and not _is_name(text, start, found.end()):
             yield start - (start > 0 and text[start - 1] in _SIGN)
@@ -111,7 +112,7 @@ def _long_numbers(text: str) -> Iterator[int]:
 
 def _is_name(text: str, start: int, end: int) -> bool:
     """Whether digits are part of a key or a header: `=` or a point follows, or the line is nothing but a header."""
-    follows = _BEFORE_NAME.match(text, end)
+    follows = re.compile(_BEFORE_NAME).match(text, end)
     if follows is None:
         return False
     if "]" not in follows[0]:
