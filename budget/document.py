@@ -193,17 +193,17 @@ class Document:
             raise ValueError("the run has no file; give a path")
         return Saving(target, self.snapshot.text, self._stamp if target == self.path else None, over)
 
-    def saved(self, saving: Saving, stamp: Stamp) -> None:
-        """Take note that something was written; what was changed since is unsaved."""
+    def saved(self, saving: Saving, stamp: Stamp, libraries: tuple[Library, ...]) -> None:
+        """Take note that something was written, and of the libraries beside it; what was changed since is unsaved."""
         self.path, self._saved, self._stamp = saving.path, saving.text, stamp
         self.on_disk = Look("same", stamp=stamp)
         self.read_only = ""
-        self.take_libraries(self.look_at_libraries())
+        self.take_libraries(libraries)
 
     def save(self, path: FilePath | None = None, *, over: bool = False) -> None:
         """Save, whole or not at all. Raises StorageError; ChangedOnDisk where the file was changed and not `over`."""
         saving = self.prepare(path, over=over)
-        self.saved(saving, saving.write())
+        self.saved(saving, saving.write(), self.look_at_libraries(saving.path))
 
     @property
     def stamp(self) -> Stamp | None:
@@ -242,9 +242,12 @@ class Document:
             self._replace(seen.source.text, "reload from disk", mark)
         return self.snapshot is not before
 
-    def look_at_libraries(self) -> tuple[Library, ...]:
-        """Look what the libraries that the run names are by now. May run in any thread; nothing changes."""
-        return read_again(self._libraries, self.path)
+    def look_at_libraries(self, path: FilePath | None = None) -> tuple[Library, ...]:
+        """Look what the libraries that the run names are by now, beside its file or where that is to be saved.
+
+        May run in any thread; nothing changes.
+        """
+        return read_again(self._libraries, path or self.path)
 
     def take_libraries(self, libraries: tuple[Library, ...]) -> bool:
         """Compute the run with its libraries as they were seen; return whether one of them had changed."""

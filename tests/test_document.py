@@ -412,7 +412,7 @@ def test_what_is_changed_while_it_is_saved_stays_unsaved(file: Path) -> None:
     document.apply(SetValue(LENGTH, "20 m"), "length of M1")
     saving = document.prepare()
     document.apply(SetValue(LENGTH, "30 m"), "length of M1")
-    document.saved(saving, saving.write())
+    document.saved(saving, saving.write(), ())
     assert '"20 m"' in file.read_text()
     assert is_dirty(document)
     document.undo()

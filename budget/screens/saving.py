@@ -9,6 +9,7 @@ from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from budget.description import Library
 from budget.report.plain import plain
 from budget.screens import unsaved
 from budget.screens.asking import ask
@@ -16,13 +17,16 @@ from budget.screens.background import in_background
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
 from budget.screens.writing import WritingError
-from budget.storage import ChangedOnDisk, Stamp, StorageError, look
+from budget.storage import ChangedOnDisk, Look, Stamp, StorageError, look
 
 if TYPE_CHECKING:
     from budget.document import Saving, Snapshot
     from budget.screens.app import BudgetApp
 
 Doing = Callable[[], object]
+
+Done = tuple[Stamp, tuple[Library, ...]]
+"""What stands on disk after a save, and the libraries that the run names there."""
 
 LONGEST_NAME = 36
 """Letters of a file's name in a question; what it is about must have room as well."""
@@ -71,24 +75,24 @@ def save_as(app: BudgetApp, then: Doing | None = None) -> None:
 def write(app: BudgetApp, saving: Saving, then: Doing | None) -> None:
     """Write what is to be saved, in a thread, so that the next edit need not wait for the disk."""
     app.saving = saving
-    app.saver = in_background(app, partial(_write, saving, app.keeper.keep_now), partial(_written, app, saving, then))
+    app.saver = in_background(app, partial(_write, app, saving), partial(_written, app, saving, then))
 
 
-def _write(saving: Saving, keep: Callable[[], object]) -> Stamp | StorageError:
+def _write(app: BudgetApp, saving: Saving) -> Done | StorageError:
     try:
-        return saving.write(keep)
+        return saving.write(app.keeper.keep_now), app.document.look_at_libraries(saving.path)
     except StorageError as refused:
         return refused
 
 
-def _written(app: BudgetApp, saving: Saving, then: Doing | None, outcome: Stamp | StorageError) -> None:
+def _written(app: BudgetApp, saving: Saving, then: Doing | None, outcome: Done | StorageError) -> None:
     app.saving = None
     queued, app.after_saving = app.after_saving, None
     if isinstance(outcome, StorageError):
         _refused(app, saving, then, outcome)
         return
     before = app.document.snapshot
-    app.document.saved(saving, outcome)
+    app.document.saved(saving, *outcome)
     unsaved.note(app)
     if app.document.snapshot is not before and app.entry is None:
         app.show(app.document.snapshot)
@@ -112,12 +116,11 @@ def _refused(app: BudgetApp, saving: Saving, then: Doing | None, refused: Storag
 
         conflict.settle(app, elsewhere, lambda: save(app, then))
     else:
-        _ask_over(app, saving, then, refused)
+        in_background(app, partial(look, saving.path, None), partial(_ask_over, app, saving, then, refused))
 
 
-def _ask_over(app: BudgetApp, saving: Saving, then: Doing | None, refused: ChangedOnDisk) -> None:
-    """Ask whether another file is to be written over, as it is at this moment and no other."""
-    seen = look(saving.path, None)
+def _ask_over(app: BudgetApp, saving: Saving, then: Doing | None, refused: ChangedOnDisk, seen: Look) -> None:
+    """Ask whether another file is to be written over, as it was seen and no other."""
     over = dataclasses.replace(saving, stamp=seen.stamp, over=seen.stamp is None)
     ask(
         app,

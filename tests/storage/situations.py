@@ -132,7 +132,7 @@ class Editing:
     def save(self, path: Path | None = None, *, over: bool = False) -> None:
         """Save as the app does, the record first."""
         saving = self.document.prepare(path, over=over)
-        self.document.saved(saving, saving.write(self.keeper.keep_now))
+        self.document.saved(saving, saving.write(self.keeper.keep_now), ())
         self.keeper.note(work_of(self.document))
 
     def refused(self, *, over: bool = False) -> str:
