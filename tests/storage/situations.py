@@ -10,7 +10,6 @@ import errno
 import os
 import subprocess
 import sys
-import traceback
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
@@ -22,9 +21,9 @@ from budget.storage import StorageError
 from budget.storage.keeping import Keeper
 from budget.storage.records import find_records
 from tests.storage.contents import NEW, leftovers
+from tests.storage.forking import in_child
 
 _NEW_MOUNTS, _NEW_USERS = 0x00020000, 0x10000000
-_CANNOT = 77
 
 LONG = NEW + b"# a good many words\n" * 2000
 """What is to be saved: some pages of it."""
@@ -37,29 +36,10 @@ def with_own_mounts(act: Callable[[], None]) -> None:
     """
     if sys.platform != "linux":
         pytest.skip("there are mounts of one's own on Linux alone")
-    read, write = os.pipe()
-    sys.stdout.flush()
-    child = os.fork()
-    if child == 0:
-        status = 1
-        try:
-            os.close(read)
-            status = _CANNOT
-            _take_own_mounts()
-            status = 1
-            act()
-            status = 0
-        except BaseException:  # noqa: BLE001 - what went wrong is told to the parent
-            os.write(write, traceback.format_exc()[-6000:].encode())
-        finally:
-            os._exit(status)
-    os.close(write)
-    with os.fdopen(read, "rb") as said:
-        message = said.read().decode(errors="replace")
-    status = os.waitstatus_to_exitcode(os.waitpid(child, 0)[1])
-    if status == _CANNOT:
+    done, message = in_child(_take_own_mounts, act)
+    if done == 0:
         pytest.skip(f"the machine lets nobody mount anything: {message.splitlines()[-1]}")
-    assert status == 0, message
+    assert done == 2, message
 
 
 def _take_own_mounts() -> None:

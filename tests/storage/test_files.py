@@ -7,7 +7,6 @@ import socket
 import stat
 import sys
 import tempfile
-import traceback
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
@@ -16,6 +15,7 @@ import pytest
 from budget.description.source import LARGEST_FILE
 from budget.storage import ChangedOnDisk, StorageError, load, load_text, save
 from tests.storage.contents import NEW, OLD, SHORT, leftovers
+from tests.storage.forking import in_child
 
 NOBODY = 65534
 
@@ -25,26 +25,14 @@ def as_nobody(act: Callable[[], None]) -> None:
     if os.geteuid() != 0:
         act()
         return
-    read, write = os.pipe()
-    child = os.fork()
-    if child == 0:
-        status = 1
-        try:
-            os.close(read)
-            os.setgroups([])
-            os.setgid(NOBODY)
-            os.setuid(NOBODY)
-            act()
-            status = 0
-        except BaseException:  # noqa: BLE001 - what went wrong is told to the parent
-            os.write(write, traceback.format_exc()[-4000:].encode())
-        finally:
-            os._exit(status)
-    os.close(write)
-    with os.fdopen(read, "rb") as said:
-        message = said.read().decode(errors="replace")
-    _, status = os.waitpid(child, 0)
-    assert status == 0, message
+
+    def drop() -> None:
+        os.setgroups([])
+        os.setgid(NOBODY)
+        os.setuid(NOBODY)
+
+    done, message = in_child(drop, act)
+    assert done == 2, message
 
 
 @pytest.fixture
