@@ -57,7 +57,6 @@ class Balance(Board):
         """Of the readings."""
         self.refused = ""
         self._ids: tuple[str, ...] = ()
-        self._wanted = ""
         self._source: bytes | None = None
 
     def read(self, run: Path | None) -> None:
@@ -85,19 +84,14 @@ class Balance(Board):
         self.__dict__.pop("_marks", None)
 
     def _take_later(self, found: tuple[Schedule, Readings | None, tuple[Located, ...]]) -> None:
-        marked = self.marked or self._wanted
+        in_hand = self.in_hand
         self._take(found)
-        self.go(self._ids.index(marked) if marked in self._ids else self.cursor)
+        self.go(self._ids.index(in_hand) if in_hand in self._ids else self.cursor)
         self.told()
 
     def _fail(self, reason: str) -> None:
         self.refused = reason
         self.told()
-
-    def go_to(self, id_: str) -> bool:
-        """Move the cursor to a row, or as soon as there are rows."""
-        self._wanted = id_
-        return super().go_to(id_)
 
     @property
     def ids(self) -> Sequence[str]:

@@ -50,6 +50,7 @@ class Board(Lines):
         self.figures = Figures(snapshot.description)
         self.cursor = 0
         self.top = 0
+        self._wanted: str | None = None
 
     # For subclasses
 
@@ -83,6 +84,11 @@ class Board(Lines):
         """The ID of the row under the cursor."""
         return self.ids[self.cursor] if self.cursor < len(self.ids) else None
 
+    @property
+    def in_hand(self) -> str | None:
+        """The ID under the cursor; before there are rows, the one that the cursor is to go to."""
+        return self.marked or self._wanted
+
     def show(self, snapshot: Snapshot) -> None:
         """Show a snapshot; the cursor stays on its row, wherever that is now."""
         if snapshot is not self.snapshot:
@@ -104,7 +110,8 @@ class Board(Lines):
         self.repaint()
 
     def go_to(self, id_: str) -> bool:
-        """Move the cursor to a row by its ID; False where there is none."""
+        """Move the cursor to a row by its ID; False where there is none, or not yet: then it goes there later."""
+        self._wanted = id_
         if id_ not in self.ids:
             return False
         self.go(list(self.ids).index(id_))

@@ -51,7 +51,7 @@ def _index(app: BudgetApp) -> tuple[str, ...]:
 def _in_hand(app: BudgetApp) -> str:
     board = app.boards.get(app.at)
     row = app.ledger.row
-    return (board.marked or "") if board is not None else row.id if row is not None else ""
+    return (board.in_hand or "") if board is not None else row.id if row is not None else ""
 
 
 def _turn_to(app: BudgetApp, board: Board, place: Place) -> None:

@@ -50,7 +50,6 @@ class Installed(Board):
         self.solved: Solved | None = None
         self.state = ""
         self._asked: Request | None = None
-        self._wanted: str | None = None
         self._rows: tuple[SourceFlow | TerminalFlow, ...] = ()
 
     # What is solved
@@ -96,13 +95,13 @@ class Installed(Board):
 
     def _take(self, solved: Solved) -> None:
         self.solved, self.state = solved, ""
-        marked, terminals = self.marked or self._wanted, solved.flows.terminals.values()
+        in_hand, terminals = self.in_hand, solved.flows.terminals.values()
         rows: list[SourceFlow | TerminalFlow] = []
         for source in solved.flows.sources.values():
             rows += [source, *(one for one in terminals if one.source == source.id)]
         self._rows = tuple(rows)
-        if marked is not None:
-            self.go_to(marked)
+        if in_hand is not None:
+            self.go_to(in_hand)
         self.go(self.cursor)
         self._draw()
         self._tell()
@@ -154,11 +153,6 @@ class Installed(Board):
     def head(self) -> int:
         """Title, the operating point, titles and units."""
         return 4
-
-    def go_to(self, id_: str) -> bool:
-        """Move the cursor to a row, or as soon as there are rows."""
-        self._wanted = id_
-        return super().go_to(id_)
 
     def go(self, place: int) -> None:
         """Move the cursor; the drawing follows to another source."""

@@ -180,6 +180,29 @@ def test_a_long_solve_never_holds_up_a_key_and_escape_stops_it(play: Stage, monk
     play(act)
 
 
+def test_the_row_in_hand_stays_in_hand_before_there_are_flows(play: Stage, monkeypatch: pytest.MonkeyPatch) -> None:
+    ended = threading.Event()
+
+    def late(*arguments: Any, **more: Any) -> Flows:
+        ended.wait(30.0)
+        return solve_flows(*arguments, **more)
+
+    monkeypatch.setattr(solving, "solve_flows", late)
+
+    async def act(hands: Hands) -> None:
+        await hands.at("R1")
+        await hands.press("I", "L")
+        assert hands.lines()[0].startswith(" Profile R1 ")
+        await hands.press("I", "B")
+        assert hands.app.front is hands.app.boards["balance"]
+        assert hands.app.boards["balance"].marked == "R1"
+        await hands.press("I")
+        ended.set()
+        assert (await solved(hands)).marked == "R1"
+
+    play(act)
+
+
 def test_what_can_not_be_solved_is_told(play: Stage, monkeypatch: pytest.MonkeyPatch) -> None:
     def broken(*_: Any, **__: Any) -> Flows:
         raise ValueError("no way")
