@@ -11,11 +11,12 @@ from budget.network import HEADINGS, Budget, SourceResult
 from budget.physics.power import sfp_class
 from budget.report.caution import CAUTION
 from budget.report.figures import NONE, Figures, plain_number
-from budget.report.ledger import devices, fittings, items, joints, ledger, libraries, terminals
+from budget.report.ledger import ledger
 from budget.report.links import links
 from budget.report.located import Located
 from budget.report.plain import plain
 from budget.report.table import Column, labelled, table, wrapped
+from budget.report.tables import devices, fittings, items, joints, libraries, terminals
 from budget.units import Dimension, to_unit
 
 
