@@ -4,4 +4,4 @@ Each target takes bytes and raises where something is wrong. The quick tests run
 file of the corpus; `python -m tests.fuzz TARGET --seconds N` searches on, led by the branches that an input reaches.
 """
 
-TARGETS = ("reading", "spans", "edits", "units")
+TARGETS = ("reading", "telling", "spans", "edits", "units")

@@ -11,8 +11,9 @@ from hypothesis import strategies as st
 
 from budget.units import units_of
 from tests.description.mutations import TEXTS, mutate
+from tests.description.tangles import tangle
 from tests.description.toml_texts import documents
-from tests.fuzz import TARGETS
+from tests.fuzz import TARGETS, targets
 from tests.fuzz.targets import BY_NAME, LONGEST, HangError, corpus, run
 from tests.fuzz.units import DIMENSIONS
 
@@ -26,6 +27,9 @@ RUNS = st.builds(
     st.integers(1, 4),
 )
 """Whole runs with something knocked out of place."""
+
+TANGLES = st.randoms(use_true_random=False).map(lambda random: tangle(random).encode())
+"""Runs in which anything hangs on anything."""
 
 DOCUMENTS = documents().map(lambda text: text.encode("utf-8", "surrogatepass"))
 """TOML in every spelling."""
@@ -45,7 +49,8 @@ QUANTITIES = st.tuples(
 """Texts that are, or might have been, quantities."""
 
 GENERATED = {
-    "reading": RUNS | DOCUMENTS,
+    "reading": RUNS | DOCUMENTS | TANGLES,
+    "telling": TANGLES | RUNS,
     "spans": DOCUMENTS | RUNS,
     "edits": st.tuples(DOCUMENTS | RUNS, st.just(b"\0"), st.binary(min_size=4, max_size=30)).map(b"".join),
     "units": QUANTITIES,
@@ -87,3 +92,13 @@ def test_an_input_that_takes_too_long_is_a_fault() -> None:
 
     with pytest.raises(HangError):
         run(slow, b"")
+
+
+def test_an_input_that_never_ends_is_given_up(monkeypatch: pytest.MonkeyPatch) -> None:
+    def endless(_: bytes) -> None:
+        while True:
+            pass
+
+    monkeypatch.setattr(targets, "GIVEN_UP", 0.1)
+    with pytest.raises(HangError, match="given up"):
+        run(endless, b"")
