@@ -147,8 +147,8 @@ RUNS_DATA = {"pickle", "marshal", "shelve", "dill", "code", "codeop", "ctypes", 
 CALLS = {"eval", "exec", "compile", "__import__"}
 OF_OS = {"system", "popen"}
 OF_OS_AT_THE_START = ("exec", "spawn", "posix_spawn")
-EDITOR = "budget/screens/outside.py"
-"""It alone starts a program: the editor that the user has named in the environment."""
+STARTERS = ("budget/screens/outside.py", "budget/storage/revisions.py")
+"""They alone start a program: the editor that the user has named in the environment, and git."""
 
 
 def reaches(path: Path) -> Iterator[str]:
@@ -169,7 +169,7 @@ def reaches(path: Path) -> Iterator[str]:
             imported = [alias.name for alias in node.names]
         elif isinstance(node, ast.ImportFrom) and not node.level:
             imported = [node.module or "", *(f"{node.module}.{alias.name}" for alias in node.names)]
-        refused = REACHES_OUT | RUNS_DATA | ({"subprocess"} if name != EDITOR else set())
+        refused = REACHES_OUT | RUNS_DATA | ({"subprocess"} if name not in STARTERS else set())
         for module in imported:
             parts = module.split(".")
             if any(".".join(parts[:size]) in refused for size in range(1, len(parts) + 1)):

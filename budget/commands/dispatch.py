@@ -46,6 +46,7 @@ COMMANDS: Mapping[str, Command] = {
     "check": Command("Compute runs and list what is wrong or doubtful.", "budget check heating.toml --json"),
     "flows": Command("Solve a run for the flows as installed.", "budget flows heating.toml --devices open"),
     "report": Command("Print the whole budget of a run as text.", "budget report heating.toml > heating.txt"),
+    "changes": Command("Show what changed in a run: keys and figures.", "budget changes heating.toml --revision v1"),
     "balance": Command("Print the commissioning schedule of a run.", "budget balance heating.toml --csv > heating.csv"),
     "edit": Command("Open a run in the terminal app.", "budget edit heating.toml"),
     "new": Command("Write a small run to start from.", "budget new heating.toml --kind heating --units SI"),

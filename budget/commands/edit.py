@@ -8,7 +8,7 @@ from pathlib import Path
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Take a file, and how it is shown."""
-    parser.add_argument("file", metavar="FILE", help="a run's file")
+    parser.add_argument("file", metavar="FILE", nargs="?", help="a run's file; without one, the run that was open last")
     parser.add_argument(
         "--ascii", action="store_const", const=True, help="draw with plain characters, for a terminal without UTF-8"
     )
@@ -20,4 +20,5 @@ def run(options: argparse.Namespace) -> int:
     """Open the app; return its exit status. What is not said here is as the settings say."""
     from budget import screens  # noqa: PLC0415 - help and completion must not wait for the app
 
-    return screens.run(Path(options.file), ascii=options.ascii, mouse=options.mouse, read_only=options.read_only) or 0
+    path = Path(options.file) if options.file is not None else None
+    return screens.run(path, ascii=options.ascii, mouse=options.mouse, read_only=options.read_only) or 0

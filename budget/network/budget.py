@@ -71,6 +71,14 @@ class Budget:
         return _Lazy(self.run.layout.terminals.ids, self._records.terminal)
 
     @cached_property
+    def index(self) -> frozenset[str]:
+        """The IDs of the sections and terminals on the index circuit of their source; no record is made for it."""
+        layout, circuits = self.run.layout, self.run.circuits
+        of_legs = layout.topology.section_legs.items()
+        sections = frozenset(id_ for id_, legs in of_legs if any(circuits.leg_index[leg] for leg in legs))
+        return sections.union(id_ for id_, on in zip(layout.terminals.ids, circuits.index, strict=True) if on)
+
+    @cached_property
     def findings(self) -> tuple[Finding, ...]:
         """Everything that is wrong or doubtful, from reading, connecting and computing."""
         run = self.run

@@ -66,6 +66,19 @@ def merge_lines(merge_table: MergeTable, width: int = WIDE, most: int | None = N
     return _fitted(lines, width, most)
 
 
+def clipped(text: str, width: int) -> str:
+    """Return a text in so many columns, with dots for what was cut off."""
+    if _cells(text) <= width:
+        return text
+    kept, used = "", min(len(_CUT), width)
+    for c in text:
+        used += _cells(c)
+        if used > width:
+            break
+        kept += c
+    return kept + _CUT[: max(width, 0)]
+
+
 _SPELLING = "comments or spelling"
 _OTHERWISE = "ordered or spaced otherwise"
 
@@ -195,7 +208,7 @@ def _columns(rows: Sequence[Sequence[str]], width: int, titles: Sequence[str] = 
     while sum(widths) > room:
         values = [place for place in range(1, len(widths)) if widths[place] > _LEAST]
         widths[max(values or range(len(widths)), key=widths.__getitem__)] -= 1
-    cut = [[_clipped(cell, most) for cell, most in zip(_telling(row, widths), widths, strict=True)] for row in rows]
+    cut = [[clipped(cell, most) for cell, most in zip(_telling(row, widths), widths, strict=True)] for row in rows]
     columns = [Column(title, left=True) for title in titles or [""] * len(widths)]
     lines = table(columns, cut, _INDENT)
     return [line.rstrip() for line in lines[0 if titles else 1 :]]
@@ -212,18 +225,6 @@ def _telling(row: Sequence[str], widths: Sequence[int]) -> Sequence[str]:
     return [row[0], *(_CUT + cell[alike:] if cell in values else cell for cell in row[1:])]
 
 
-def _clipped(text: str, width: int) -> str:
-    if _cells(text) <= width:
-        return text
-    kept, used = "", min(len(_CUT), width)
-    for c in text:
-        used += _cells(c)
-        if used > width:
-            break
-        kept += c
-    return kept + _CUT[: max(width, 0)]
-
-
 def _cells(text: str) -> int:
     """Return how many columns a text takes."""
     if text.isascii():
@@ -235,4 +236,4 @@ def _fitted(lines: Sequence[str], width: int, most: int | None) -> tuple[str, ..
     kept = list(lines)
     if most is not None and len(kept) > most:
         kept = [*kept[: max(most - 1, 0)], f"and {len(kept) - max(most - 1, 0)} more"]
-    return tuple(_clipped(line, width) for line in kept)
+    return tuple(clipped(line, width) for line in kept)

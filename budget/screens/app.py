@@ -15,7 +15,7 @@ from budget.description.edits import Edit
 from budget.description.finding import Path
 from budget.document import Document, Snapshot
 from budget.report.plain import plain
-from budget.screens import choosing, entering, recovering, turning, unsaved, watching
+from budget.screens import choosing, entering, recovering, saving, turning, unsaved, watching
 from budget.screens.actions import CHANGING
 from budget.screens.beside import Beside
 from budget.screens.budget_line import BudgetLine, change_of
@@ -67,6 +67,7 @@ class BudgetApp(Stage, inherit_bindings=False):
         super().__init__(document, theme)
         self.config = config
         self.keymap, self.notes = config.keymap, notes
+        self.first_words = ("", "")
         self.trials = Trials(self)
         self.valves = Beside(self)
         self.sought = ""
@@ -100,7 +101,9 @@ class BudgetApp(Stage, inherit_bindings=False):
         self.show(self.document.snapshot)
         self.tell()
         self.call_after_refresh(self._begin)
-        if self.notes:
+        if self.first_words[0]:
+            self.say(plain(self.first_words[0]), self.first_words[1])
+        elif self.notes:
             more = f" (and {len(self.notes) - 1} more)" if len(self.notes) > 1 else ""
             self.say(plain(self.notes[0]) + more, "warning")
 
@@ -109,13 +112,14 @@ class BudgetApp(Stage, inherit_bindings=False):
         gc.enable()
         self.keeper.start()
         recovering.look(self)
+        saving.remember(self)
         self.set_interval(watching.EVERY, lambda: watching.look(self))
 
     # What is shown
 
     def show(self, snapshot: Snapshot, before: Snapshot | None = None) -> None:
         """Show a snapshot; with the one before it, by how much the required pressure changed."""
-        view = View(snapshot)
+        view = self.ledger.view if self.ledger.view.snapshot is snapshot else View(snapshot)
         self.ledger.show(view)
         if self.at in self.boards:
             self.boards[self.at].show(snapshot)

@@ -8,8 +8,7 @@ from dataclasses import dataclass
 
 from textual.timer import Timer
 
-from budget.screens.field import Field
-from budget.screens.ledger import field_pieces
+from budget.screens.field import Field, field_pieces
 from budget.screens.lines import Lines, Piece
 from budget.screens.safe import clip, fit, width_of, wrapped
 from budget.screens.themes import Theme

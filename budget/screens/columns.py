@@ -9,6 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
+from budget.screens.safe import clip, fit
 from budget.units import Dimension
 
 Key = Literal[
@@ -115,3 +116,18 @@ def fit_figure(text: str, room: int) -> str:
     shorter = (f"{number:.{kept}f}" for kept in range(decimals - 1, -1, -1))
     powers = (f"{number:.{kept}e}".replace("e+0", "e").replace("e+", "e") for kept in (2, 1, 0))
     return next((figure for figure in (*shorter, *powers) if len(figure) <= room), "#" * room)
+
+
+def fitting(text: str, placed: Placed) -> str:
+    """Return the text of a cell as its column has room for it."""
+    room = placed.width - 1
+    if placed.column.dimension is not None:
+        return fit_figure(text, room)
+    if placed.column.key == "size":
+        text = fit_size(text, room)
+    return clip(text, room)
+
+
+def aligned(text: str, placed: Placed, sign: str = " ") -> str:
+    """Return the text of a cell as wide as its column, with its sign."""
+    return fit(text, placed.width - 1, right=not placed.column.left) + sign

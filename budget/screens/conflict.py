@@ -10,7 +10,7 @@ from budget.description.finding import Path, dotted
 from budget.description.merging import Merge, MergeError, MergeTable, Side, merge
 from budget.report.differences import difference_lines, merge_lines
 from budget.report.plain import plain
-from budget.screens import unsaved
+from budget.screens import changes, unsaved
 from budget.screens.asking import Answer, ask
 from budget.screens.background import in_background
 from budget.screens.chooser import Choice, Offer
@@ -84,7 +84,7 @@ def _show_changes(app: BudgetApp, seen: Look) -> None:
         return
     known = seen.source.text if seen.source is not None else document.saved_text
     title = "Changes since the file was saved" if seen.what == "same" else "Changes against the file as it was"
-    list_differences(app, title, known or "", document.snapshot.text, lambda: app.turn_to("ledger"))
+    changes.show(app, title, known or "")
 
 
 # Picking

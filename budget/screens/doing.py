@@ -6,7 +6,18 @@ from collections.abc import Callable, Mapping
 from functools import partial
 from typing import TYPE_CHECKING
 
-from budget.screens import boards, changing, choosing, entering, fitting_form, moving, shaping, telling, turning
+from budget.screens import (
+    another,
+    boards,
+    changing,
+    choosing,
+    entering,
+    fitting_form,
+    moving,
+    shaping,
+    telling,
+    turning,
+)
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -27,6 +38,8 @@ DOINGS: Mapping[str, Doing] = {
     "search": moving.search,
     "next_match": lambda app: moving.next_match(app, 1),
     "previous_match": lambda app: moving.next_match(app, -1),
+    "filter": moving.filter_rows,
+    "copy_rows": turning.copy_rows,
     "go_to": moving.go_to,
     "go_to_index": moving.to_index,
     "next_finding": moving.next_finding,
@@ -63,7 +76,9 @@ DOINGS: Mapping[str, Doing] = {
     "redo": changing.redo,
     "save": turning.save,
     "save_as": turning.save_as,
+    "open_other": another.open_other,
     "show_changes": turning.show_changes,
+    "show_changes_since": turning.show_changes_since,
     "recover": turning.recover,
     "edit_outside": turning.edit_outside,
     "show_ledger": turning.show_ledger,

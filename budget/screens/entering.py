@@ -34,6 +34,10 @@ class Entry:
     path: Path = ()
     tried: str | None = None
     """The last text that could stand."""
+    light: bool = False
+    """Whether a text is tried out at once even on a large run, as nothing is computed."""
+    undo: Callable[[], object] | None = None
+    """Puts back what trying out has changed on the screen, where the field is left."""
 
 
 def begin(app: BudgetApp, entry: Entry) -> None:
@@ -53,7 +57,8 @@ def press(app: BudgetApp, entry: Entry, field: Field) -> None:
     entry.field = field
     _paint(app, entry)
     if typed:
-        app.trials.later(partial(_try_out, app, entry, field.text))
+        later = app.call_later if entry.light else app.trials.later
+        later(partial(_try_out, app, entry, field.text))
 
 
 def _try_out(app: BudgetApp, entry: Entry, text: str) -> None:
@@ -90,6 +95,8 @@ def accept(app: BudgetApp) -> bool:
 
 def leave(app: BudgetApp) -> None:
     """Close the field and leave things as they were."""
+    if app.entry is not None and app.entry.undo is not None:
+        app.entry.undo()
     end(app)
     app.show(app.document.snapshot)
 

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 from budget.report.plain import plain
-from budget.screens.safe import width_of
+from budget.screens.lines import Piece
+from budget.screens.safe import fit, width_of
 
 LONGEST = 2000
 """Characters; no value of a run is longer."""
@@ -84,3 +86,12 @@ class Field:
     def _word_before(self) -> int:
         kept = self.text[: self.at].rstrip()
         return kept.rfind(" ") + 1
+
+
+def field_pieces(field: Field, width: int) -> Iterator[Piece]:
+    """Spell a field that is written in: its text, and the place of the next letter the other way round."""
+    before, letter, after = field.window(width - 1)
+    shown = "cursor" if field.fresh else "field"
+    yield before, shown
+    yield letter, "cursor"
+    yield fit(after, width - width_of(before) - width_of(letter)), "field"

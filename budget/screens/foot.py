@@ -5,9 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 
 from budget.screens.actions import BY_ID, FOOTER, Place
-from budget.screens.field import Field
+from budget.screens.field import Field, field_pieces
 from budget.screens.keymap import Keymap
-from budget.screens.ledger import field_pieces
 from budget.screens.lines import Lines, Piece
 from budget.screens.safe import clip, width_of
 from budget.screens.themes import Theme

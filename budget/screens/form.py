@@ -5,8 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 
-from budget.screens.field import Field
-from budget.screens.ledger import field_pieces
+from budget.screens.field import Field, field_pieces
 from budget.screens.lines import Lines, Piece
 from budget.screens.safe import clip, fit, width_of, wrapped
 from budget.screens.themes import Theme

@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from pathlib import Path
 
     from budget.document import Saving
+    from budget.screens.opened import Opened
 
 INTERNAL = 70
 """Exit status where the program itself failed."""
@@ -37,6 +38,8 @@ class GuardedApp(App[int], inherit_bindings=False):
         """Holds the recovery record."""
         self.discarding = False
         """Whether the user threw the unsaved changes away."""
+        self.following: Opened | None = None
+        """The run that is to be opened once this one is left."""
 
         self.saving: Saving | None = None
         """What is being written to the file."""

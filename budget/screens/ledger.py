@@ -6,10 +6,11 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
 from budget.description.finding import Path
-from budget.screens.columns import MARK, Placed, fit_figure, fit_size, place_columns
-from budget.screens.field import Field
+from budget.screens.columns import MARK, Placed, aligned, fitting, place_columns
+from budget.screens.field import Field, field_pieces
+from budget.screens.filtering import NO_FILTER, Filter, Sifted, nearest, sift, told
 from budget.screens.lines import Lines, Piece
-from budget.screens.rows import DEEPEST_INDENT, EMPTY, FOLDED_SIGN, INDEX_SIGN, Row, View, tree, visible
+from budget.screens.rows import DEEPEST_INDENT, EMPTY, FOLDED_SIGN, INDEX_SIGN, Row, View, bearing, tree, visible
 from budget.screens.safe import clip, fit, width_of
 from budget.screens.themes import Theme
 
@@ -27,7 +28,7 @@ class Mark:
 
 
 class Ledger(Lines):
-    """The home screen. It holds cursor, scroll and fold state, and nothing else."""
+    """The home screen. It holds cursor, scroll, fold state and filter, and nothing else."""
 
     def __init__(self, theme: Theme, view: View) -> None:
         """Show a view, with the cursor on the first row."""
@@ -35,25 +36,36 @@ class Ledger(Lines):
         self.view = view
         self.rows = tree(view.snapshot.description)
         self.folded: frozenset[str] = frozenset()
+        self.filter: Filter = NO_FILTER
+        self.sifted: Sifted | None = None
+        """What the filter leaves, while one stands; the folds wait for its end."""
         self.shown: tuple[Row, ...] = self.rows
         self.cursor = 0
         self.column = "length"
         self.top = 0
         self.field: Field | None = None
         self.problem = ""
+        self._held: Path = ()
         self._placed: tuple[Placed, ...] = ()
         self._placed_for = -1
 
     # What is shown
 
     def show(self, view: View) -> None:
-        """Show another view of the run; the cursor stays on its row, wherever that is now."""
+        """Show another view of the run; the cursor stays on its row, wherever that is now.
+
+        A filter stays, but one that would leave nothing; the row under the cursor is not taken away under the hand.
+        """
         mark = self.mark
-        if view.snapshot.description is not self.view.snapshot.description:
-            self.rows = tree(view.snapshot.description)
-        self.view = view
-        self._refold()
-        self._find(mark)
+        if view is not self.view:
+            if view.snapshot.description is not self.view.snapshot.description:
+                self.rows = tree(view.snapshot.description)
+            self.view = view
+            self._renew(mark.path)
+            if not self.shown:
+                self.filter = NO_FILTER
+                self._renew()
+            self._find(mark)
         self.repaint()
 
     @property
@@ -78,17 +90,27 @@ class Ledger(Lines):
     # Moving
 
     def go(self, place: int) -> None:
-        """Move the cursor to a row by its place."""
+        """Move the cursor to a row by its place; one that no longer matches the filter goes when the cursor left it."""
         self.cursor = min(max(place, 0), max(len(self.shown) - 1, 0))
+        if self._held and self.row is not None and self.row.path != self._held:
+            mark = self.mark
+            self._renew()
+            self._find(mark)
         self._keep_in_view()
         self.repaint()
 
     def go_to(self, path: Path, column: str | None = None) -> bool:
-        """Move the cursor to a row by its keys, unfolding what hides it; False where there is none."""
+        """Move the cursor to a row by its keys, unfolding what hides it; False where there is none.
+
+        A row that the filter leaves out is shown as long as the cursor is on it.
+        """
         target = next((row for row in self.rows if row.path == path), None)
         if target is None:
             return False
-        self._unfold_above(target)
+        if target not in self.shown:
+            if not self.filter:
+                self.folded -= bearing(self.rows, target)
+            self._renew(path)
         if column is not None and column in {placed.column.key for placed in self.placed}:
             self.column = column
         self.go(self.shown.index(target))
@@ -103,10 +125,10 @@ class Ledger(Lines):
 
     def point(self, x: int, y: int) -> None:
         """Move the cursor to the cell at a place of the widget."""
-        if y < HEAD:
+        if y < self.head:
             return
         self.column = next((placed.column.key for placed in self.placed if placed.x <= x < placed.end), self.column)
-        self.go(self.top + y - HEAD)
+        self.go(self.top + y - self.head)
 
     def move_column(self, step: int) -> None:
         """Move the cursor to a neighbouring column that is shown."""
@@ -116,15 +138,25 @@ class Ledger(Lines):
         self.repaint()
 
     @property
+    def head(self) -> int:
+        """Lines above the rows; while a filter stands, the first says so."""
+        return HEAD + (self.sifted is not None)
+
+    @property
     def page(self) -> int:
         """Rows on a page."""
-        return max(1, self.size.height - HEAD)
+        return max(1, self.size.height - self.head)
 
     def fold(self, ids: frozenset[str]) -> None:
         """Fold exactly these branches."""
-        mark = self.mark
         self.folded = ids
-        self._refold()
+        self.keep_only(self.filter)
+
+    def keep_only(self, wanted: Filter, mark: Mark | None = None) -> None:
+        """Show only the rows that a filter leaves; the cursor goes to a mark, or to the row closest to it."""
+        mark = mark or self.mark
+        self.filter = wanted
+        self._renew()
         self._find(mark)
         self.repaint()
 
@@ -142,6 +174,10 @@ class Ledger(Lines):
 
     def line(self, y: int, width: int) -> Iterable[Piece]:
         """Spell the headings, or a row."""
+        if self.sifted is not None:
+            if y == 0:
+                return ((clip(f" {told(self.sifted, self.filter, len(self.rows))}", width), "warning"),)
+            y -= 1
         if y == 0:
             return self._titles()
         if y == 1:
@@ -163,7 +199,7 @@ class Ledger(Lines):
         for placed in self.placed:
             column = placed.column
             text = column.title if len(column.title) < placed.width else column.short
-            yield _aligned(clip(text, placed.width - 1), placed), "heading"
+            yield aligned(clip(text, placed.width - 1), placed), "heading"
 
     def _units(self) -> Iterator[Piece]:
         figures = self.view.figures
@@ -172,28 +208,32 @@ class Ledger(Lines):
             dimension = placed.column.dimension
             unit = figures.unit(dimension) if dimension is not None else ""
             if placed.column.key == "id":
-                unit = f"{self.cursor + 1} of {len(self.shown)}" if self.shown else "nothing yet"
-            yield _aligned(clip(unit, placed.width - 1), placed), "faint"
+                nothing = "no row" if self.rows else "nothing yet"
+                unit = f"{self.cursor + 1} of {len(self.shown)}" if self.shown else nothing
+            yield aligned(clip(unit, placed.width - 1), placed), "faint"
 
     def _row(self, row: Row, *, current: bool) -> Iterator[Piece]:
         yield (INDEX_SIGN if self._on_index(row) else " "), "index"
         cells = self.view.cells(row)
+        leading = self.sifted is not None and row.path in self.sifted.leading
         for placed in self.placed:
             key = placed.column.key
             cell = cells.get(key, EMPTY)
+            role = "faint" if leading else cell.role
             text = self._indented(row, cell.text, placed.width - 1) if key == "id" else cell.text
-            spelled = _aligned(_fitting(text, placed), placed, cell.sign or " ")
+            spelled = aligned(fitting(text, placed), placed, cell.sign or " ")
             if current and key == self.column:
-                yield spelled, f"{cell.role} cursor"
+                yield spelled, f"{role} cursor"
             elif current and key == "id":
-                yield spelled.rstrip(), f"{cell.role} row"
-                yield spelled[len(spelled.rstrip()) :], cell.role
+                yield spelled.rstrip(), f"{role} row"
+                yield spelled[len(spelled.rstrip()) :], role
             else:
-                yield spelled, cell.role
+                yield spelled, role
 
     def _indented(self, row: Row, text: str, width: int) -> str:
         indent = " " * min(row.depth, DEEPEST_INDENT)
-        fold = FOLDED_SIGN if row.branch and row.kind != "item" and row.id in self.folded else ""
+        folded = row.branch and row.kind != "item" and row.id in self.folded and not self.filter
+        fold = FOLDED_SIGN if folded else ""
         return clip(indent + fold + text, width)
 
     def _on_index(self, row: Row) -> bool:
@@ -223,8 +263,14 @@ class Ledger(Lines):
 
     # Keeping the cursor
 
-    def _refold(self) -> None:
-        self.shown = tuple(visible(self.rows, self.folded)) if self.folded else self.rows
+    def _renew(self, held: Path = ()) -> None:
+        """Take anew what is shown, with one row that the filter must leave."""
+        self._held = held if self.filter else ()
+        self.sifted = sift(self.view, self.rows, self.filter, held) if self.filter else None
+        if self.sifted is not None:
+            self.shown = self.sifted.rows
+        else:
+            self.shown = tuple(visible(self.rows, self.folded)) if self.folded else self.rows
 
     def _find(self, mark: Mark) -> None:
         place = self._place_of(mark.path)
@@ -238,19 +284,7 @@ class Ledger(Lines):
             for place, row in enumerate(self.shown):
                 if row.path == path[:size]:
                     return place
-        return None
-
-    def _unfold_above(self, target: Row) -> None:
-        if target in self.shown:
-            return
-        place, depth = self.rows.index(target), target.depth
-        opened = set()
-        for row in reversed(self.rows[:place]):
-            if row.depth < depth:
-                opened.add(row.id)
-                depth = row.depth
-        self.folded -= opened
-        self._refold()
+        return nearest(self.rows, self.shown, path, above=not self.filter)
 
     def _keep_in_view(self) -> None:
         page = self.page
@@ -259,15 +293,6 @@ class Ledger(Lines):
             step = page // 3
             self.top = self.cursor - step if self.cursor < self.top else self.cursor - page + 1 + step
         self.top = min(max(self.top, 0), max(0, len(self.shown) - page))
-
-
-def field_pieces(field: Field, width: int) -> Iterator[Piece]:
-    """Spell a field that is written in: its text, and the place of the next letter the other way round."""
-    before, letter, after = field.window(width - 1)
-    shown = "cursor" if field.fresh else "field"
-    yield before, shown
-    yield letter, "cursor"
-    yield fit(after, width - width_of(before) - width_of(letter)), "field"
 
 
 def _behind(pieces: list[Piece], start: int) -> Iterator[Piece]:
@@ -280,16 +305,3 @@ def _behind(pieces: list[Piece], start: int) -> Iterator[Piece]:
                 begun = True
             yield text, roles
         x += width_of(text)
-
-
-def _fitting(text: str, placed: Placed) -> str:
-    room = placed.width - 1
-    if placed.column.dimension is not None:
-        return fit_figure(text, room)
-    if placed.column.key == "size":
-        text = fit_size(text, room)
-    return clip(text, room)
-
-
-def _aligned(text: str, placed: Placed, sign: str = " ") -> str:
-    return fit(text, placed.width - 1, right=not placed.column.left) + sign

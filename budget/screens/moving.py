@@ -1,4 +1,4 @@
-"""Moving about: rows, columns, folds, searching, and straight to an ID, the index terminal or the next finding."""
+"""Moving about: rows, columns, folds, search and filter, and straight to an ID, the index terminal or a finding."""
 
 from __future__ import annotations
 
@@ -9,11 +9,14 @@ from budget.report.plain import plain
 from budget.screens.chooser import Choice, Chooser, Offer
 from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
-from budget.screens.rows import Row
+from budget.screens.filtering import NO_FILTER, matches, read_filter, sought
 
 if TYPE_CHECKING:
     from budget.document import Snapshot
     from budget.screens.app import BudgetApp
+
+FILTER_GONE = "the filter was taken away"
+"""Said where one goes to a row that it left out."""
 
 
 def step(app: BudgetApp, rows: int) -> None:
@@ -47,6 +50,8 @@ def sideways(app: BudgetApp, columns: int) -> None:
 def fold(app: BudgetApp) -> None:
     """Fold the branch under the cursor, or unfold it."""
     row = app.ledger.row
+    if _folds_wait(app):
+        return
     if row is None or not row.branch or row.kind == "item":
         app.say("nothing hangs on this row", "note")
         return
@@ -56,9 +61,18 @@ def fold(app: BudgetApp) -> None:
 
 def fold_all(app: BudgetApp) -> None:
     """Fold every branch below the sources, or unfold everything."""
+    if _folds_wait(app):
+        return
     branches = frozenset(row.id for row in app.ledger.rows if row.branch and row.kind == "section")
     app.ledger.fold(frozenset() if app.ledger.folded else branches)
     app.tell()
+
+
+def _folds_wait(app: BudgetApp) -> bool:
+    """Say so where a filter stands, under which nothing is folded."""
+    if app.ledger.filter:
+        app.say(f"nothing is folded while a filter stands; {app.keys('back')} shows every row", "note")
+    return bool(app.ledger.filter)
 
 
 def to_index(app: BudgetApp) -> None:
@@ -79,8 +93,24 @@ def to_id(app: BudgetApp, id_: str) -> bool:
         app.say(f"there is no {plain(id_)} in this run", "note")
         return False
     app.turn_to("ledger")
-    app.ledger.go_to(row.path)
+    return reach(app, row.path)
+
+
+def reach(app: BudgetApp, path: Path, column: str | None = None, said: tuple[str, str] = ("", "note")) -> bool:
+    """Go to a row and say something of it, in a role; a filter that leaves it out is taken away, with a word.
+
+    False where there is no such row.
+    """
+    ledger = app.ledger
+    hidden = bool(ledger.filter) and all(row.path != path for row in ledger.shown)
+    if hidden and any(row.path == path for row in ledger.rows):
+        ledger.keep_only(NO_FILTER)
+        said = (f"{FILTER_GONE}; {said[0]}" if said[0] else FILTER_GONE, said[1])
+    if not ledger.go_to(path, column):
+        return False
     app.tell()
+    if said[0]:
+        app.say(*said)
     return True
 
 
@@ -107,9 +137,8 @@ def next_finding(app: BudgetApp) -> None:
         app.say(f"line {found[0].line}: {plain(found[0].message)}", found[0].level.value)
         return
     finding = found[after[1]]
-    ledger.go_to(ledger.rows[after[0]].path, column_of(finding.path))
-    app.tell()
-    app.say(plain(finding.message), finding.level.value)
+    said = (plain(finding.message), finding.level.value)
+    reach(app, ledger.rows[after[0]].path, column_of(finding.path), said)
 
 
 def column_of(path: Path) -> str | None:
@@ -121,21 +150,29 @@ def column_of(path: Path) -> str | None:
 
 def search(app: BudgetApp) -> None:
     """Ask for words and go to the first row that has them, while they are typed."""
-    start = app.ledger.mark
+    ledger = app.ledger
+    start, kept, folds = ledger.mark, ledger.filter, ledger.folded
+
+    def put_back() -> None:
+        if (ledger.filter, ledger.folded) != (kept, folds):
+            ledger.folded = folds
+            ledger.keep_only(kept, start)
+        ledger.return_to(start)
 
     def attempt(text: str) -> Snapshot | None:
         app.sought = text
-        app.ledger.return_to(start)
-        if text and not _seek(app, 1, include_here=True):
-            app.ledger.return_to(start)
+        put_back()
+        _seek(app, 1, include_here=True)
         return None
 
     def take(text: str) -> None:
         app.sought = text
         if text and not _seek(app, 1, include_here=True):
             app.say(f'nothing has "{plain(text)}"', "note")
+        elif ledger.filter is not kept:
+            app.say(FILTER_GONE, "note")
 
-    begin(app, Entry("search", Field(), attempt, take))
+    begin(app, Entry("search", Field(), attempt, take, light=True, undo=put_back))
 
 
 def next_match(app: BudgetApp, direction: int) -> None:
@@ -144,8 +181,42 @@ def next_match(app: BudgetApp, direction: int) -> None:
         app.say("nothing was sought yet", "note")
     elif not _seek(app, direction, include_here=False):
         app.say(f'nothing has "{plain(app.sought)}"', "note")
-    else:
-        app.tell()
+
+
+def filter_rows(app: BudgetApp) -> None:
+    """Ask for words and show only the rows that have them, while they are typed; no words show every row."""
+    ledger = app.ledger
+    start, before = ledger.mark, ledger.filter
+
+    def attempt(text: str) -> Snapshot | None:
+        ledger.keep_only(read_filter(text), start)
+        return None
+
+    def take(text: str) -> None:
+        if ledger.sifted is None:
+            app.say("every row is shown", "note")
+        elif not ledger.sifted.matching:
+            ledger.keep_only(NO_FILTER, start)
+            app.say(f"no row matches {plain(text)}; every row is shown", "note")
+        else:
+            count = f"{ledger.sifted.matching} of {len(ledger.rows)} rows match"
+            app.say(f"{count}; {app.keys('back')} shows every row", "note")
+
+    def put_back() -> None:
+        ledger.keep_only(before, start)
+        ledger.return_to(start)
+
+    begin(app, Entry("only rows with", Field.holding(before.text), attempt, take, light=True, undo=put_back))
+
+
+def show_all(app: BudgetApp) -> bool:
+    """Take the filter away; False where none stands."""
+    if not app.ledger.filter:
+        return False
+    app.ledger.keep_only(NO_FILTER)
+    app.tell()
+    app.say("every row is shown", "note")
+    return True
 
 
 def go_to(app: BudgetApp) -> None:
@@ -164,20 +235,14 @@ def _go(app: BudgetApp, id_: str) -> None:
 
 
 def _seek(app: BudgetApp, direction: int, *, include_here: bool) -> bool:
+    """Go to a row that has what is sought; what filters by a meaning is sought as it is written."""
     ledger = app.ledger
-    rows, words = ledger.rows, app.sought.casefold().split()
-    if not rows or not words:
+    rows, wanted = ledger.rows, sought(app.sought)
+    if not rows or not wanted:
         return False
     here = rows.index(ledger.row) if ledger.row in rows else 0
     for offset in range(0 if include_here else 1, len(rows) + 1):
         row = rows[(here + direction * offset) % len(rows)]
-        text = _words_of(app, row)
-        if all(word in text for word in words):
-            ledger.go_to(row.path)
-            return True
+        if matches(ledger.view, row, wanted):
+            return reach(app, row.path)
     return False
-
-
-def _words_of(app: BudgetApp, row: Row) -> str:
-    cells = app.ledger.view.cells(row)
-    return " ".join(cells[key].text for key in ("id", "title", "size", "balance") if key in cells).casefold()

@@ -1,85 +1,159 @@
-"""Opening a run in the app, and the way out of it."""
+"""Opening a run in the app, going on from it to another, and the way out."""
 
 from __future__ import annotations
 
 import contextlib
 import errno
 import logging
+import signal
 import sys
 import threading
+from dataclasses import dataclass
 from pathlib import Path
 
-from budget.document import Document
 from budget.report.plain import plain
 from budget.screens import unsaved
 from budget.screens.app import BudgetApp
 from budget.screens.config import Config, config_folder
 from budget.screens.guarded import INTERNAL
+from budget.screens.opened import Opened, open_run
 from budget.screens.signals import Guard
 from budget.screens.themes import load_theme
 from budget.storage import StorageError
-from budget.storage.records import Record, find_records
 
 SAVING = 1.0
 """Seconds in which a save that is under way at the end may come to its own end."""
 
 
+@dataclass(frozen=True, slots=True)
+class Terms:
+    """How runs are shown from the start of the program to its end, whichever of them is open."""
+
+    config: Config
+    ascii_only: bool
+    mouse: bool
+    read_only: bool
+
+
+class _Stay:
+    """A stay in the app: one run is open at any moment, and the guard acts on that one."""
+
+    def __init__(self, terms: Terms) -> None:
+        self.terms = terms
+        self.theme, self.problems = load_theme(terms.config.theme, config_folder())
+        self.app: BudgetApp | None = None
+        self.guard = Guard(keep=self._keep, close=self._close)
+
+    def make(self, run: Opened, problems: tuple[str, ...] = ()) -> BudgetApp:
+        """Make the app of a run that was read."""
+        terms = self.terms
+        if terms.read_only:
+            run.document.read_only = "opened read-only"
+        notes = (*run.notes, *problems)
+        app = BudgetApp(run.document, terms.config, self.theme, ascii_only=terms.ascii_only, notes=notes)
+        app.failing = lambda: self.guard.hurry(INTERNAL)
+        return app
+
+    def through(self, app: BudgetApp) -> int | None:
+        """Stay in an app until it ends; return what it ends with."""
+        try:
+            return app.run(mouse=self.terms.mouse)
+        except Exception as error:  # noqa: BLE001 - whatever broke the toolkit is told as any other error of ours
+            app.fail(error)
+            self.guard.put_back()
+            return INTERNAL
+        finally:
+            for number in (signal.SIGTSTP, signal.SIGCONT):  # the app's own would wake an app that has ended
+                signal.signal(number, signal.SIG_DFL)
+
+    def goes_on(self, app: BudgetApp) -> bool:
+        """Whether an app that has ended was left for another run, and not ended by a signal or a fault."""
+        return app.following is not None and app.failure is None and self.guard.code is None
+
+    def next_after(self, app: BudgetApp, following: Opened) -> BudgetApp:
+        """Return the app of the run that an app was left for; where that fails, of the old run, with the reason."""
+        _settle(app)
+        try:
+            after = self.make(following.up_to_date())
+        except StorageError as refused:
+            return self._back(app, str(refused))
+        except Exception as fault:  # noqa: BLE001 - what is wrong with the other run must not end the stay
+            from budget.storage.faults import record_fault  # noqa: PLC0415 - seldom, if ever
+
+            record_fault(fault, "budget edit, opening another run")
+            return self._back(app, f"{following.path.name} could not be shown: {type(fault).__name__}")
+        app.keeper.end(discard=app.discarding, left=True)
+        return after
+
+    def _back(self, app: BudgetApp, reason: str) -> BudgetApp:
+        """Take up the run again that was left, with all that was unsaved and one step back from it."""
+        again = self.make(Opened(app.document.path or unsaved.UNNAMED, app.document))
+        again.first_words = (reason, "error")
+        again.ledger.return_to(app.ledger.mark)
+        # The new record is there before the old one goes.
+        app.keeper.end(discard=again.keeper.keep_now(), left=True)
+        return again
+
+    def _keep(self) -> None:
+        if self.app is not None:
+            self.app.keep_now()
+
+    def _close(self, code: int) -> None:
+        if self.app is not None:
+            self.app.close_with(code)
+
+
 def open_app(
-    path: Path, config: Config, problems: tuple[str, ...], *, ascii_only: bool, mouse: bool, read_only: bool = False
-) -> int:
-    """Open a file and stay in the app until the user leaves; return the exit code."""
+    path: Path, config: Config, problems: tuple[str, ...], *, ascii_only: bool, mouse: bool, read_only: bool = False,
+    first_words: str = "",
+) -> int:  # fmt: skip
+    """Open a file, and others from there, and stay in the app until the user leaves; return the exit code.
+
+    `first_words` are said of the run when it is shown.
+    """
     try:
-        document, notes = _open(path)
+        run = open_run(path)
     except StorageError as wrong:
         print(f"budget: {plain(str(wrong))}", file=sys.stderr)
         return 2
-    if read_only:
-        document.read_only = "opened read-only"
-    theme, theme_problems = load_theme(config.theme, config_folder())
-    app = BudgetApp(document, config, theme, ascii_only=ascii_only, notes=(*notes, *problems, *theme_problems))
-    guard = Guard(keep=app.keep_now, close=app.close_with)
-    app.failing = lambda: guard.hurry(INTERNAL)
+    stay = _Stay(Terms(config, ascii_only, mouse, read_only))
+    app = stay.app = stay.make(run, (*problems, *stay.problems))
+    app.first_words = (first_words, "note")
     _quiet()
-    guard.watch()
-    try:
-        code = app.run(mouse=mouse)
-    except Exception as error:  # noqa: BLE001 - whatever broke the toolkit is told as any other error of ours
-        code = INTERNAL
-        app.fail(error)
-        guard.put_back()
-    if guard.code is not None:
-        guard.let_go()
+    stay.guard.watch()
+    code = stay.through(app)
+    while app.following is not None and stay.goes_on(app):
+        app = stay.app = stay.next_after(app, app.following)
+        if stay.guard.code is not None:  # it came between the two
+            break
+        code = stay.through(app)
+    return _end(app, stay.guard, code)
+
+
+def _settle(app: BudgetApp) -> None:
+    """Wait a little for a save that is under way, and note what is unsaved of an app that has ended."""
     if app.saver is not None:
         app.saver.join(SAVING)
     with contextlib.suppress(Exception):  # of a broken app, what was noted last is what there is
         unsaved.note(app)
+
+
+def _end(app: BudgetApp, guard: Guard, code: int | None) -> int:
+    """End the stay with the app that was open last; return the exit code."""
+    if guard.code is not None:
+        guard.let_go()
+    _settle(app)
     app.keeper.end(discard=app.discarding)
     if app.failure is not None:
         _tell_failure(app)
         return INTERNAL
     if guard.code is not None:
-        if document.dirty:
-            kept = f"kept: budget edit {plain(str(path))}"
+        if app.document.dirty:
+            kept = f"kept: budget edit {plain(str(app.document.path))}"
             told = kept if app.keeper.kept else f"NOT kept: {plain(app.keeper.problem)}"
             print(f"budget: ended by a signal; unsaved changes were {told}", file=sys.stderr)
         return guard.code
     return code if code is not None else app.return_code or 0
-
-
-def _open(path: Path) -> tuple[Document, tuple[str, ...]]:
-    """Open a file; where it is gone and unsaved changes of it were left behind, those."""
-    try:
-        return Document.open(path), ()
-    except StorageError:
-        left = _left_behind(path) if not path.exists() else None
-        if left is None:
-            raise
-    document = Document.of(left.text or "", path)
-    return document, (f"{path.name} is not there; this is what was unsaved when it was last open",)
-
-
-def _left_behind(path: Path) -> Record | None:
-    return next((one for one in find_records(path) if one.alive is False and one.text is not None), None)
 
 
 def _quiet() -> None:

@@ -97,30 +97,45 @@ def beneath(rows: tuple[Row, ...], place: int) -> tuple[Row, ...]:
     return tuple(below)
 
 
+def bearing(rows: tuple[Row, ...], row: Row) -> frozenset[str]:
+    """Return the IDs of the rows on which a row hangs."""
+    found, depth = set(), row.depth
+    for above in reversed(rows[: rows.index(row)]):
+        if above.depth < depth:
+            found.add(above.id)
+            depth = above.depth
+    return frozenset(found)
+
+
 class View:
     """What the ledger shows of one snapshot: its rows, and the cells of a row when they are asked for."""
 
-    __slots__ = ("_cells", "_marks", "_sizes", "figures", "snapshot")
+    __slots__ = ("_cells", "_levels", "_marks", "figures", "snapshot", "texts")
 
     def __init__(self, snapshot: Snapshot) -> None:
         """Take a snapshot; nothing is computed or spelled before it is asked for."""
         self.snapshot = snapshot
         self.figures = Figures(snapshot.description)
         self._cells: dict[Path, Mapping[str, Cell]] = {}
+        self.texts: dict[Path, str] = {}
+        """What rows say, to be sought in, as far as it was asked for."""
         self._marks: dict[str, dict[str, Level]] = {}
+        self._levels: dict[Path, Level] = {}
         for finding in snapshot.findings:
             if finding.level is not Level.NOTE and finding.owner:
                 marks = self._marks.setdefault(finding.owner, {})
                 marks.setdefault(_COLUMN_OF_CODE.get(finding.code, "id"), finding.level)
+                if self._levels.get(finding.path[:4]) is not Level.ERROR:
+                    self._levels[finding.path[:4]] = finding.level
 
     def on_index(self, row: Row) -> bool:
         """Whether a row is on the index circuit."""
-        budget = self.snapshot.budget
-        result = budget.sections.get(row.id) or budget.terminals.get(row.id)
-        return result is not None and result.index
+        return row.id in self.snapshot.budget.index
 
     def level(self, row: Row) -> Level | None:
-        """Return the gravest finding of a row above a note."""
+        """Return the gravest finding of a row above a note; of an item, what is found at itself."""
+        if row.kind == "item":
+            return self._levels.get(row.path)
         marks = self._marks.get(row.id, {}).values()
         return Level.ERROR if Level.ERROR in marks else (Level.WARNING if marks else None)
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import dataclasses
 import os
 from collections.abc import Callable
+from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -18,6 +19,7 @@ from budget.screens.entering import Entry, begin
 from budget.screens.field import Field
 from budget.screens.writing import WritingError
 from budget.storage import ChangedOnDisk, Look, Stamp, StorageError, look
+from budget.storage.recents import note_recent
 
 if TYPE_CHECKING:
     from budget.document import Saving, Snapshot
@@ -91,9 +93,11 @@ def _written(app: BudgetApp, saving: Saving, then: Doing | None, outcome: Done |
     if isinstance(outcome, StorageError):
         _refused(app, saving, then, outcome)
         return
-    before = app.document.snapshot
+    before, renamed = app.document.snapshot, saving.path != app.document.path
     app.document.saved(saving, *outcome)
     unsaved.note(app)
+    if renamed:
+        remember(app)
     if app.document.snapshot is not before and app.entry is None:
         app.show(app.document.snapshot)
     app.tell_state()
@@ -101,6 +105,12 @@ def _written(app: BudgetApp, saving: Saving, then: Doing | None, outcome: Done |
     for doing in (then, queued):
         if doing is not None:
             doing()
+
+
+def remember(app: BudgetApp) -> None:
+    """Have the run's file remembered among those that were open of late."""
+    if app.document.path is not None:
+        in_background(app, partial(note_recent, app.document.path), lambda _: None)
 
 
 def _refused(app: BudgetApp, saving: Saving, then: Doing | None, refused: StorageError) -> None:
@@ -138,32 +148,45 @@ def _short(refused: StorageError, path: Path) -> str:
     return str(refused).replace(str(path), name).replace(os.path.realpath(path), name).partition(";")[0]
 
 
-def leave(app: BudgetApp) -> None:
-    """Quit; where the run is not saved, ask first."""
+@dataclass(frozen=True, slots=True)
+class Leaving:
+    """Where the way out of a run leads, and what the answers are called that take it."""
+
+    go: Doing
+    save: str
+    keep: str
+    discard: str
+
+
+def leave(app: BudgetApp, leaving: Leaving | None = None) -> None:
+    """Leave the run, to quit where nothing else is said; where it is not saved, ask first."""
+    way = leaving or Leaving(
+        lambda: app.exit(0), "save and quit", "quit, and keep the changes for the next time", "quit without saving"
+    )
     if app.saving is not None:
-        app.after_saving = partial(leave, app)
+        app.after_saving = partial(leave, app, way)
         app.say("still saving")
         return
     if not app.document.dirty:
-        app.exit(0)
+        way.go()
         return
 
     def keep() -> None:
         if app.keep_now():
-            app.exit(0)
+            way.go()
         else:
             app.say(f"the changes could not be kept: {plain(app.keeper.problem)}; save the run elsewhere", "error")
 
     def throw_away() -> None:
         app.discarding = True
-        app.exit(0)
+        way.go()
 
     ask(
         app,
         "The run is not saved",
         (
-            ("save and quit", lambda: save(app, then=lambda: leave(app))),
-            ("quit, and keep the changes for the next time", keep),
-            ("quit without saving", throw_away),
+            (way.save, lambda: save(app, then=lambda: leave(app, way))),
+            (way.keep, keep),
+            (way.discard, throw_away),
         ),
     )

@@ -103,11 +103,12 @@ def _findings(app: BudgetApp) -> Offer:
 def _to_finding(app: BudgetApp, value: Located) -> None:
     app.turn_to("ledger")
     shown = value.path[:4] if len(value.path) > 3 and value.path[2] == "item" else value.path[:2]
-    if not app.ledger.go_to(shown, moving.column_of(value.path)):
+    said = (plain(value.message), value.level.value)
+    if not moving.reach(app, shown, moving.column_of(value.path), said):
         show_text(app)
         app.text.go_to_line(value.line)
-    app.tell()
-    app.say(plain(value.message), value.level.value)
+        app.tell()
+        app.say(*said)
 
 
 # Text and manual
@@ -178,7 +179,7 @@ def back(app: BudgetApp) -> None:
         ask(app, "The text is not TOML", (("throw away what was written", lambda: _forget(app)),), "mend it")
         app.say(reason, "error")
         return
-    if boards.stop(app):
+    if boards.stop(app) or (app.at == "ledger" and moving.show_all(app)):
         return
     app.turn_to("ledger")
 
@@ -205,9 +206,23 @@ def show_changes(app: BudgetApp) -> None:
     conflict.show_changes(app)
 
 
+def show_changes_since(app: BudgetApp) -> None:
+    """Show what changed since a git revision."""
+    from budget.screens import changes  # noqa: PLC0415 - the first frame does not wait for it
+
+    changes.show_since_revision(app)
+
+
 def recover(app: BudgetApp) -> None:
     """Look for unsaved changes of this run that were left behind."""
     recovering.look(app, asked=True)
+
+
+def copy_rows(app: BudgetApp) -> None:
+    """Copy the row with its branch, or the rows of the schedule."""
+    from budget.screens import copying  # noqa: PLC0415 - the first frame does not wait for it
+
+    copying.copy_rows(app)
 
 
 def edit_outside(app: BudgetApp) -> None:

@@ -16,6 +16,7 @@ from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 
+from budget.storage.processes import left_by
 from budget.storage.records import Record, new_record, remove_record, tidy, write_record
 
 PAUSE = 1.0
@@ -94,11 +95,18 @@ class Keeper:
             if got:
                 self._writing.release()
 
-    def end(self, *, discard: bool = False) -> None:
-        """Stop keeping; the record goes where nothing is unsaved, or where that is not wanted."""
+    def end(self, *, discard: bool = False, left: bool = False) -> None:
+        """Stop keeping; the record goes where nothing is unsaved, or where that is not wanted.
+
+        With `left` the process lives on without the run: a record that stays says that it is open nowhere.
+        """
         self._ended = True
         self._wake.set()
         if self._work.text is not None and not discard:
+            if left:
+                with self._writing:
+                    self._record = dataclasses.replace(self._record, process=left_by(self._record.process))
+                    self._kept = None
             self.keep_now()
             return
         with self._writing:

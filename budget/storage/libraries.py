@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from pathlib import Path, PureWindowsPath
 
 from budget.description import SourceText, read_bytes
@@ -20,15 +20,22 @@ LARGEST_TOGETHER = 4 * LARGEST_FILE
 
 _URL = re.compile(r"[A-Za-z][A-Za-z0-9+.-]+:")
 
+Read = Callable[[Path], bytes]
+"""Returns the bytes of a file; raises StorageError where it can't be read."""
 
-def read_libraries(source: SourceText, path: Path | None) -> tuple[Library, ...]:
+
+def _now(target: Path) -> bytes:
+    return load(target)[0]
+
+
+def read_libraries(source: SourceText, path: Path | None, read: Read = _now) -> tuple[Library, ...]:
     """Read the libraries that a run names, in its order. `path` is the run's file, None where it has none.
 
     A path is relative to the run's file and must lead, symbolic links followed, to a file in the repository that holds
     the run (the nearest folder above it with a .git, else the run's own folder) or in the user's settings folder.
-    Nothing is raised: a library that can't be read says why.
+    Nothing is raised: a library that can't be read says why. `read` gets their bytes elsewhere than from the disk.
     """
-    return _read_all(library_paths(source), path, {})
+    return _read_all(library_paths(source), path, {}, read)
 
 
 def read_again(known: tuple[Library, ...], path: Path | None) -> tuple[Library, ...]:
@@ -44,11 +51,13 @@ def renew(source: SourceText, path: Path | None, known: tuple[Library, ...]) -> 
     return read_libraries(source, path)
 
 
-def _read_all(names: Sequence[str], path: Path | None, known: Mapping[str, Library]) -> tuple[Library, ...]:
+def _read_all(
+    names: Sequence[str], path: Path | None, known: Mapping[str, Library], read_file: Read = _now
+) -> tuple[Library, ...]:
     read: list[Library] = []
     left = LARGEST_TOGETHER
     for place, written in enumerate(names):
-        content, fault = _content(written, path, place)
+        content, fault = _content(written, path, place, read_file)
         if not fault and len(content) > left:
             fault = f"would make more than {LARGEST_TOGETHER / 1e6:.1f} MB of libraries; name fewer, or split them"
         if fault:
@@ -61,7 +70,7 @@ def _read_all(names: Sequence[str], path: Path | None, known: Mapping[str, Libra
     return tuple(read)
 
 
-def _content(written: str, path: Path | None, place: int) -> tuple[bytes, str]:
+def _content(written: str, path: Path | None, place: int, read_file: Read) -> tuple[bytes, str]:
     """Return the bytes of a library, or none and the reason why."""
     fault = _fault_of(written, path, place)
     if fault or path is None:
@@ -75,7 +84,7 @@ def _content(written: str, path: Path | None, place: int) -> tuple[bytes, str]:
     if str(target) == run:
         return b"", "is the run itself; name a file of pipe, duct, fitting and device tables"
     try:
-        content, _ = load(target)
+        content = read_file(target)
     except StorageError as refused:
         why = refused.__cause__
         if isinstance(why, OSError):

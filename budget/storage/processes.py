@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import contextlib
+import dataclasses
 import getpass
 import os
 from dataclasses import dataclass
@@ -50,6 +51,11 @@ def is_alive(process: Process) -> bool | None:
         pass
     started = _started(process.pid)
     return started is None or not process.started or started == process.started
+
+
+def left_by(process: Process) -> Process:
+    """Return what stands for a process that lives on, in a record of what it has left: none that is alive."""
+    return dataclasses.replace(process, pid=0)
 
 
 def user_name() -> str:

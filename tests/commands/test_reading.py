@@ -110,7 +110,7 @@ def test_the_app_is_opened_with_what_was_asked_for(
 ) -> None:
     seen: list[object] = []
 
-    def run(path: Path, **how: object) -> int | None:
+    def run(path: Path | None, **how: object) -> int | None:
         seen.append((path, how))
         return 3 if how["mouse"] else None
 
@@ -118,10 +118,12 @@ def test_the_app_is_opened_with_what_was_asked_for(
     assert call("edit", run_file).status == 0
     assert call("edit", "--ascii", "--mouse", run_file).status == 3
     assert call("edit", "--read-only", run_file).status == 0
+    assert call("edit").status == 0
     assert seen == [
         (run_file, {"ascii": None, "mouse": None, "read_only": False}),
         (run_file, {"ascii": True, "mouse": True, "read_only": False}),
         (run_file, {"ascii": None, "mouse": None, "read_only": True}),
+        (None, {"ascii": None, "mouse": None, "read_only": False}),
     ]
 
 
@@ -154,7 +156,7 @@ def complete(script: str, *words: str) -> list[str]:
 
 def test_bash_completes_commands_options_words_and_files(call: Caller, run_file: Path) -> None:
     script = call("completion", "bash").out
-    assert complete(script, "budget", "ch") == ["check"]
+    assert complete(script, "budget", "che") == ["check"]
     assert complete(script, "budget", "check", "--j") == ["--json"]
     assert complete(script, "budget", "new", "a", "--fluid", "prop") == ["propylene\\ glycol"]
     assert complete(script, "budget", "list", "pi") == ["pipes"]

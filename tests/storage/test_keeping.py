@@ -107,6 +107,32 @@ def test_at_the_end_what_is_unsaved_stays_unless_it_is_discarded(tmp_path: Path,
     assert find_records(folder=tmp_path) == ()
 
 
+def test_what_a_process_that_lives_on_has_left_is_open_nowhere(tmp_path: Path, work: Work) -> None:
+    keeper = Keeper(work, folder=tmp_path)
+    keeper.note(changed(work, "a = 1\n"))
+    keeper.keep_now()
+    keeper.end(left=True)
+    (record,) = find_records(folder=tmp_path)
+    assert (record.text, record.alive) == ("a = 1\n", False)
+    keeper.keep_now()
+    assert find_records(folder=tmp_path) == (record,)
+
+
+def test_where_that_cant_be_written_what_was_kept_stands(tmp_path: Path, work: Work) -> None:
+    full = threading.Event()
+
+    def write(record: Record, folder: Path | None) -> Path:
+        if full.is_set():
+            raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+        return write_record(record, folder)
+
+    keeper = Keeper(work, folder=tmp_path, write=write)
+    keeper.keep_now(changed(work, "a = 1\n"))
+    full.set()
+    keeper.end(left=True)
+    assert text_in(tmp_path) == "a = 1\n"
+
+
 @pytest.mark.usefixtures("quick")
 def test_a_disk_that_takes_nothing_is_told_and_tried_again(tmp_path: Path, work: Work) -> None:
     full = threading.Event()
