@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from budget.document import Snapshot
 from budget.report.figures import Figures
 from budget.screens.columns import MARK, fit_figure
-from budget.screens.lines import Lines, Piece
+from budget.screens.lines import Lines, Piece, scrolled
 from budget.screens.rows import Cell
 from budget.screens.safe import clip, fit, width_of
 from budget.screens.themes import Theme
@@ -106,7 +106,7 @@ class Board(Lines):
     def go(self, place: int) -> None:
         """Move the cursor to a row by its place."""
         self.cursor = min(max(place, 0), max(len(self.ids) - 1, 0))
-        self._keep_in_view()
+        self.keep_in_view()
         self.repaint()
 
     def go_to(self, id_: str) -> bool:
@@ -130,29 +130,10 @@ class Board(Lines):
         """Rows on a page."""
         return max(1, self.size.height - self.head - self.tail)
 
-    def repaint(self) -> None:
-        """Send the cells that differ; of a board that is not in front, forget what stood there."""
-        if not self.size:
-            self._painted.clear()
-            self.refresh()
-        super().repaint()
-
-    def on_resize(self) -> None:
-        """Keep the row under the cursor in view."""
-        # It has just been painted whole; the toolkit would do so again with the next key.
-        self._exchange_repaint_regions()
-        self._keep_in_view()
-        self.repaint()
-
-    def _keep_in_view(self) -> None:
-        if not self.size:
-            return  # it is not in front: where it is scrolled to is seen when it is
-        page = self.page
-        if self.cursor < self.top or self.cursor >= self.top + page:
-            # A third of a page at a time: on a narrow link a whole page of rows is dear.
-            step = page // 3
-            self.top = self.cursor - step if self.cursor < self.top else self.cursor - page + 1 + step
-        self.top = min(max(self.top, 0), max(0, len(self.ids) - page))
+    def keep_in_view(self) -> None:
+        """Scroll to the row under the cursor; of a widget that is not in front, when it is."""
+        if self.size:
+            self.top = scrolled(self.top, self.cursor, self.page, len(self.ids))
 
     # Spelling
 

@@ -91,7 +91,7 @@ class Chooser(Lines):
         self._more.clear()
         self._filter()
         self.cursor = min(cursor, max(0, len(self.kept) - 1))
-        self._keep_in_view()
+        self.keep_in_view()
         self.repaint()
 
     @property
@@ -118,7 +118,7 @@ class Chooser(Lines):
     def go(self, place: int) -> None:
         """Move the cursor to an entry by its place."""
         self.cursor = min(max(place, 0), max(len(self.kept) - 1, 0))
-        self._keep_in_view()
+        self.keep_in_view()
         self.repaint()
 
     def turn(self, pages: int) -> None:
@@ -148,11 +148,6 @@ class Chooser(Lines):
     def refresh_more(self) -> None:
         """Compute the further cells of the entries again."""
         self._more.clear()
-        self.repaint()
-
-    def on_resize(self) -> None:
-        """Keep the entry under the cursor in view."""
-        self._keep_in_view()
         self.repaint()
 
     def line(self, y: int, width: int) -> Iterable[Piece]:
@@ -269,7 +264,10 @@ class Chooser(Lines):
             if written is not None and all(choice.value != written.value for choice in self.kept):
                 self.kept.append(written)
 
-    def _keep_in_view(self) -> None:
+    def keep_in_view(self) -> None:
+        """Scroll to the entry under the cursor; of a list that is not in front, when it is."""
+        if not self.size:
+            return
         if self.cursor < self.top:
             self.top = self.cursor
         elif self.cursor >= self.top + self.page:

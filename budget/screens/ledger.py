@@ -9,7 +9,7 @@ from budget.description.finding import Path
 from budget.screens.columns import MARK, Placed, aligned, fitting, place_columns
 from budget.screens.field import Field, field_pieces
 from budget.screens.filtering import NO_FILTER, Filter, Sifted, nearest, sift, told
-from budget.screens.lines import Lines, Piece
+from budget.screens.lines import Lines, Piece, scrolled
 from budget.screens.rows import DEEPEST_INDENT, EMPTY, FOLDED_SIGN, INDEX_SIGN, Row, View, bearing, tree, visible
 from budget.screens.safe import clip, fit, width_of
 from budget.screens.themes import Theme
@@ -96,7 +96,7 @@ class Ledger(Lines):
             mark = self.mark
             self._renew()
             self._find(mark)
-        self._keep_in_view()
+        self.keep_in_view()
         self.repaint()
 
     def go_to(self, path: Path, column: str | None = None) -> bool:
@@ -189,11 +189,6 @@ class Ledger(Lines):
             return self._written_in(self.shown[place], self.field, width)
         return self._row(self.shown[place], current=place == self.cursor)
 
-    def on_resize(self) -> None:
-        """Keep the row under the cursor in view."""
-        self._keep_in_view()
-        self.repaint()
-
     def _titles(self) -> Iterator[Piece]:
         yield " " * MARK, "heading"
         for placed in self.placed:
@@ -275,7 +270,7 @@ class Ledger(Lines):
     def _find(self, mark: Mark) -> None:
         place = self._place_of(mark.path)
         self.cursor = min(max(mark.place if place is None else place, 0), max(len(self.shown) - 1, 0))
-        self._keep_in_view()
+        self.keep_in_view()
 
     def _place_of(self, path: Path) -> int | None:
         if self.cursor < len(self.shown) and self.shown[self.cursor].path == path:
@@ -286,13 +281,10 @@ class Ledger(Lines):
                     return place
         return nearest(self.rows, self.shown, path, above=not self.filter)
 
-    def _keep_in_view(self) -> None:
-        page = self.page
-        if self.cursor < self.top or self.cursor >= self.top + page:
-            # A third of a page at a time: on a narrow link a whole page of rows is dear.
-            step = page // 3
-            self.top = self.cursor - step if self.cursor < self.top else self.cursor - page + 1 + step
-        self.top = min(max(self.top, 0), max(0, len(self.shown) - page))
+    def keep_in_view(self) -> None:
+        """Scroll to the row under the cursor; of a widget that is not in front, when it is."""
+        if self.size:
+            self.top = scrolled(self.top, self.cursor, self.page, len(self.shown))
 
 
 def _behind(pieces: list[Piece], start: int) -> Iterator[Piece]:

@@ -47,8 +47,14 @@ class Lines(Widget):
         return strip
 
     def repaint(self) -> None:
-        """Spell every line again and send the cells that differ from what is on the screen."""
-        if not self.is_mounted or not self.size:
+        """Spell every line again and send the cells that differ from what is on the screen.
+
+        Of a widget that is not in front, what stood there is forgotten: it would be shown again for a moment.
+        """
+        if not self.is_mounted:
+            return
+        if not self.size:
+            self._painted.clear()
             return
         for y in range(self.size.height):
             new = self._spell(y)
@@ -60,6 +66,16 @@ class Lines(Widget):
             if old is not None and old.cell_length == new.cell_length:
                 spans = differing(old, new)
             self.refresh(*(Region(first, y, last - first, 1) for first, last in spans))
+
+    def keep_in_view(self) -> None:
+        """Scroll to the cursor, where there is one; called when the widget has another size."""
+
+    def on_resize(self) -> None:
+        """Keep what is under the cursor in view."""
+        # It has just been painted whole; the toolkit would do so again with the next key.
+        self._exchange_repaint_regions()
+        self.keep_in_view()
+        self.repaint()
 
     def style_of(self, roles: str) -> Style:
         """Return the style of a role, or of several joined, on the background of the text."""
@@ -81,6 +97,17 @@ class Lines(Widget):
             elif text:
                 segments.append(Segment(text, style))
         return Strip(segments).adjust_cell_length(width, self.style_of(""))
+
+
+def scrolled(top: int, cursor: int, page: int, count: int) -> int:
+    """Return the first row to show of so many, with the cursor in view.
+
+    It moves by a third of a page at a time: on a narrow link a whole page of rows is dear.
+    """
+    if cursor < top or cursor >= top + page:
+        step = page // 3
+        top = cursor - step if cursor < top else cursor - page + 1 + step
+    return min(max(top, 0), max(0, count - page))
 
 
 def differing(old: Strip, new: Strip) -> list[tuple[int, int]]:
