@@ -7,15 +7,16 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from budget.description.finding import Finding, Path, warning
+from budget.description.ids import check_ids, file_order, ids_of, kept_apart
 from budget.description.libraries import Library, Tables, add_libraries
 from budget.description.lines import read_lines
 from budget.description.model import Description, Design, Fluid, Limits
 from budget.description.parts import read_link, read_section, read_source, read_terminal
-from budget.description.schema import CLASSES, KEYED, SINGLE, TOP
+from budget.description.schema import CLASSES, SINGLE, TOP
 from budget.description.scope import Scope
 from budget.description.source import Source
 from budget.description.tables import case as read_case
-from budget.description.tables import check_format, check_id, device, keyed, own_fitting, single
+from budget.description.tables import check_format, device, keyed, own_fitting, single
 from budget.description.values import Reading, nearest
 from budget.units import Dimension, UnitError, parse
 
@@ -46,6 +47,7 @@ def describe(source: Source, libraries: Sequence[Library] = ()) -> Description:
         defaults=single(reading, data, "defaults"),
     )
     scope.check_defaults()
+    ids = ids_of(data)
     description = Description(
         design=design,
         display=_display(reading, data),
@@ -56,13 +58,13 @@ def describe(source: Source, libraries: Sequence[Library] = ()) -> Description:
         fittings=tables.fittings,
         devices=tables.devices,
         sources=keyed(reading, data, "source", read_source, scope),
-        sections=keyed(reading, data, "section", read_section, scope),
-        terminals=keyed(reading, data, "terminal", read_terminal, scope),
+        sections=kept_apart(ids, keyed(reading, data, "section", read_section, scope)),
+        terminals=kept_apart(ids, keyed(reading, data, "terminal", read_terminal, scope)),
         links=keyed(reading, data, "link", read_link, scope),
         cases=keyed(reading, data, "case", read_case),
-        order=_order(source, data),
+        order=file_order(ids, source),
     )
-    _check_ids(reading, source, data)
+    check_ids(reading, source, data)
     _check_sensors(reading, description)
     _check_cases(reading, description)
     _read_later(reading, data)
@@ -146,31 +148,6 @@ def _display(reading: Reading, data: Mapping[str, Any]) -> dict[str, str]:
 def _limits(values: dict[str, Any]) -> Limits:
     classes: dict[str, dict[str, float]] = {name: values.pop(name) for name in CLASSES if name in values}
     return Limits(classes=classes, **values)
-
-
-def _order(source: Source, data: Mapping[str, Any]) -> tuple[str, ...]:
-    places: list[tuple[int, int, str]] = []
-    for table in ("source", "section", "terminal"):
-        entries = data.get(table, {})
-        for id_ in entries if isinstance(entries, dict) else ():
-            span = source.spans.key((table, id_))
-            places.append((span.start if span else 0, len(places), id_))
-    return tuple(dict.fromkeys(id_ for _, _, id_ in sorted(places)))
-
-
-def _check_ids(reading: Reading, source: Source, data: Mapping[str, Any]) -> None:
-    seen: dict[str, Path] = {}
-    for table in KEYED:
-        entries = data.get(table, {})
-        for id_ in entries if isinstance(entries, dict) else ():
-            path: Path = (table, id_)
-            check_id(reading, path)
-            if table not in ("source", "section", "terminal"):
-                continue
-            if id_ in seen:
-                line, _ = source.locate(seen[id_])
-                reading.wrong("duplicate-id", f"{id_!r} is already the {seen[id_][0]} in line {line}; rename one", path)
-            seen.setdefault(id_, path)
 
 
 def _check_sensors(reading: Reading, description: Description) -> None:

@@ -112,7 +112,7 @@ def _branch(budget: Budget, id_: str) -> str:
     part = description.sections.get(id_) or description.terminals[id_]
     for side in ("from_", "to"):
         above = getattr(part, side)
-        seen: set[str] = {id_, *description.sources}
+        seen: set[str] = {id_}
         while above in description.sections and above not in seen:
             seen.add(above)
             section = description.sections[above]
@@ -125,7 +125,7 @@ def _branch(budget: Budget, id_: str) -> str:
 def _walk(root: str, members: Mapping[str, list[Step]], rank: Mapping[str, int]) -> list[list[Step]]:
     """Return the members of each branch within one, inner branches first, its own members last."""
     order: list[list[Step]] = []
-    pending, seen = [root], {root}
+    pending = [root]
     while pending:  # outer branches first, their last member first; turned round at the end
         branch = pending.pop()
         own = sorted(
@@ -133,9 +133,7 @@ def _walk(root: str, members: Mapping[str, list[Step]], rank: Mapping[str, int])
             key=lambda step: (math.isnan(step.margin), round(step.margin, 6), rank.get(step.id, 0)),
         )
         order.append(own)
-        inner = [step.id for step in own if step.id in members and step.id not in seen]
-        pending += inner
-        seen.update(inner)  # an ID that stands twice would lead in a circle
+        pending += [step.id for step in own if step.id in members]
     return order[::-1]
 
 

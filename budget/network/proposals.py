@@ -18,7 +18,6 @@ from budget.network.authority import only_its_flow
 from budget.network.budget import evaluate
 from budget.network.computed import Computed, compute
 from budget.network.equipment import KV
-from budget.network.results import SectionResult, TerminalResult
 from budget.physics.fittings import kv_of_drop
 
 AUTHORITY = 0.5
@@ -217,17 +216,14 @@ def propose_devices(run: Computed, id_: str) -> tuple[DeviceChoice, ...]:
 
 
 def _with_device(description: Description, id_: str, device: Device) -> DeviceChoice | None:
-    result: SectionResult | TerminalResult | None
     if id_ in description.sections:
         section = dataclasses.replace(description.sections[id_], balance=device.name)
         changed = dataclasses.replace(description, sections={**description.sections, id_: section})
-        budget = evaluate(changed)
-        result = budget.sections.get(id_)
     else:
         terminal = dataclasses.replace(description.terminals[id_], balance=device.name)
         changed = dataclasses.replace(description, terminals={**description.terminals, id_: terminal})
-        budget = evaluate(changed)
-        result = budget.terminals.get(id_)
+    budget = evaluate(changed)
+    result = budget.sections.get(id_) or budget.terminals.get(id_)
     if result is None or result.device is None or math.isnan(result.device.drop):
         return None
     one = result.device

@@ -118,7 +118,7 @@ def _circuit(description: Description, budget: Budget, source: str, terminal: st
     """Name what an index circuit runs through, from the source's outlet to its inlet."""
     part, path = description.terminals[terminal], budget.terminals[terminal].path
     outward, above = 0, part.from_
-    while above is not None and above in description.sections and above not in description.sources:
+    while above is not None and above in description.sections:
         outward += 1
         above = description.sections[above].from_
     steps = [*path[:outward], terminal, *path[outward:]]

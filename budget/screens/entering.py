@@ -204,7 +204,7 @@ def rename(app: BudgetApp) -> None:
         known = app.document.snapshot.description
         if text in known.sources or text in known.sections or text in known.terminals:
             raise WritingError(f"{plain(text)} is taken")
-        return rename_everywhere(app.document.snapshot.text, str(row.path[0]), row.id, text)
+        return rename_everywhere(app.document.snapshot.text, str(row.path[0]), str(row.path[1]), text)
 
     def attempt(text: str) -> Snapshot | None:
         if text == row.id:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from typing import TYPE_CHECKING, TypeVar
 
@@ -105,9 +106,11 @@ def _sizes(app: BudgetApp, snapshot: Snapshot, path: Path, found: KvProposal) ->
 
 def _devices(app: BudgetApp, snapshot: Snapshot, id_: str, found: tuple[DeviceChoice, ...]) -> Offer:
     description, figures = snapshot.description, Figures(snapshot.description)
-    result = snapshot.budget.terminals.get(id_) or snapshot.budget.sections[id_]
+    result = snapshot.budget.terminals.get(id_) or snapshot.budget.sections.get(id_)
     part = description.terminals.get(id_) or description.sections[id_]
-    density, pressure = snapshot.budget.sources[result.source].fluid.density, figures.unit(Dimension.PRESSURE)
+    # What hangs on no source is in no budget, and nothing could be tried on it.
+    density = snapshot.budget.sources[result.source].fluid.density if result is not None else math.nan
+    pressure = figures.unit(Dimension.PRESSURE)
 
     def choice(one: DeviceChoice) -> Choice:
         said = "" if one.suits else "outside its table" if not one.in_table else "signal too small"

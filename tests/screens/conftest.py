@@ -78,7 +78,7 @@ class Hands:
 
         go_on()
         with contextlib.suppress(TimeoutError):  # an app that has ended passes nothing on
-            await asyncio.wait_for(passed.wait(), 0.05 if app._exit else LONG)
+            await asyncio.wait_for(passed.wait(), 0.05 if app._exit or app.failure else LONG)
 
     async def done(self) -> None:
         """Wait until the disk has done what was asked of it."""
