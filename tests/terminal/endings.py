@@ -20,7 +20,7 @@ from pathlib import Path
 
 from budget.storage.records import Record
 from tests.terminal.parallel import many
-from tests.terminal.traced import SMALL, Run, budget, sizeless, stty
+from tests.terminal.traced import NAMED, SMALL, Run, budget, sizeless, stty
 
 LIMIT = 3.5
 """Seconds in which the process is gone."""
@@ -31,6 +31,8 @@ RESTORED_AFTER_A_STALL = (*RESTORED, b"\x1b[?1000l", b"\x1b[?1003l", b"\x1b[?204
 ENDINGS = ("SIGTERM", "SIGHUP", "closed", "SIGTERM stalled", "SIGHUP stalled", "closed stalled")
 LATE = "from budget.storage import keeping; keeping.PAUSE = keeping.LATEST = 60.0"
 """Lets unsaved work be kept no more than once a minute, where nothing else has it kept."""
+
+FIRST = SMALL.replace(NAMED, "Cellar pump")
 
 MORE = ("SIGINT", "SIGQUIT")
 WORKS = ("cell", "cells at once", "kept already", "undo", "text", "field", "save")
@@ -64,7 +66,9 @@ def _end(outcome: Outcome, folder: Path, chance: random.Random, *, again: bool) 
     shell = how != "closed" or chance.random() < 0.5
     # Half of the runs keep nothing of themselves in time: it is the signal that has it kept.
     fault = LATE if chance.random() < 0.5 else ""
-    run = Run(folder, shell=shell, slow=0.1 if outcome.work == "save" else 0.0, fault=fault)
+    # In half of the runs another one was open before, in the same process.
+    first = FIRST if chance.random() < 0.5 else ""
+    run = Run(folder, shell=shell, slow=0.1 if outcome.work == "save" else 0.0, fault=fault, first=first)
     try:
         slave = run.open_slave()
         try:

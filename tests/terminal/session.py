@@ -22,7 +22,7 @@ KEYS = {
     "up": "\x1b[A", "down": "\x1b[B", "right": "\x1b[C", "left": "\x1b[D", "enter": "\r", "escape": "\x1b",
     "tab": "\t", "backspace": "\x7f", "delete": "\x1b[3~", "home": "\x1b[H", "end": "\x1b[F", "pageup": "\x1b[5~",
     "pagedown": "\x1b[6~", "space": " ", "shift+tab": "\x1b[Z", "ctrl+s": "\x13", "ctrl+q": "\x11", "ctrl+c": "\x03",
-    "ctrl+e": "\x05", "ctrl+r": "\x12", "ctrl+z": "\x1a", "ctrl+u": "\x15", "f2": "\x1bOQ",
+    "ctrl+e": "\x05", "ctrl+r": "\x12", "ctrl+z": "\x1a", "ctrl+t": "\x14", "ctrl+u": "\x15", "f2": "\x1bOQ",
 }  # fmt: skip
 
 RUN = "import sys; from pathlib import Path; from budget.screens import run; sys.exit(run(Path(sys.argv[1])))"

@@ -110,7 +110,7 @@ def edit(run: Run, value: str) -> str:
 
 
 def open_other(run: Run, name: str, wait: str) -> None:
-    run.session.press("\x14")
+    run.session.press("ctrl+t")
     run.session.wait_for("Open another run")
     run.session.press(name)
     run.session.send("enter")

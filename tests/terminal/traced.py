@@ -21,6 +21,9 @@ from tests.terminal.session import Session
 
 SMALL = (Path(__file__).parents[1] / "screens" / "cottage.toml").read_text()
 
+NAMED = "Boiler pump"
+"""What stands at the head of the screen of `SMALL`."""
+
 APP = """
 import json, os, sys, time
 from pathlib import Path
@@ -111,9 +114,13 @@ class Run:
         slow: float = 0.0,
         fault: str = "",
         wait: str = "required",
+        first: str = "",
         environment: Mapping[str, str] | None = None,
     ) -> None:
-        """Start it on a file, for the first time or once more, and wait until it shows the run."""
+        """Start it on a file, for the first time or once more, and wait until it shows the run.
+
+        With `first` it is started on another run with that text, and goes on to the file from there.
+        """
         self.folder, self.shell = folder, shell
         self.file, self._trace, self._told = folder / "run.toml", folder / "trace", folder / "told"
         if not self.file.exists():
@@ -125,13 +132,26 @@ class Run:
             "CODE": APP, "TRACE": str(self._trace), "TOLD": str(self._told), "SLOW": str(slow), "FAULT": fault,
             "PYTHONPATH": str(Path(__file__).parents[2]),
         }  # fmt: skip
-        self.session = Session(self.file, config=folder, environment=whole, code=SHELL if shell else APP)
+        start = folder / "first.toml" if first else self.file
+        if first:
+            start.write_text(first, encoding="utf-8")
+        self.session = Session(start, config=folder, environment=whole, code=SHELL if shell else APP)
         try:
             if wait:
                 self.session.wait_for(wait, 30.0)
+            if first:
+                self._go_on()
         except BaseException:
             self.session.close()
             raise
+
+    def _go_on(self) -> None:
+        self.session.send("ctrl+t")
+        self.session.wait_for("Open another run", 30.0)
+        self.session.send(*self.file.name)
+        self.session.wait_for("the file of that name", 30.0)
+        self.session.send("enter")
+        self.session.wait_for(NAMED, 30.0)
 
     @property
     def notes(self) -> list[Note]:
