@@ -75,6 +75,7 @@ def shown_drop(session: Session, id_: str, drop: str) -> bool:
     return any(line.lstrip("» ").startswith(f"{id_} ") and f" {drop} " in line for line in session.lines)
 
 
+@pytest.mark.long
 def test_a_junction_is_changed_and_put_back(tmp_path: Path) -> None:
     file, kept = tmp_path / "air.toml", tmp_path / "kept.toml"
     for copy in (file, kept):

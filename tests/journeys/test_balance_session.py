@@ -5,6 +5,8 @@ from __future__ import annotations
 import shutil
 from pathlib import Path
 
+import pytest
+
 from budget.document import Document
 from budget.network.flows import Flows, solve_flows
 from budget.report.figures import Figures, plain_number
@@ -34,6 +36,7 @@ def wait_until_solved(session: Session) -> None:
     assert "solving" not in session.text
 
 
+@pytest.mark.long
 def test_a_setting_moves_the_flows_and_undo_moves_them_back(tmp_path: Path) -> None:
     shutil.copytree(EXAMPLES, tmp_path / "run")
     (tmp_path / "run" / ".git").mkdir()  # what a library may lie within
@@ -58,7 +61,7 @@ def test_a_setting_moves_the_flows_and_undo_moves_them_back(tmp_path: Path) -> N
 
         # The valve is found further shut on site: the flows follow while the setting is typed.
         session.press("B", "enter", "1")
-        assert " 1 " in next(line for line in session.lines if line.lstrip().startswith("FC-022"))
+        session.wait_until(lambda: "1" in shown(session, "FC-022"), "the setting")
         session.press("enter")
         assert "not saved" in session.lines[0]
         assert "set on site at 1" in session.text

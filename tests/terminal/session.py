@@ -11,7 +11,7 @@ import struct
 import sys
 import termios
 import time
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from pathlib import Path
 from types import TracebackType
 from typing import Self
@@ -87,10 +87,14 @@ class Session:
 
     def wait_for(self, text: str, limit: float = 10.0) -> None:
         """Read until a text stands on the screen; fail with the screen where it does not come."""
+        self.wait_until(lambda: text in self.text, repr(text), limit)
+
+    def wait_until(self, holds: Callable[[], bool], what: str, limit: float = 10.0) -> None:
+        """Read until something holds of the screen; fail with the screen where it never does."""
         until = time.monotonic() + limit
-        while text not in self.text:
+        while not holds():
             if time.monotonic() > until or (not self.read(0.2) and self.ended):
-                raise AssertionError(f"{text!r} did not come; the screen was\n{self.text}")
+                raise AssertionError(f"{what} did not come; the screen was\n{self.text}")
         self.settle()
 
     def press(self, *keys: str) -> int:
