@@ -63,7 +63,7 @@ def test_every_file_of_the_corpus_passes(name: str, path: Path) -> None:
 
 
 @pytest.mark.parametrize("name", TARGETS)
-@settings(QUICK, max_examples=150)
+@settings(QUICK, max_examples=100)
 @given(data=st.data())
 def test_generated_input_passes(name: str, data: st.DataObject) -> None:
     run(BY_NAME[name], data.draw(GENERATED[name]))
