@@ -68,6 +68,14 @@ def test_no_more_is_sent_than_what_changed(
     assert session.settle(quiet=0.3, limit=1.0) == 0
 
 
+@pytest.mark.parametrize("screen", ["B", "L", "s"])
+def test_the_first_key_after_another_screen_is_as_frugal(opened: Open, screen: str) -> None:
+    session = opened()
+    session.press("down", "down", screen, "escape")
+    session.settle(0.2)
+    assert session.press("up") <= 400
+
+
 def test_a_theme_of_many_colours_keeps_to_it_in_true_colour(opened: Open) -> None:
     session = opened(LARGE_RUN, config='theme = "dark"', environment={"COLORTERM": "truecolor"})
     assert max(session.press(key) for key in ("down", "down", "right", "down", "left", "up", "down")) <= 400
