@@ -149,7 +149,7 @@ class Run:
         self.session.send("ctrl+t")
         self.session.wait_for("Open another run", 30.0)
         self.session.send(*self.file.name)
-        self.session.wait_for("the file of that name", 30.0)
+        self.session.wait_for("1 of 1", 30.0)  # as it is written, or once the list is there, as it was found
         self.session.send("enter")
         self.session.wait_for(NAMED, 30.0)
 
