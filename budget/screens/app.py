@@ -69,6 +69,7 @@ class BudgetApp(Stage, inherit_bindings=False):
         self.keymap, self.notes = config.keymap, notes
         self.first_words = ("", "")
         self.trials = Trials(self)
+        self.works: list[Beside] = []
         self.valves = Beside(self)
         self.sought = ""
         self.beside_width = 0

@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
-import threading
 from collections.abc import Callable
 from typing import TYPE_CHECKING, TypeVar
 
+from budget.screens.working import begin
+
 if TYPE_CHECKING:
+    import threading
+
     from budget.screens.app import BudgetApp
 
 T = TypeVar("T")
@@ -32,7 +35,4 @@ def in_background(app: BudgetApp, work: Callable[[], T], then: Callable[[T], obj
             app.call_later(finish, result)
 
     app.pending += 1
-    # A daemon: leaving the app does not wait for it.
-    thread = threading.Thread(target=run, daemon=True)
-    thread.start()
-    return thread
+    return begin(run)

@@ -8,6 +8,7 @@ from collections.abc import Callable
 from typing import TYPE_CHECKING, TypeVar
 
 from budget.report.plain import plain
+from budget.screens.working import begin
 
 if TYPE_CHECKING:
     from budget.screens.app import BudgetApp
@@ -30,6 +31,7 @@ class Beside:
 
     def __init__(self, app: BudgetApp) -> None:
         """Nothing is done yet."""
+        app.works.append(self)
         self._app = app
         self._stop: threading.Event | None = None
 
@@ -84,5 +86,4 @@ class Beside:
             else:
                 self._app.call_later(finish, lambda: done(result))
 
-        # A daemon: leaving the app does not wait for it.
-        threading.Thread(target=run, daemon=True).start()
+        begin(run)

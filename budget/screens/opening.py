@@ -19,10 +19,14 @@ from budget.screens.guarded import INTERNAL
 from budget.screens.opened import Opened, open_run
 from budget.screens.signals import Guard
 from budget.screens.themes import load_theme
+from budget.screens.working import wait_for_all
 from budget.storage import StorageError
 
 SAVING = 1.0
 """Seconds in which a save that is under way at the end may come to its own end."""
+
+WORKING = 1.0
+"""Seconds in which other work that is under way at the end may."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -144,6 +148,9 @@ def _end(app: BudgetApp, guard: Guard, code: int | None) -> int:
         guard.let_go()
     _settle(app)
     app.keeper.end(discard=app.discarding)
+    for work in app.works:
+        work.stop()
+    wait_for_all(WORKING)
     if app.failure is not None:
         _tell_failure(app)
         return INTERNAL

@@ -147,6 +147,7 @@ def test_settings_and_names_are_told_plain(play: Stage) -> None:
     play(act, spelled(BASE), size=(60, 12))
 
 
+@pytest.mark.long
 def test_nothing_from_a_file_reaches_the_terminal_raw(opened: Open) -> None:
     session = opened(spelled(filled(MESS)), config='theme = "\\u001b[2J\\u009b"\n', size=(100, 30))
     session.press("down", "down")

@@ -8,6 +8,8 @@ import pytest
 from tests.independent.loops import evaluate, solve
 from tests.independent.runs import features, generate
 
+pytestmark = pytest.mark.long
+
 SEEDS = range(200)
 WANTED = (
     "SI", "IP", "closed", "open", "air", "paired", "reverse return", "joined risers", "both sides",

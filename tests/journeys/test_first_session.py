@@ -9,6 +9,8 @@ import tomllib
 from pathlib import Path
 from typing import Any
 
+import pytest
+
 from budget.document import Document
 from budget.report.figures import Figures
 from budget.units import Dimension
@@ -95,6 +97,7 @@ def test_a_first_session(tmp_path: Path) -> None:
     assert sum(a != b for a, b in zip(saved.splitlines(), SMALL.splitlines(), strict=True)) == 1
 
 
+@pytest.mark.long
 def test_every_screen_is_reached_and_left_again(tmp_path: Path) -> None:
     file = tmp_path / "run.toml"
     file.write_text(SMALL)

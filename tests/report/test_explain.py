@@ -358,6 +358,7 @@ def test_what_hangs_on_nothing_says_so() -> None:
 FAULTY = [fault.text for group in GROUPS.values() for fault in group]
 
 
+@pytest.mark.long
 def test_no_fault_keeps_the_rest_from_being_explained() -> None:
     count = 0
     for text in (*FAULTY, *TEXTS):

@@ -150,6 +150,7 @@ def test_what_is_kept_of_the_first_stands_and_a_signal_keeps_the_second(begin: C
     os.close(slave)
 
 
+@pytest.mark.long
 def test_one_after_the_other_and_out_leaves_nothing(begin: Callable[..., Run]) -> None:
     run = begin()
     slave = run.open_slave()
