@@ -119,7 +119,7 @@ def _part(found: re.Match[str], path: list[str | int], node: Toml, *, known: boo
     if found["literal"] is not None:
         return found["literal"]
     bare = found["bare"]
-    if bare.isdigit() and len(bare) < 10:
+    if bare.isdigit() and len(bare) < 10 and (bare == "0" or bare[0] != "0"):  # "007" is a name, never a position
         in_list = isinstance(node, list)
         if not known or node is None:
             in_list = len(path) >= 2 and path[-1] not in _NAMED_BY_ID

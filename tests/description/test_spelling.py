@@ -3,7 +3,7 @@
 from typing import Any
 
 import pytest
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from budget.description.edits import EditError, read_path
@@ -75,6 +75,8 @@ def test_a_key_that_is_refused(text: str, place: str) -> None:
     assert str(caught.value).isprintable()
 
 
+@example(["a", "b", "007"])
+@example(["", "", "00"])
 @given(st.lists(st.text(st.characters(exclude_categories=["Cs"]), max_size=5), min_size=1, max_size=4))
 def test_a_path_that_is_shown_is_read_back(names: list[str]) -> None:
     path: tuple[Any, ...] = tuple(names)
