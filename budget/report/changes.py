@@ -213,12 +213,12 @@ class _Reader:
         yield self._flow("flow", "flow", result.flow, result.mass_flow)
         yield self._pressure("margin", "margin", result.margin, density)
         yield self._pressure("excess", "excess", result.excess, density)
-        yield _Cell("authority", "authority", "", result.authority, plain_number(result.authority, 2))
+        yield _Cell("authority", "authority", "", _known(result.authority), plain_number(result.authority, 2))
 
     def _device(self, carrier: SectionResult | TerminalResult, device: DeviceResult) -> Iterator[_Cell]:
         density = self._density(carrier)
         yield _Cell("name", "device", "", device.name, plain(device.name))
-        yield _Cell("setting", "setting", "", device.setting, plain_number(device.setting))
+        yield _Cell("setting", "setting", "", _known(device.setting), plain_number(device.setting))
         yield self._pressure("drop", "drop", device.drop, density)
         yield self._pressure("take_up", "takes up", device.take_up, density)
 

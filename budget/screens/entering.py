@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from functools import partial
 from typing import TYPE_CHECKING
 
-from budget.description.edits import Edit, EditError, SetValue, Unset, rename_everywhere
+from budget.description.edits import Edit, EditError, RenameKey, SetValue, Unset, rename_everywhere
 from budget.description.finding import Path, dotted
 from budget.document import Snapshot
 from budget.report.plain import plain
@@ -204,7 +204,9 @@ def rename(app: BudgetApp) -> None:
         known = app.document.snapshot.description
         if text in known.sources or text in known.sections or text in known.terminals:
             raise WritingError(f"{plain(text)} is taken")
-        return rename_everywhere(app.document.snapshot.text, str(row.path[0]), str(row.path[1]), text)
+        if row.shares_id:  # what names the ID means the other that has it
+            return RenameKey(row.path, text)
+        return rename_everywhere(app.document.snapshot.text, str(row.path[0]), row.id, text)
 
     def attempt(text: str) -> Snapshot | None:
         if text == row.id:

@@ -49,6 +49,11 @@ class Row:
     branch: bool = False
     """Whether other rows hang on it."""
 
+    @property
+    def shares_id(self) -> bool:
+        """Whether another part has the ID that the file gives it: it is known by another, which the file can't name."""
+        return self.path[1] != self.id
+
 
 @dataclass(frozen=True, slots=True)
 class Cell:

@@ -51,7 +51,7 @@ def add_section(text: str, description: Description, rows: tuple[Row, ...], plac
         raise ShapingError("nothing hangs on a terminal; add before it")
     id_ = new_id("S1" if row.kind == "source" else _section_like(description, row), _taken(description))
     path: Path = ("section", id_)
-    parent = row.id if where != "before" else (_held_by(description, row) or "")
+    parent = _named(row) if where != "before" else (_held_by(description, row) or "")
     if not parent:
         raise ShapingError(f"{row.id} hangs on nothing; write what it hangs on first")
     model = _section_model(description, row)
@@ -85,7 +85,7 @@ def add_terminal(text: str, description: Description, rows: tuple[Row, ...], pla
     if row.kind == "terminal":
         parent, side = _held_by(description, row) or "", _side(description, row)
     else:
-        parent, side = row.id, _side(description, row)
+        parent, side = _named(row), _side(description, row)
     if not parent:
         raise ShapingError(f"{row.id} hangs on nothing; write what it hangs on first")
     if side == "to" and not description.fluid.gas:
@@ -155,7 +155,9 @@ def parents_for(description: Description, rows: tuple[Row, ...], place: int) -> 
         raise ShapingError("only a section or a terminal can be moved")
     own = {row.id, *(part.id for part in beneath(rows, place))}
     side = _side(description, row)
-    sections = (s.id for s in description.sections.values() if (s.from_ is not None) == (side == "from"))
+    sections = (
+        s.id for s in description.sections.values() if s.id == s.path[1] and (s.from_ is not None) == (side == "from")
+    )
     return tuple(id_ for id_ in (*description.sources, *sections) if id_ not in own)
 
 
@@ -199,6 +201,13 @@ def _taken(description: Description) -> set[str]:
 
 def _part(description: Description, id_: str) -> Section | Terminal | None:
     return description.sections.get(id_) or description.terminals.get(id_)
+
+
+def _named(row: Row) -> str:
+    """Return the ID by which another table can name a row."""
+    if row.shares_id:
+        raise ShapingError(f"{row.id} can't be named, as another has its ID; rename it first")
+    return row.id
 
 
 def _side(description: Description, row: Row) -> Literal["from", "to"]:

@@ -1,4 +1,4 @@
-"""Folders of the user's that the program keeps things in."""
+"""The folder of the user's that the program keeps things in, and how they are read from there."""
 
 from __future__ import annotations
 
@@ -30,3 +30,16 @@ def state_folder(*names: str) -> Path:
         if stat.S_IMODE(status.st_mode) != MODE:
             one.chmod(MODE)
     return folder.joinpath(*names)
+
+
+def read_kept(file: Path, most: int) -> bytes:
+    """Return so many bytes at the most of a file that the program keeps.
+
+    Raises OSError where it can't be read, or is a link or no regular file: it is not ours then.
+    """
+    # O_NONBLOCK: a FIFO must not hang the program.
+    handle = os.open(file, os.O_RDONLY | os.O_NONBLOCK | os.O_NOFOLLOW)
+    with os.fdopen(handle, "rb") as stream:
+        if not stat.S_ISREG(os.fstat(handle).st_mode):
+            raise OSError(0, "it is not a regular file")
+        return stream.read(most)

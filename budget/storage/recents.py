@@ -5,7 +5,6 @@ from __future__ import annotations
 import contextlib
 import json
 import os
-import stat
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from datetime import UTC, datetime
@@ -13,7 +12,7 @@ from pathlib import Path
 from typing import Any
 
 from budget.storage import writing
-from budget.storage.folders import state_folder
+from budget.storage.folders import read_kept, state_folder
 
 NAME = "recent.json"
 FORMAT = 1
@@ -21,7 +20,7 @@ MOST = 50
 """Runs that are remembered."""
 
 LARGEST = 2 * 1024 * 1024
-"""Bytes of the file; the longest paths there can be, spelled in the longest way, need less."""
+"""Bytes that are read; the longest paths there can be, spelled in the longest way, need less."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,8 +34,7 @@ class Recent:
 def recent_runs(folder: Path | None = None) -> tuple[Recent, ...]:
     """Return the runs that were open of late, the latest first, whether or not they still exist. Nothing is raised."""
     try:
-        content = _bytes((folder or state_folder()) / NAME)
-        head = json.loads(content)
+        head = json.loads(read_kept((folder or state_folder()) / NAME, LARGEST))
         listed = head["runs"] if head["budget"] == "recent runs" and head["format"] == FORMAT else []
         return _latest(_entries(listed))
     except (OSError, ValueError, TypeError, KeyError, RecursionError):  # damaged, or another's: as if it were not there
@@ -78,15 +76,3 @@ def _entries(listed: Any) -> Iterator[Recent]:
             os.fsencode(path)  # a name that no file can have
             if isinstance(path, str) and "\0" not in path and Path(path).is_absolute():
                 yield Recent(Path(path), min(opened, now))  # no clock that was wrong keeps a run in front for ever
-
-
-def _bytes(file: Path) -> bytes:
-    # O_NONBLOCK: a FIFO must not hang the program.
-    handle = os.open(file, os.O_RDONLY | os.O_NONBLOCK | os.O_NOFOLLOW)
-    with os.fdopen(handle, "rb") as stream:
-        if not stat.S_ISREG(os.fstat(handle).st_mode):
-            raise OSError(0, "it is not a regular file")
-        content = stream.read(LARGEST + 1)
-    if len(content) > LARGEST:
-        raise OSError(0, "it is too large")
-    return content

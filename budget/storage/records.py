@@ -12,7 +12,6 @@ import hashlib
 import itertools
 import json
 import os
-import stat
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
@@ -22,7 +21,7 @@ from typing import Any
 from budget.description.source import LARGEST_FILE
 from budget.storage import writing
 from budget.storage.files import StorageError, digest_of
-from budget.storage.folders import state_folder
+from budget.storage.folders import read_kept, state_folder
 from budget.storage.processes import Process, is_alive, this_process, user_name
 
 FORMAT = 1
@@ -111,7 +110,7 @@ def read_record(file: Path) -> Record:
     Raises StorageError for a file that is no record.
     """
     try:
-        content = _bytes(file)
+        content = read_kept(file, _LONGEST_HEADER + LARGEST)
     except OSError as wrong:
         raise StorageError(f"{file} could not be read: {wrong.strerror or wrong}") from wrong
     line, _, body = content[: _LONGEST_HEADER + LARGEST].partition(b"\n")
@@ -163,14 +162,6 @@ def _records(folder: Path | None) -> Iterator[Record]:
     for file in files:
         with contextlib.suppress(StorageError):
             yield read_record(file)
-
-
-def _bytes(file: Path) -> bytes:
-    handle = os.open(file, os.O_RDONLY | os.O_NONBLOCK | os.O_NOFOLLOW)
-    with os.fdopen(handle, "rb") as stream:
-        if not stat.S_ISREG(os.fstat(handle).st_mode):
-            raise OSError(0, "it is not a regular file")
-        return stream.read(_LONGEST_HEADER + LARGEST)
 
 
 def _record(head: Mapping[str, Any], file: Path) -> Record:

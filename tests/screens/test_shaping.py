@@ -223,3 +223,35 @@ def test_every_shape_is_whole_after_a_change_anywhere(example: Path, action: str
         if action not in LEAVES_A_GAP and (action, rows[place].kind) != ("duplicate", "item"):
             assert not new, (rows[place].id, new)
         assert not change.path or action == "delete" or any(row.path == change.path for row in tree(after.description))
+
+
+def test_a_part_whose_id_another_has_is_renamed_alone_and_named_by_nothing_before(play: Stage) -> None:
+    text = SMALL.replace("[terminal.R4]", "[terminal.M1]")
+
+    async def act(hands: Hands) -> None:
+        await hands.at("M1 (terminal)")
+        await hands.press("m")
+        assert "M1 (terminal)" not in hands.listed
+        await hands.press("escape", "r", "ctrl+u")
+        await hands.type("R4")
+        await hands.press("enter")
+        assert hands.text == SMALL
+
+    play(act, text)
+
+
+def test_nothing_is_hung_on_a_part_whose_id_another_has(play: Stage) -> None:
+    text = SMALL.replace("[section.B1]", "[section.P1]").replace('from = "B1"', 'from = "M1"')
+
+    async def act(hands: Hands) -> None:
+        await hands.at("P1 (section)")
+        for key in ("c", "t"):
+            await hands.press(key)
+            assert "another has its ID; rename it first" in hands.foot
+        assert hands.text == text
+        await hands.at("R4")
+        await hands.press("m")
+        assert "P1" in hands.listed
+        assert "P1 (section)" not in hands.listed
+
+    play(act, text)
