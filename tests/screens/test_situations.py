@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import asyncio
 import os
-from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
@@ -13,19 +12,18 @@ from budget.storage.records import find_records
 from tests.screens.conftest import SMALL, Hands, Stage
 from tests.screens.test_saving import answer, answers, edit, exited, path_of
 from tests.storage.situations import fill, mode_of, mount, small_disk, with_own_mounts
-from tests.storage.test_files import NOBODY, as_nobody
+from tests.storage.test_files import NOBODY, as_nobody, open_folder
+
+__all__ = ["open_folder"]
 
 
 @pytest.fixture
-def folder(tmp_path: Path) -> Iterator[Path]:
-    """The folder of the run, which somebody without privileges reaches and owns."""
-    if os.geteuid() == 0:
-        above = [one for one in (tmp_path, *tmp_path.parents) if one.stat().st_uid == 0 and not one.stat().st_mode & 1]
-        for one in above:
-            one.chmod(0o711)
-        os.chown(tmp_path, NOBODY, NOBODY)
-    yield tmp_path
-    tmp_path.chmod(0o700)
+def tmp_path(open_folder: Path) -> Path:
+    """The folder of the run, which somebody without privileges reaches and owns.
+
+    Not one of pytest's: another run of the tests closes the folder around those as it begins.
+    """
+    return open_folder
 
 
 def unprivileged(folder: Path, act: object, play: Stage) -> None:
@@ -114,7 +112,7 @@ def test_a_file_system_that_is_mounted_to_be_read_offers_another_place(play: Sta
     with_own_mounts(stage)
 
 
-def test_a_write_protected_file_is_saved_when_it_may_be_written(play: Stage, folder: Path) -> None:
+def test_a_write_protected_file_is_saved_when_it_may_be_written(play: Stage, tmp_path: Path) -> None:
     async def act(hands: Hands) -> None:
         await edit(hands)
         with mode_of(path_of(hands), 0o444):
@@ -125,14 +123,14 @@ def test_a_write_protected_file_is_saved_when_it_may_be_written(play: Stage, fol
             assert kept(hands) == [hands.text]
         await saved(hands)
 
-    unprivileged(folder, act, play)
+    unprivileged(tmp_path, act, play)
 
 
-def test_a_folder_that_is_closed_does_not_end_the_app(play: Stage, folder: Path) -> None:
+def test_a_folder_that_is_closed_does_not_end_the_app(play: Stage, tmp_path: Path) -> None:
     async def act(hands: Hands) -> None:
         await edit(hands)
         hands.app.keep_now()
-        with mode_of(folder, 0o000):
+        with mode_of(tmp_path, 0o000):
             await hands.press("ctrl+s")
             assert "Permission denied" in hands.lines()[0]
             await hands.press("escape")
@@ -142,7 +140,7 @@ def test_a_folder_that_is_closed_does_not_end_the_app(play: Stage, folder: Path)
             assert not exited(hands)
         await saved(hands)
 
-    unprivileged(folder, act, play)
+    unprivileged(tmp_path, act, play)
 
 
 @pytest.mark.parametrize("what", ["folder", "pipe"])
