@@ -104,7 +104,7 @@ def folded(text: str) -> str:
 
 def told(sifted: Sifted, wanted: Filter, whole: int) -> str:
     """Say how many of all rows match and how many are shown, so that nobody takes the part for the whole."""
-    return f"{sifted.matching} of {whole} rows match, {len(sifted.rows)} are shown: {wanted.text}"
+    return f"{sifted.matching} of {whole} rows match, {len(sifted.rows)} shown: {wanted.text}"
 
 
 def nearest(rows: Sequence[Row], shown: Sequence[Row], path: Path, *, above: bool = False) -> int | None:

@@ -1,4 +1,4 @@
-"""Findings as they are shown: at their place in the file, in the units of the design, each once."""
+"""Findings as they shown: at their place in the file, in the units of the design, each once."""
 
 from __future__ import annotations
 

@@ -88,7 +88,7 @@ def test_with_a_row_come_those_on_which_it_hangs() -> None:
     sifted = sift(view, rows, read_filter("study"))
     assert [row.id for row in sifted.rows] == ["P1", "M1", "B1", "R2"]
     assert sifted.leading == {("source", "P1"), ("section", "M1"), ("section", "B1")}
-    assert told(sifted, read_filter("study"), len(rows)) == "1 of 9 rows match, 4 are shown: study"
+    assert told(sifted, read_filter("study"), len(rows)) == "1 of 9 rows match, 4 shown: study"
 
 
 def test_a_row_in_hand_stays_and_is_not_counted() -> None:
@@ -181,14 +181,14 @@ def test_rows_go_while_one_types_and_come_back_with_escape(play: Stage) -> None:
         await hands.type("hall")
         assert hands.place == "entry"
         assert shown(hands) == ["P1", "M1", "B1", "R1"]
-        assert hands.lines()[0] == " 1 of 9 rows match, 4 are shown: hall"
+        assert hands.lines()[0] == " 1 of 9 rows match, 4 shown: hall"
         assert hands.lines()[2].split()[:3] == ["4", "of", "4"]
         assert in_hand(hands) == "R1"
         await hands.press(*["backspace"] * 4)
         assert len(shown(hands)) == 9
         assert in_hand(hands) == "R4"
         await hands.type("zz")
-        assert hands.lines()[0] == " 0 of 9 rows match, 0 are shown: zz"
+        assert hands.lines()[0] == " 0 of 9 rows match, 0 shown: zz"
         assert "no row" in hands.lines()[2]
         await hands.press("escape")
         assert len(shown(hands)) == 9
@@ -262,9 +262,9 @@ def test_a_row_that_is_mended_stays_until_the_cursor_leaves_it(play: Stage) -> N
         assert in_hand(hands) == "M1"
         await hands.press("enter")
         assert shown(hands) == ["P1", "M1"]
-        assert hands.lines()[0] == " 0 of 9 rows match, 2 are shown: over"
+        assert hands.lines()[0] == " 0 of 9 rows match, 2 shown: over"
         await hands.press("u")
-        assert hands.lines()[0] == " 1 of 9 rows match, 2 are shown: over"
+        assert hands.lines()[0] == " 1 of 9 rows match, 2 shown: over"
         await hands.press("U")
         assert in_hand(hands) == "M1"
 
